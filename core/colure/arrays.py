@@ -46,7 +46,7 @@ def spherical(vectors: Float) -> tuple[Float, Float]:
 
 def norm(vectors: Float) -> Float:
     """Return the lengths (...) of vectors (..., 3)."""
-    return np.sqrt(np.einsum("...i,...i->...", vectors, vectors))
+    return np.asarray(np.sqrt(np.einsum("...i,...i->...", vectors, vectors)))
 
 
 def unit(vectors: Float) -> Float:

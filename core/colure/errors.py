@@ -1,18 +1,18 @@
 """The errors a caller can meet: each says what, where, which value and what was expected.
 
-    ColureError
-    ├── AngleError          text that is no angle, or an angle out of its range
-    ├── MomentError         text that is no date, an impossible date, a scale that does not reach
-    ├── FrameError          a frame that does not exist, or needs what was not given
-    │   └── FrameMismatch   two rotations that do not meet
-    ├── SiteError           an unknown site
-    ├── BodyError           an unknown body
-    ├── TargetError         a name that is in no list
-    ├── SpanError           understood, but outside the span of a model  (exit code 1)
-    │   └── EphemerisSpanError
-    ├── TableError          a file of rows that cannot be read
-    ├── SessionError        a session file that cannot be read
-    └── ResourceError       a shipped data file that is missing or damaged
+ColureError
+├── AngleError          text that is no angle, or an angle out of its range
+├── MomentError         text that is no date, an impossible date, a scale that does not reach
+├── FrameError          a frame that does not exist, or needs what was not given
+│   └── FrameMismatch   two rotations that do not meet
+├── SiteError           an unknown site
+├── BodyError           an unknown body
+├── TargetError         a name that is in no list
+├── SpanError           understood, but outside the span of a model  (exit code 1)
+│   └── EphemerisSpanError
+├── TableError          a file of rows that cannot be read
+├── SessionError        a session file that cannot be read
+└── ResourceError       a shipped data file that is missing or damaged
 """
 
 import difflib

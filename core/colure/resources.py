@@ -36,8 +36,8 @@ def load_array(relative: str, *, mmap: bool = True) -> NDArray[Any]:
     where = path(relative)
     try:
         array: NDArray[Any] = np.load(where, mmap_mode="r" if mmap else None, allow_pickle=False)
-    except (ValueError, OSError, EOFError) as fault:
-        raise ResourceError(f"data file '{relative}': not a readable array ({fault}); run 'colure selfcheck'") from fault
+    except (ValueError, OSError, EOFError) as error:
+        raise ResourceError(f"data file '{relative}': no readable array ({error}); run 'colure selfcheck'") from error
     return array
 
 
@@ -71,8 +71,8 @@ def verify() -> tuple[Check, ...]:
         relative = provenance.relative_to(base).as_posix()
         try:
             entries = read_toml(relative).get("file", [])
-        except ResourceError as fault:
-            checks.append(Check(relative, False, str(fault), "", 0))
+        except ResourceError as error:
+            checks.append(Check(relative, False, str(error), "", 0))
             continue
         for entry in entries:
             file = folder / entry["path"]
