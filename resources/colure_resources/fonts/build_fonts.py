@@ -25,14 +25,17 @@ sys.path.insert(0, str(HERE.parent))
 import _provenance  # noqa: E402
 
 DATE = "2026-12-01"
+SANS = ("source_sans_3", "SourceSans3[wght].ttf")
+ROMAN = ("source_serif_4", "SourceSerif4[opsz,wght].ttf")
+ITALIC = ("source_serif_4", "SourceSerif4-Italic[opsz,wght].ttf")
 FACES = (
-    # file, family, style, source package, source file, axes
-    ("ColureSans-Regular.ttf", "Colure Sans", "Regular", "source_sans_3", "SourceSans3[wght].ttf", {"wght": 400}),
-    ("ColureSans-Bold.ttf", "Colure Sans", "Bold", "source_sans_3", "SourceSans3[wght].ttf", {"wght": 620}),
-    ("ColureSerif-Regular.ttf", "Colure Serif", "Regular", "source_serif_4", "SourceSerif4[opsz,wght].ttf", {"wght": 410, "opsz": 11}),
-    ("ColureSerif-Italic.ttf", "Colure Serif", "Italic", "source_serif_4", "SourceSerif4-Italic[opsz,wght].ttf", {"wght": 410, "opsz": 11}),
-    ("ColureSerif-Bold.ttf", "Colure Serif", "Bold", "source_serif_4", "SourceSerif4[opsz,wght].ttf", {"wght": 640, "opsz": 14}),
-)  # fmt: skip
+    # file, family, style, (source package, source file), axes
+    ("ColureSans-Regular.ttf", "Colure Sans", "Regular", SANS, {"wght": 400}),
+    ("ColureSans-Bold.ttf", "Colure Sans", "Bold", SANS, {"wght": 620}),
+    ("ColureSerif-Regular.ttf", "Colure Serif", "Regular", ROMAN, {"wght": 410, "opsz": 11}),
+    ("ColureSerif-Italic.ttf", "Colure Serif", "Italic", ITALIC, {"wght": 410, "opsz": 11}),
+    ("ColureSerif-Bold.ttf", "Colure Serif", "Bold", ROMAN, {"wght": 640, "opsz": 14}),
+)
 TEXT = [
     *range(0x20, 0x7F),
     *range(0xA0, 0x180),  # Latin-1 and Extended-A: names of sites and stars
@@ -105,7 +108,7 @@ def build(noto: Path) -> None:
     symbols = TTFont(noto / "NotoSansSymbols-Regular.ttf")
     symbols2 = TTFont(noto / "NotoSansSymbols2-Regular.ttf")
     entries = []
-    for file, family, style, package, source, axes in FACES:
+    for file, family, style, (package, source), axes in FACES:
         spec = find_spec(f"fontpkg_{package}")
         assert spec is not None
         assert spec.origin is not None
@@ -131,18 +134,21 @@ def build(noto: Path) -> None:
         again = TTFont(HERE / file)
         digits = {again["hmtx"][again.getBestCmap()[ord(digit)]][0] for digit in "0123456789"}
         assert len(digits) == 1, f"{file}: figures are not tabular: {digits}"
-        print(f"{file}: {len(again.getBestCmap())} characters, figures {digits} wide, {(HERE / file).stat().st_size} bytes")
+        count = len(again.getBestCmap())
+        print(f"{file}: {count} characters, figures {digits} wide, {(HERE / file).stat().st_size} bytes")
         title = "Source Sans 3" if "sans" in package else "Source Serif 4"
         entries.append(
             {
                 "path": file,
-                "source": f"{title} (PyPI fontpkg-{package.replace('_', '-')}); Noto Sans Symbols and Symbols 2 (Debian fonts-noto-core)",
+                "source": f"{title} (PyPI fontpkg-{package.replace('_', '-')}); "
+                "Noto Sans Symbols and Symbols 2 (Debian fonts-noto-core)",
                 "version": ("3.52" if "sans" in package else "4.4") + "; 20201225-1",
                 "licence": "OFL-1.1",
                 "date": DATE,
                 "script": "fonts/build_fonts.py",
-                "rows": len(again.getBestCmap()),
-                "completeness": "Latin, Latin-1, Latin Extended-A, Greek, primes, arrows, signs of Sun, Moon, planets, nodes and the twelve divisions",
+                "rows": count,
+                "completeness": "Latin, Latin-1, Latin Extended-A, Greek, primes, arrows, "
+                "signs of Sun, Moon, planets, nodes and the twelve divisions",
             }
         )
     _provenance.write(HERE, entries)
