@@ -168,21 +168,34 @@ def neighbours(code: str) -> tuple[str, ...]:
 
 
 @cache
+def arcs() -> NDArray[np.int32]:
+    """Return the boundary arcs (m, 6) in whole units of B1875: kind, fixed coordinate, start, end, two places.
+
+    Kind 0 is an arc of parallel: a declination in minutes of arc, right ascensions in seconds (an end past 86400 has
+    gone through 0h), and the places in `constellations()` of those south and north of it. Kind 1 is an arc of meridian:
+    a right ascension in seconds, declinations in minutes, and those at the smaller and the greater right ascension.
+    """
+    array = resources.load_array("constellations/edges.npy", mmap=False)
+    array.flags.writeable = False
+    return array
+
+
+@cache
 def edges(step_deg: float = _ALL_SKY_STEP_DEG) -> Edges:
     """Return every boundary arc, sampled at most `step_deg` apart along its own parallel or meridian of B1875.
 
     At 1° (all-sky charts) a chord leaves an arc of parallel by at most 8″ × tan of its declination, at 0.25° by 0.5″;
     beyond 76° of declination the samples are as far apart in right ascension as there, which keeps it below 32″ and 2″.
     """
-    arcs = resources.load_array("constellations/edges.npy", mmap=False)
-    kind, fixed, start, end = (arcs[:, i].astype(np.float64) for i in range(4))
+    table = arcs()
+    kind, fixed, start, end = (table[:, i].astype(np.float64) for i in range(4))
     parallel = kind == 0
     cos_dec = np.maximum(np.cos(fixed * _PER_MINUTE), 0.25)
     length = (end - start) * np.where(parallel, _PER_SECOND * cos_dec, _PER_MINUTE)
     # Rounding must not add a point to an arc that is a whole number of steps long.
     count = np.ceil(length / (step_deg * DEG) - 1e-9).astype(np.int64) + 1
     starts = np.concatenate([[0], np.cumsum(count)])
-    arc = np.repeat(np.arange(len(arcs)), count)
+    arc = np.repeat(np.arange(len(table)), count)
     part = (np.arange(starts[-1]) - starts[arc]) / (count[arc] - 1)
     along = start[arc] + (end - start)[arc] * part
     on_parallel = parallel[arc]
@@ -190,7 +203,7 @@ def edges(step_deg: float = _ALL_SKY_STEP_DEG) -> Edges:
     dec = np.where(on_parallel, fixed[arc], along) * _PER_MINUTE
     points = cartesian(ra, dec) @ b1875_matrix()
     points.flags.writeable = False
-    return Edges(points, starts.astype(np.int32), _grid().codes[arcs[:, 4:]], parallel)
+    return Edges(points, starts.astype(np.int32), _grid().codes[table[:, 4:]], parallel)
 
 
 @cache
