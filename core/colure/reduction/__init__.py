@@ -1,0 +1,34 @@
+"""One reduction path for bodies and stars: geometric, astrometric, apparent and observed places on ICRS axes."""
+
+from colure.reduction.bodypath import GEOCENTRE, Directions, TraceEntry, reduce_bodies
+from colure.reduction.observer import (
+    C_AU_DAY,
+    ORIGINS,
+    Observer,
+    ObserverState,
+    observer_state,
+    terrestrial_matrix,
+)
+from colure.reduction.starpath import StarContext, apply_context, reduce_stars, space_velocity, star_context
+from colure.reduction.steps import GEOMETRY, OPTICS, PLACES
+
+__all__ = [
+    "C_AU_DAY",
+    "GEOCENTRE",
+    "GEOMETRY",
+    "OPTICS",
+    "ORIGINS",
+    "PLACES",
+    "Directions",
+    "Observer",
+    "ObserverState",
+    "StarContext",
+    "TraceEntry",
+    "apply_context",
+    "observer_state",
+    "reduce_bodies",
+    "reduce_stars",
+    "space_velocity",
+    "star_context",
+    "terrestrial_matrix",
+]

@@ -1,0 +1,127 @@
+"""Who looks: the observer's barycentric place and velocity, and the Sun's, at each moment."""
+
+from dataclasses import dataclass
+
+import erfa
+import numpy as np
+
+from colure import sidereal
+from colure.arrays import DEG, Float
+from colure.ephemeris import KM_PER_AU, Ephemeris
+from colure.errors import SiteError
+from colure.frames import Frame, rotation
+from colure.moment import Moment
+from colure.refraction import Atmosphere, standard_pressure
+from colure.sites import Site
+
+ORIGINS = ("earth", "site", "sun", "ssb", "emb")
+C_AU_DAY = 173.1446326846693
+"""Speed of light, au per day: 299792458 m/s × 86400 s / 149597870700 m."""
+EARTH_TURN_RAD_DAY = 2.0 * np.pi * 1.00273781191135448
+"""Rate of the Earth rotation angle against UT1 (IAU 2000)."""
+TRUE_OF_DATE = Frame.parse("equator/true/date")
+
+
+@dataclass(frozen=True, slots=True)
+class Observer:
+    """Where the observer stands: a centre, or a site on the Earth.
+
+    `polar_motion` switches the IERS pole of a site; `air` overrides the site's atmosphere for the observed place.
+    """
+
+    origin: str = "earth"
+    site: Site | None = None
+    polar_motion: bool = True
+    air: Atmosphere | None = None
+
+    def __post_init__(self) -> None:
+        if self.origin not in ORIGINS:
+            raise SiteError(f"origin '{self.origin}': expected one of {', '.join(ORIGINS)}")
+        if self.origin == "site" and self.site is None:
+            raise SiteError("origin 'site': no site was given")
+
+    @property
+    def atmosphere(self) -> Atmosphere:
+        """The air through which a site observes; by default the standard pressure of its height, 10 °C, 50 %."""
+        if self.air is not None:
+            return self.air
+        site = self.site
+        height = site.height_m if site is not None else 0.0
+        pressure = getattr(site, "pressure_hpa", None)
+        temperature = getattr(site, "temperature_c", None)
+        return Atmosphere(
+            pressure_hpa=standard_pressure(height) if pressure is None else float(pressure),
+            temperature_c=10.0 if temperature is None else float(temperature),
+        )
+
+
+@dataclass(frozen=True, slots=True)
+class ObserverState:
+    """Barycentric vectors (*shape, 3) on ICRS axes, au and au/day.
+
+    `centre_pos` and `centre_vel` are those of the origin's centre (the Earth's for a site), `pos` and `vel` the
+    observer's own; `zenith` is the unit vector to the geodetic zenith (None without a site).
+    """
+
+    pos: Float
+    vel: Float
+    centre_pos: Float
+    centre_vel: Float
+    sun_pos: Float
+    sun_vel: Float
+    zenith: Float | None = None
+    to_itrs: Float | None = None
+
+
+def terrestrial_matrix(moment: Moment, *, polar_motion: bool = True) -> Float:
+    """Return the matrices (*shape, 3, 3) from ICRS axes to the Earth-fixed ITRS, with or without polar motion."""
+    true = rotation(TRUE_OF_DATE, moment).matrix
+    angle = np.asarray(sidereal.gast(moment), dtype=np.float64)
+    c, s = np.cos(angle), np.sin(angle)
+    turned = np.empty(np.broadcast_shapes(true.shape, (*angle.shape, 3, 3)))
+    turned[..., 0, :] = c[..., None] * true[..., 0, :] + s[..., None] * true[..., 1, :]
+    turned[..., 1, :] = c[..., None] * true[..., 1, :] - s[..., None] * true[..., 0, :]
+    turned[..., 2, :] = true[..., 2, :]
+    if not polar_motion:
+        return turned
+    xp, yp = moment.polar_motion
+    locator = erfa.sp00(*moment.tt)
+    return np.asarray(erfa.pom00(xp, yp, locator) @ turned)
+
+
+def _site_vectors(site: Site, matrix: Float) -> tuple[Float, Float, Float]:
+    """Return position (au), velocity (au/day) and zenith, each (*shape, 3), of a site about the Earth's centre."""
+    lon, lat = site.lon_deg * DEG, site.lat_deg * DEG
+    fixed = np.asarray(erfa.gd2gc(1, lon, lat, site.height_m)) / (KM_PER_AU * 1000.0)
+    up = np.array([np.cos(lat) * np.cos(lon), np.cos(lat) * np.sin(lon), np.sin(lat)])
+    # v = ω × r about the pole of the Earth-fixed axes; the pole's own motion is 1e-6 of that.
+    moving = EARTH_TURN_RAD_DAY * np.array([-fixed[1], fixed[0], 0.0])
+    vectors = np.stack([fixed, moving, up]) @ matrix
+    return vectors[..., 0, :], vectors[..., 1, :], vectors[..., 2, :]
+
+
+def observer_state(observer: Observer, moment: Moment, ephemeris: Ephemeris) -> ObserverState:
+    """Return the observer's barycentric state and the Sun's, ICRS axes, au and au/day, each (*shape, 3)."""
+    names = ("sun",) if observer.origin in ("sun", "ssb") else ("sun", "earth" if observer.origin != "emb" else "emb")
+    pos, vel = ephemeris.posvel(names, *moment.tdb)
+    centre = "ssb" if observer.origin == "ssb" else names[-1]
+    states = {name: (pos[k], vel[k]) for k, name in enumerate(names)}
+    if centre == "ssb":
+        states["ssb"] = (np.zeros_like(pos[0]), np.zeros_like(vel[0]))
+    return place_observer(observer, moment, states[centre], states["sun"])
+
+
+def place_observer(
+    observer: Observer, moment: Moment, centre: tuple[Float, Float], sun: tuple[Float, Float]
+) -> ObserverState:
+    """Return the state of an observer about a centre whose barycentric state is already known."""
+    if observer.origin != "site" or observer.site is None:
+        return ObserverState(centre[0], centre[1], centre[0], centre[1], sun[0], sun[1])
+    matrix = terrestrial_matrix(moment, polar_motion=observer.polar_motion)
+    offset, motion, zenith = _site_vectors(observer.site, matrix)
+    return ObserverState(centre[0] + offset, centre[1] + motion, centre[0], centre[1], sun[0], sun[1], zenith, matrix)
+
+
+def is_centre(observer: Observer, body: str) -> bool:
+    """Return whether `body` is what the observer stands on, and so has no direction."""
+    return body == ("earth" if observer.origin == "site" else observer.origin)
