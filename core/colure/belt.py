@@ -11,7 +11,9 @@ from numpy.typing import NDArray
 
 from colure import constellations
 from colure.arrays import DEG, TWO_PI, Bool, Float, cartesian, unit
+from colure.ephemeris import Ephemeris
 from colure.moment import Moment
+from colure.reduction import reduce_bodies
 
 DIVISION_GLYPHS = tuple(chr(0x2648 + i) for i in range(12))
 """The twelve signs of the divisions, the first beginning at the equinox; the shipped fonts draw them as text."""
@@ -24,6 +26,7 @@ SIDEREAL_YEAR_DAYS = 365.25636
 """In this time the Sun returns to the same place among the stars, so every constellation is entered once."""
 
 _STEP = DEG
+_NUMBERS: Float = np.arange(12, dtype=np.float64)
 _PER_SECOND = TWO_PI / 86400.0
 _PER_MINUTE = np.pi / 10800.0
 
@@ -70,13 +73,13 @@ def outline(ecliptic: Float, half_width: float, step: float = _STEP) -> Polyline
 def division_lines(ecliptic: Float, half_width: float, step: float = _STEP) -> Polylines:
     """Return the twelve arcs that cut the belt every 30° from the equinox, each from its south edge to its north."""
     lat = np.linspace(-half_width, half_width, int(np.ceil(2.0 * half_width / step - 1e-9)) + 1)
-    lon = np.arange(12) * DIVISION
+    lon = _NUMBERS * DIVISION
     return _lines(cartesian(lon[:, None], lat[None, :]) @ ecliptic)
 
 
 def division_marks(ecliptic: Float, latitude: float = 0.0) -> Marks:
     """Return the middles of the twelve divisions at a latitude, with glyph and name."""
-    points = cartesian((np.arange(12) + 0.5) * DIVISION, latitude) @ ecliptic
+    points = cartesian((_NUMBERS + 0.5) * DIVISION, latitude) @ ecliptic
     return Marks(DIVISION_GLYPHS, DIVISION_NAMES, points)
 
 
@@ -190,11 +193,12 @@ class SunEntries:
         same = (at.left[:, None] == self.left) & (at.entered[:, None] == self.entered)
         # A constellation could be entered twice from one neighbour: the nearer place is meant.
         near = np.where(same, at.points @ self.points.T, -2.0)
-        best = np.argmax(near, axis=1)
-        return np.where(same.any(axis=1), best, -1)
+        if not len(self.left):
+            return np.full(len(at.left), -1)
+        return np.where(same.any(axis=1), np.argmax(near, axis=1), -1)
 
 
-def sun_entries(start: Moment, days: float = SIDEREAL_YEAR_DAYS) -> SunEntries:
+def sun_entries(start: Moment, days: float = SIDEREAL_YEAR_DAYS, *, ephemeris: Ephemeris | None = None) -> SunEntries:
     """Return when the Sun's geocentric astrometric place enters each constellation in `days` from a moment.
 
     Astrometric, because the edges are fixed among the stars of a catalogue: the apparent Sun is 20.5″ (8 min) behind,
@@ -204,21 +208,19 @@ def sun_entries(start: Moment, days: float = SIDEREAL_YEAR_DAYS) -> SunEntries:
     # Six hours are a quarter of a degree: no constellation on the ecliptic is that narrow within centuries of today.
     offsets = np.arange(0.0, days + 0.25, 0.25)
     offsets = np.append(offsets[offsets < days], days)
-    place = constellations.indices(_sun(start.shifted(offsets)))
+    place = constellations.indices(_sun(start.shifted(offsets), ephemeris))
     at = np.flatnonzero(place[1:] != place[:-1])
     low, high = offsets[at], offsets[at + 1]
     for _ in range(16):  # 6 h / 2^16 = 0.3 s
         middle = (low + high) / 2.0
-        before = constellations.indices(_sun(start.shifted(middle))) == place[at]
+        before = constellations.indices(_sun(start.shifted(middle), ephemeris)) == place[at]
         low, high = np.where(before, middle, low), np.where(before, high, middle)
     codes = np.array([*(entry.code for entry in constellations.constellations()), ""])
     moments = start.shifted(high)
-    return SunEntries(moments, codes[place[at]], codes[place[at + 1]], _sun(moments))
+    return SunEntries(moments, codes[place[at]], codes[place[at + 1]], _sun(moments, ephemeris))
 
 
-def _sun(moments: Moment) -> Float:
+def _sun(moments: Moment, ephemeris: Ephemeris | None) -> Float:
     """Return the Sun's astrometric unit vectors (n, 3) from the Earth's centre."""
-    from colure import reduction  # the ephemeris behind it is only needed for dates
-
-    observer = reduction.Observer("earth")
-    return reduction.reduce_bodies(("sun",), moments, observer=observer, place="astrometric").vectors[0]
+    seen = reduce_bodies(("sun",), moments, place="astrometric", ephemeris=ephemeris)
+    return np.asarray(seen.vectors[0])

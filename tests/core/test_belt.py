@@ -6,6 +6,7 @@ import pytest
 
 from colure import belt, constellations
 from colure.arrays import ARCSEC, DEG, cartesian, separation, spherical, unit
+from colure.moment import Moment
 
 J2000 = (2451545.0, 0.0)
 
@@ -126,3 +127,46 @@ def test_crossings_of_any_great_circle() -> None:
         assert just_after.tolist() == found.entered.tolist()
         walked = constellations.of(cartesian(np.arange(0, 36000) * 0.01 * DEG, 0.0) @ frame)
         assert (walked != np.roll(walked, 1)).sum() <= len(found.longitude)
+
+
+def _sun_by_erfa(moments: Moment) -> np.ndarray:
+    """ERFA's epv00: the Sun from the Earth, good to 0.03″ here, light time of the Sun's own motion (0.01″) left out."""
+    helio, _ = erfa.epv00(*moments.tdb)
+    return unit(-helio["p"])
+
+
+def test_sun_enters_every_constellation_of_the_ecliptic_once() -> None:
+    start = Moment.parse("2026-01-01 TT")
+    entries = belt.sun_entries(start)
+    found = belt.crossings(_ecliptic(2026.5))
+    assert sorted(entries.entered.tolist()) == sorted(found.entered.tolist())
+    assert len(entries.entered) == 13
+    jd = np.asarray(entries.moments.jd_tt)
+    assert (np.diff(jd) > 5.0).all()
+    assert jd[0] >= start.jd_tt
+    assert jd[-1] <= start.jd_tt + belt.SIDEREAL_YEAR_DAYS
+    # 5 s of the Sun's motion are 0.2″: three times the error of epv00 and of the bisection.
+    seconds = 5.0 / 86400.0
+    assert constellations.of(_sun_by_erfa(entries.moments.shifted(-seconds))).tolist() == entries.left.tolist()
+    assert constellations.of(_sun_by_erfa(entries.moments.shifted(seconds))).tolist() == entries.entered.tolist()
+    # The Sun stays within 1″ of the ecliptic of date; its latitude moves an inclined edge by a few arcseconds.
+    entry = entries.dates_of(found)
+    assert (entry >= 0).all()
+    assert separation(entries.points[entry], found.points).max() < 5.0 * ARCSEC
+    # From memory of almanacs: the Sun is in Ophiuchus from 29 or 30 November to 17 or 18 December.
+    dates = entries.moments.isot("TT")
+    (begin,), (end,) = dates[entries.entered == "Oph"], dates[entries.left == "Oph"]
+    assert begin[5:10] in ("11-29", "11-30")
+    assert end[5:10] in ("12-17", "12-18")
+
+
+def test_sun_entries_of_a_short_span_and_of_another_ecliptic() -> None:
+    entries = belt.sun_entries(Moment.parse("2026-11-25 TT"), days=10.0)
+    assert entries.entered.tolist() == ["Oph"]
+    # Only the passage that the Sun made in those days is dated.
+    found = belt.crossings(_ecliptic(2000.0))
+    dated = entries.dates_of(found)
+    assert found.entered[dated >= 0].tolist() == ["Oph"]
+    nothing = belt.sun_entries(Moment.parse("2026-12-05 TT"), days=1.0)
+    assert nothing.entered.shape == (0,)
+    assert (nothing.dates_of(found) == -1).all()
