@@ -51,7 +51,7 @@ _COLOUR = re.compile(r"#[0-9A-Fa-f]{6}\Z")
 
 
 def _number(where: str, value: float, low: float, high: float) -> float:
-    """Return a finite number between two limits, or raise SessionError that says where, which value and what was due."""
+    """Return a finite number between two limits, or raise SessionError naming place, value and limits."""
     if isinstance(value, bool) or not isinstance(value, int | float) or not math.isfinite(value):
         raise SessionError(f"{where}: {value!r} is not a finite number; expected {low:g} to {high:g}")
     if not low <= value <= high:

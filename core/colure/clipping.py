@@ -1,0 +1,249 @@
+"""Cut lines on the sphere, exactly at the edge and at the seam of a projection, and lay them on a page.
+
+Polylines come as camera directions, columns (3, N), with `starts` as in `marks.Lines`. Cutting happens on the sphere,
+before the projection, because only there is a great-circle arc a straight thing; what lies outside the map rectangle
+is then dropped on the page. Filled areas are cut in `clipping_areas`.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from colure.arrays import Bool, Float
+from colure.marks import F32, I32
+from colure.projections import Projector, Real
+
+Rect = tuple[float, float, float, float]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Window:
+    """What of the sky is to be laid on the page: a projector, the map rectangle, and the cap that just covers it.
+
+    `cap` is the angle from the centre within which an azimuthal projection is drawn, in radians: its edge, or what the
+    corners of the rectangle reach if that is less.
+    """
+
+    projector: Projector
+    rect: Rect
+    cap: float
+
+    @classmethod
+    def of(cls, projector: Projector, frame: Rect, margin: float = 24.0) -> "Window":
+        """Return the window of a map rectangle, with a margin in pixels so that cut ends stay out of sight."""
+        left, top, right, bottom = frame
+        rect = (left - margin, top - margin, right + margin, bottom + margin)
+        edge = projector.projection.edge
+        if projector.projection.unrolled:
+            return cls(projector, rect, edge)
+        corners = np.array([[rect[0], rect[1]], [rect[2], rect[1]], [rect[0], rect[3]], [rect[2], rect[3]]])
+        plane = (corners - projector.shift) @ np.linalg.inv(projector.plane).T
+        camera = projector.projection.inverse(plane[:, 0], plane[:, 1])
+        reach = np.arccos(np.clip(camera[2], -1.0, 1.0))
+        return cls(projector, rect, edge if np.isnan(reach).any() else float(min(edge, reach.max())))
+
+    @property
+    def radius(self) -> float:
+        """Angle from the centre of the page that covers the map, in radians; π where it may be anywhere."""
+        if not self.projector.projection.unrolled:
+            return self.cap
+        xs = np.linspace(self.rect[0], self.rect[2], 9)
+        ys = np.linspace(self.rect[1], self.rect[3], 9)
+        grid = np.stack(np.meshgrid(xs, ys), axis=-1).reshape(-1, 2)
+        sky = self.projector.unproject(grid)
+        if np.isnan(sky).any():
+            return float(np.pi)
+        return float(np.arccos(np.clip(sky @ self.centre, -1.0, 1.0)).max()) * 1.05
+
+    @property
+    def centre(self) -> Float:
+        """The direction at the middle of the page, (3,) on ICRS axes; the projection's own centre if that is no sky."""
+        middle = np.array([0.5 * (self.rect[0] + self.rect[2]), 0.5 * (self.rect[1] + self.rect[3])])
+        sky = self.projector.unproject(middle)
+        return sky if np.isfinite(sky).all() else self.projector.camera[2].copy()
+
+
+def lines(window: Window, camera: Real, starts: I32) -> tuple[F32, I32]:
+    """Return page polylines (points (M, 2), starts) of polylines on the sphere, cut at edge, seam and rectangle.
+
+    The segments are great-circle arcs, each shorter than half a turn.
+    """
+    n = camera.shape[1]
+    if n < 2:
+        return np.empty((0, 2), np.float32), np.zeros(1, np.int32)
+    joined = np.ones(n - 1, dtype=bool)
+    joined[starts[1:-1] - 1] = False
+    whole, cut = _segments(window, camera, joined)
+    x, y = window.projector.to_page(camera)
+    whole &= _seen(window.rect, x[:-1], y[:-1], x[1:], y[1:])
+    before = np.empty(n, dtype=bool)
+    before[0] = False
+    before[1:] = whole
+    keep = before.copy()
+    keep[:-1] |= whole
+    points = np.stack([x[keep], y[keep]], axis=1).astype(np.float32, copy=False)
+    firsts = np.flatnonzero(~before[keep])
+    if cut.shape[1]:
+        cx, cy = window.projector.to_page(cut)
+        seen = np.repeat(_seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2]), 2)
+        extra = np.stack([cx[seen], cy[seen]], axis=1).astype(np.float32)
+        firsts = np.concatenate([firsts, len(points) + np.arange(0, len(extra), 2)])
+        points = np.concatenate([points, extra])
+    return points, np.append(firsts, len(points)).astype(np.int32)
+
+
+def _seen(rect: Rect, x1: Real, y1: Real, x2: Real, y2: Real) -> Bool:
+    """Return which segments have a bounding box that meets the rectangle."""
+    left, top, right, bottom = rect
+    return np.asarray(
+        (np.maximum(x1, x2) >= left)
+        & (np.minimum(x1, x2) <= right)
+        & (np.maximum(y1, y2) >= top)
+        & (np.minimum(y1, y2) <= bottom)
+    )
+
+
+def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float]:
+    """Return which segments are drawn whole (N − 1), and the shown pieces of those that are cut: (3, 2k), in pairs."""
+    projection = window.projector.projection
+    if projection.unrolled:
+        x, z = camera[0], camera[2]
+        # On the far side, a change of the sign of x is a step over the seam.
+        side = np.signbit(x)
+        across = joined & (side[:-1] != side[1:])
+        if across.any():
+            at = np.flatnonzero(across)
+            t = x[at] / (x[at] - x[at + 1] + np.where(x[at] == x[at + 1], 1e-30, 0.0))
+            over = z[at] + t * (z[at + 1] - z[at]) < 0.0
+            across[at[~over]] = False
+        wild = joined & ~across & _wild(camera[0], camera[2], np.abs(camera[1]) > 0.95)
+        outside = np.abs(camera[1]) > np.sin(projection.edge) if projection.edge < 1.57 else None
+    else:
+        across = np.zeros(len(joined), dtype=bool)
+        # A straight piece of page is far from an arc of sky only round the point opposite the centre.
+        wild = joined & _wild(camera[0], camera[1], camera[2] < -0.9) if window.cap > 2.7 else across
+        outside = camera[2] < np.cos(window.cap)
+    whole = joined & ~across & ~wild
+    special = across | wild
+    if outside is not None:
+        near = ~outside
+        whole &= near[:-1] & near[1:]
+        special |= joined & (near[:-1] != near[1:])
+        if not projection.unrolled and window.cap < 1.5:
+            special |= joined & outside[:-1] & outside[1:] & _through(camera, np.cos(window.cap))
+    at = np.flatnonzero(special)
+    if not len(at):
+        return whole, np.empty((3, 0))
+    a, b = camera[:, at].astype(np.float64), camera[:, at + 1].astype(np.float64)
+    swung = wild[at]
+    if swung.any():
+        fa, fb = _divide(a[:, swung], b[:, swung], 48)
+        a, b = np.concatenate([a[:, ~swung], fa], axis=1), np.concatenate([b[:, ~swung], fb], axis=1)
+    a, b = cut_segments(window, a, b)
+    return whole, np.stack([a, b], axis=2).reshape(3, -1)
+
+
+def _wild(u: Real, v: Real, suspect: Bool) -> Bool:
+    """Return which segments turn by more than 10° about the projection's axis where that swings them over the page."""
+    if not suspect.any():
+        return np.zeros(len(u) - 1, dtype=bool)
+    wild = suspect[:-1] | suspect[1:]
+    at = np.flatnonzero(wild)
+    cross = u[at] * v[at + 1] - v[at] * u[at + 1]
+    along = u[at] * u[at + 1] + v[at] * v[at + 1]
+    wild[at] = np.abs(np.arctan2(cross, along)) > 0.17
+    return wild
+
+
+def _divide(a: Float, b: Float, parts: int) -> tuple[Float, Float]:
+    """Return the ends of `parts` pieces of each arc (3, N), in order along each arc."""
+    t = np.linspace(0.0, 1.0, parts + 1)
+    points = a[:, :, None] * (1.0 - t) + b[:, :, None] * t
+    points /= np.sqrt((points * points).sum(axis=0))
+    return points[:, :, :-1].reshape(3, -1), points[:, :, 1:].reshape(3, -1)
+
+
+def _through(camera: Real, z_cap: float) -> Bool:
+    """Return which arcs (N − 1) come within a small cap although both ends may be outside it."""
+    a, b = camera[:, :-1], camera[:, 1:]
+    normal = np.cross(a, b, axis=0)
+    length = np.sqrt((normal * normal).sum(axis=0))
+    sine = np.abs(normal[2])
+    # The nearest point of the whole great circle, and that it lies between the ends: both ends look back at it.
+    near = sine <= np.sqrt(max(1.0 - z_cap * z_cap, 0.0)) * length
+    towards_a = normal[0] * a[1] - normal[1] * a[0]
+    towards_b = normal[0] * b[1] - normal[1] * b[0]
+    between = (towards_a <= 0.0) != (towards_b <= 0.0)
+    return np.asarray(near & between & (a[2] + b[2] > 0.0))
+
+
+def cut_segments(window: Window, a: Float, b: Float) -> tuple[Float, Float]:
+    """Return the pieces (3, M), (3, M) of arcs (3, N), (3, N) that the projection shows, cut at its edge and seam."""
+    projection = window.projector.projection
+    if not projection.unrolled:
+        return _cut_cap(a, b, 2, np.cos(window.cap))
+    if projection.edge < 1.57:
+        a, b = _cut_cap(a, b, 1, -np.sin(projection.edge))
+        a, b = _cut_cap(a * [[1], [-1], [1]], b * [[1], [-1], [1]], 1, -np.sin(projection.edge))
+        a, b = a * [[1], [-1], [1]], b * [[1], [-1], [1]]
+    side_a, side_b = np.signbit(a[0]), np.signbit(b[0])
+    across = side_a != side_b
+    span = np.where(across, a[0] - b[0], 1.0)
+    t = a[0] / np.where(span == 0.0, 1.0, span)
+    cross = a + t * (b - a)
+    cross /= np.sqrt((cross * cross).sum(axis=0))
+    across &= cross[2] < 0.0
+    if not across.any():
+        return a, b
+    on_a, on_b = cross[:, across].copy(), cross[:, across].copy()
+    on_a[0] = np.copysign(0.0, a[0, across])
+    on_b[0] = np.copysign(0.0, b[0, across])
+    starts = np.concatenate([a[:, ~across], a[:, across], on_b], axis=1)
+    return starts, np.concatenate([b[:, ~across], on_a, b[:, across]], axis=1)
+
+
+def _cut_cap(a: Float, b: Float, axis: int, level: float) -> tuple[Float, Float]:
+    """Return the parts of arcs where the component `axis` of the direction is at least `level`."""
+    t0, t1 = cap_interval(a, b, axis, level)
+    shown = t1 > t0
+    a, b, t0, t1 = a[:, shown], b[:, shown], t0[shown], t1[shown]
+    first, last = a + t0 * (b - a), a + t1 * (b - a)
+    return first / np.sqrt((first * first).sum(axis=0)), last / np.sqrt((last * last).sum(axis=0))
+
+
+def cap_interval(a: Float, b: Float, axis: int, level: float) -> tuple[Float, Float]:
+    """Return, for chords a + t(b − a), the part t0 ≤ t ≤ t1 of [0, 1] whose direction reaches `level` along an axis.
+
+    Where no part does, t1 < t0. A chord that leaves a large cap and comes back keeps its two ends (it is shorter than
+    the points that callers put on a curve, so that does not happen on a chart).
+    """
+    d = b - a
+    za, dz = a[axis], d[axis]
+    l2 = level * level
+    # z(t)² = level² |p(t)|²: both crossings of the cone, of which only those on the right nappe count.
+    qa = dz * dz - l2 * (d * d).sum(axis=0)
+    qb = za * dz - l2 * (a * d).sum(axis=0)
+    qc = za * za - l2 * (a * a).sum(axis=0)
+    root = np.sqrt(np.maximum(qb * qb - qa * qc, 0.0))
+    q = -(qb + np.copysign(root, qb))
+    with np.errstate(divide="ignore", invalid="ignore"):
+        r1 = np.where(qa != 0.0, q / qa, np.inf)
+        r2 = np.where(q != 0.0, qc / q, np.inf)
+    in_a = za >= level * np.sqrt((a * a).sum(axis=0))
+    in_b = b[axis] >= level * np.sqrt((b * b).sum(axis=0))
+
+    def valid(r: Float) -> Bool:
+        z = za + np.where(np.isfinite(r), r, 0.0) * dz
+        same = z * level >= 0.0 if level != 0.0 else np.ones(len(z), dtype=bool)
+        return np.asarray((r >= 0.0) & (r <= 1.0) & same)
+
+    v1, v2 = valid(r1), valid(r2)
+    only = np.where(v1, r1, np.where(v2, r2, 0.5))
+    low = np.minimum(np.where(v1, r1, np.inf), np.where(v2, r2, np.inf))
+    high = np.maximum(np.where(v1, r1, -np.inf), np.where(v2, r2, -np.inf))
+    both_out = ~in_a & ~in_b
+    through = both_out & v1 & v2 & (level > 0.0)
+    t0 = np.where(in_a, 0.0, np.where(through, low, only))
+    t1 = np.where(in_b, 1.0, np.where(through, high, only))
+    missed = both_out & ~through
+    return np.where(missed, 1.0, t0), np.where(missed, 0.0, t1)
