@@ -1,0 +1,61 @@
+"""The discs of Sun, Moon and planets with the shape of their phase, for raster and vector painters alike."""
+
+import numpy as np
+from numpy.typing import NDArray
+from PySide6.QtCore import QPointF, Qt
+from PySide6.QtGui import QColor, QPainter, QPen
+
+from colure.marks import Bodies
+from colure_viewer.primitives import polygon
+from colure_viewer.themes import Theme, mix
+
+F64 = NDArray[np.float64]
+
+OUTLINE = 1.3
+"""Thickness of a body's rim in logical pixels."""
+
+
+def lit_shape(radius: float, lit: float, limb: float, x: float, y: float) -> F64:
+    """Return the outline (N, 2) of the lit part of a disc: half the limb and half the ellipse of the terminator.
+
+    `lit` is the lit fraction of the disc and `limb` the direction of the middle of the bright limb, clockwise from +x
+    on a page with y down. The terminator's half-axis along the limb direction is radius × (1 − 2 lit), because the lit
+    fraction of a sphere's disc is also that of its diameter.
+    """
+    angle = np.linspace(-np.pi / 2.0, np.pi / 2.0, 33)
+    outer = np.stack([np.cos(angle), np.sin(angle)], axis=-1)
+    inner = outer[::-1] * np.array([1.0 - 2.0 * lit, 1.0])
+    shape = radius * np.concatenate([outer, inner[1:-1]])
+    c, s = np.cos(limb), np.sin(limb)
+    return np.stack([x + shape[:, 0] * c - shape[:, 1] * s, y + shape[:, 0] * s + shape[:, 1] * c], axis=-1)
+
+
+def draw_bodies(painter: QPainter, mark: Bodies, theme: Theme, scale: float) -> None:
+    """Draw the discs; `scale` is painter units per logical pixel."""
+    sky = theme.colour("sky")
+    for row, name in enumerate(mark.names):
+        colour = theme.colour(f"body.{name}")
+        x, y = (float(v) * scale for v in mark.xy[row])
+        radius, lit = float(mark.radius[row]) * scale, float(mark.lit[row])
+        bright, night = (
+            (colour, mix(sky, colour, 0.28)) if theme.dark else (mix("#FFFFFF", colour, 0.14), mix(sky, colour, 0.62))
+        )
+        pen = QPen(QColor(colour), OUTLINE * scale)
+        painter.setPen(Qt.PenStyle.NoPen)
+        centre = QPointF(x, y)
+        if lit >= 0.999 or radius < 2.0 * scale:
+            painter.setBrush(QColor(bright))
+            painter.drawEllipse(centre, radius, radius)
+        else:
+            painter.setBrush(QColor(night))
+            painter.drawEllipse(centre, radius, radius)
+            if lit > 0.001:
+                painter.setBrush(QColor(bright))
+                painter.drawPolygon(polygon(lit_shape(radius, lit, float(mark.limb[row]), x, y)))
+        painter.setBrush(Qt.BrushStyle.NoBrush)
+        painter.setPen(pen)
+        painter.drawEllipse(centre, radius, radius)
+        if name == "sun" and not mark.true_size[row]:
+            painter.setPen(Qt.PenStyle.NoPen)
+            painter.setBrush(QColor(sky if theme.dark else colour))
+            painter.drawEllipse(centre, 1.6 * scale, 1.6 * scale)

@@ -1,0 +1,126 @@
+"""Turns polylines and symbols into what a fast painter can draw: parallels for weight, dashes, straight strokes."""
+
+import numpy as np
+from numpy.typing import NDArray
+
+F64 = NDArray[np.float64]
+
+THICKNESS = {1: 0.8, 2: 1.4, 3: 2.0}
+"""Thickness of the three weights in logical pixels."""
+
+DASH, DOT = (5.0, 3.5), (1.2, 2.6)
+"""Stroke and gap in logical pixels."""
+
+MAX_PIXEL = 1e6
+"""Farther points are pulled in: Qt's rasteriser works in 26.6 fixed point and must not overflow."""
+
+
+def offsets(weight: int, ratio: float) -> list[float]:
+    """Return where, across the line and in device pixels, lines one pixel wide make up a weight."""
+    thickness = max(1.0, THICKNESS[weight] * ratio)
+    # Two lines no more than 0.8 pixel apart leave no seam between them.
+    count = 1 + int(np.ceil((thickness - 1.0) / 0.8 - 1e-9))
+    if count == 1:
+        return [0.0]
+    reach = (thickness - 1.0) / 2.0
+    return [float(v) for v in np.linspace(-reach, reach, count)]
+
+
+def normals(points: F64, starts: NDArray[np.int32]) -> F64:
+    """Return unit normals (N, 2) at the points of polylines laid out as in colure.marks.Lines."""
+    step = np.zeros_like(points)
+    step[:-1] = points[1:] - points[:-1]
+    # The step from the end of one polyline to the start of the next belongs to neither.
+    last = starts[1:] - 1
+    previous = np.empty_like(step)
+    previous[1:] = step[:-1]
+    first = starts[:-1]
+    nonempty = last >= first
+    last, first = last[nonempty], first[nonempty]
+    step[last] = 0.0
+    previous[first] = 0.0
+    along = step + previous
+    length = np.hypot(along[:, 0], along[:, 1])
+    length[length == 0.0] = 1.0
+    out = np.empty_like(points)
+    out[:, 0] = -along[:, 1] / length
+    out[:, 1] = along[:, 0] / length
+    return out
+
+
+def dashes(points: F64, starts: NDArray[np.int32], stroke: float, gap: float) -> F64:
+    """Return straight strokes (K, 4) of length `stroke` every `stroke + gap` along polylines, measured along each."""
+    if len(points) < 2:
+        return np.empty((0, 4))
+    step = np.hypot(*(points[1:] - points[:-1]).T)
+    first, last = starts[:-1], starts[1:] - 1
+    joins = last[:-1][last[:-1] < len(step)]
+    step[joins] = 0.0
+    travelled = np.concatenate([[0.0], np.cumsum(step)])
+    keep = last > first
+    begin, end = travelled[first[keep]], travelled[last[keep]]
+    period = stroke + gap
+    counts = np.maximum(np.ceil((end - begin) / period), 0).astype(np.intp)
+    if not counts.sum():
+        return np.empty((0, 4))
+    which = np.repeat(np.arange(len(counts)), counts)
+    order = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
+    start = begin[which] + order * period
+    stop = np.minimum(start + stroke, end[which])
+    out = np.empty((len(start), 4))
+    # Where two polylines meet in `travelled` the position is ambiguous: look just inside each stroke's own line.
+    grow = 1e-9 * (1.0 + travelled[-1])
+    increasing = travelled + np.arange(len(travelled)) * grow / max(len(travelled), 1)
+    for column in (0, 1):
+        out[:, column] = np.interp(start + grow, increasing, points[:, column])
+        out[:, 2 + column] = np.interp(np.maximum(stop - grow, start + grow), increasing, points[:, column])
+    return out
+
+
+def _ring(count: int, radius: float = 1.0) -> F64:
+    angle = np.linspace(0.0, 2.0 * np.pi, count + 1)
+    xy = radius * np.stack([np.cos(angle), np.sin(angle)], axis=-1)
+    return np.concatenate([xy[:-1], xy[1:]], axis=-1)
+
+
+def _shape(*strokes: tuple[float, float, float, float]) -> F64:
+    return np.array(strokes)
+
+
+def _rays(near: float, far: float) -> F64:
+    return _shape((near, 0, far, 0), (-near, 0, -far, 0), (0, near, 0, far), (0, -near, 0, -far))
+
+
+_CROSS = _shape((-1, 0, 1, 0), (0, -1, 0, 1))
+_THIRD = np.kron([[2 / 3, 1 / 3], [1 / 3, 2 / 3]], np.eye(2))
+"""Keeps the middle third of a stroke."""
+
+_SQUARE = _shape((-1, -1, 1, -1), (1, -1, 1, 1), (1, 1, -1, 1), (-1, 1, -1, -1))
+SHAPES: dict[str, F64] = {
+    "open_cluster": _ring(32)[::2],
+    "globular": np.concatenate([_ring(24), _CROSS]),
+    "galaxy": _ring(24),
+    "nebula": _SQUARE,
+    "planetary": np.concatenate([_ring(20, 0.62), _rays(0.62, 1.25)]),
+    "dark": _SQUARE @ _THIRD,
+    "cross": _CROSS,
+    "ring": _ring(24),
+    "square": _SQUARE,
+    "diamond": _shape((0, -1, 1, 0), (1, 0, 0, 1), (0, 1, -1, 0), (-1, 0, 0, -1)),
+    "triangle": _shape((0, -1, 0.87, 0.5), (0.87, 0.5, -0.87, 0.5), (-0.87, 0.5, 0, -1)),
+    "point": np.concatenate([_ring(16, 0.45), _rays(0.45, 1.0)]),
+}
+"""Each map symbol as strokes x1 y1 x2 y2 within the unit square, first axis along +x."""
+
+
+def symbols(kind: str, xy: F64, size: F64, angle: F64) -> F64:
+    """Return the strokes (K, 4) of one kind of symbol at `xy` (N, 2), with half-axes (N, 2), turned clockwise."""
+    shape = SHAPES.get(kind, SHAPES["ring"])
+    c, s = np.cos(angle)[:, None], np.sin(angle)[:, None]
+    out = np.empty((len(xy), len(shape), 4))
+    for column in (0, 2):
+        along = shape[None, :, column] * size[:, :1]
+        across = shape[None, :, column + 1] * size[:, 1:]
+        out[:, :, column] = xy[:, :1] + along * c - across * s
+        out[:, :, column + 1] = xy[:, 1:] + along * s + across * c
+    return out.reshape(-1, 4)
