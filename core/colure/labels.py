@@ -1,0 +1,202 @@
+"""Put texts on a page so that none covers another, a bright star or a planet, and none jumps from frame to frame.
+
+Every text has an identity, a rank (its place in the request) and a few positions in order of preference. A text that
+stood somewhere in the frame before keeps its position as long as nothing of higher rank needs the room; a newcomer has
+to find room with a margin around it, so that texts do not flicker in and out at the limit. The memory is a value,
+`Placement`: the same request with the same memory gives the same answer.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colure.marks import F32, I64
+
+I8 = NDArray[np.int8]
+
+MARGIN = 2.5
+"""Free pixels that a newcomer needs around it, and that an incumbent may lose."""
+
+GAP = 3.0
+"""Pixels between a mark and its text."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Placement:
+    """Which position each text had: `ids` (N,) sorted, `choice` (N,) the number of the position."""
+
+    ids: I64
+    choice: I8
+
+    def recall(self, ids: I64) -> I8:
+        """Return the position of each text (N,), −1 for those that had none."""
+        if not len(self.ids):
+            return np.full(len(ids), -1, np.int8)
+        at = np.minimum(np.searchsorted(self.ids, ids), len(self.ids) - 1)
+        return np.where(self.ids[at] == ids, self.choice[at], np.int8(-1))
+
+
+NOWHERE = Placement(np.empty(0, np.int64), np.empty(0, np.int8))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Request:
+    """Texts to be placed, highest rank first.
+
+    `ids` (N,) are distinct; `centres` (N, K, 2) the positions in order of preference, NaN where there is none; `half`
+    (N, 2) the half-width and half-height of the upright box that holds the text.
+    """
+
+    ids: I64
+    centres: F32
+    half: F32
+
+    def __len__(self) -> int:
+        return len(self.ids)
+
+
+def join(requests: list[Request]) -> Request:
+    """Return the requests one after another, with positions padded to the longest list."""
+    requests = [request for request in requests if len(request)]
+    if not requests:
+        return Request(np.empty(0, np.int64), np.empty((0, 1, 2), np.float32), np.empty((0, 2), np.float32))
+    most = max(request.centres.shape[1] for request in requests)
+    centres = np.full((sum(map(len, requests)), most, 2), np.nan, np.float32)
+    at = 0
+    for request in requests:
+        centres[at : at + len(request), : request.centres.shape[1]] = request.centres
+        at += len(request)
+    return Request(
+        np.concatenate([request.ids for request in requests]),
+        centres,
+        np.concatenate([request.half for request in requests]),
+    )
+
+
+# Where a text may stand about its mark: right first, as readers expect, then the corners, left, above, below.
+_AROUND = np.array(
+    [[1, 0], [0.8, -0.8], [0.8, 0.8], [-1, 0], [-0.8, -0.8], [-0.8, 0.8], [0, -1], [0, 1]], dtype=np.float32
+)
+
+
+def around(xy: F32, radius: F32, half: F32) -> F32:
+    """Return the eight positions (N, 8, 2) of texts about discs at `xy` (N, 2) with `radius` (N,)."""
+    reach = (radius + np.float32(GAP))[:, None, None] * _AROUND
+    corner = np.sign(_AROUND)
+    return np.asarray(xy[:, None, :] + reach + corner * half[:, None, :], dtype=np.float32)
+
+
+def _hits_discs(centres: F32, half: F32, discs: F32, margin: float) -> NDArray[np.bool_]:
+    """Return which boxes (N,) come within `margin` of a disc; `discs` (M, 3) are x, y, radius."""
+    if not len(discs) or not len(centres):
+        return np.zeros(len(centres), dtype=bool)
+    dx = np.abs(centres[:, 0, None] - discs[:, 0])
+    dx -= half[:, 0, None]
+    dy = np.abs(centres[:, 1, None] - discs[:, 1])
+    dy -= half[:, 1, None]
+    np.maximum(dx, 0.0, out=dx)
+    np.maximum(dy, 0.0, out=dy)
+    dx *= dx
+    dy *= dy
+    dx += dy
+    return np.asarray((dx < np.square(discs[:, 2] + np.float32(margin))).any(axis=1))
+
+
+def _overlap(c1: F32, h1: F32, c2: F32, h2: F32, margin: float) -> NDArray[np.bool_]:
+    """Return which boxes (N, M) overlap or come within `margin` of each other."""
+    m = np.float32(margin)
+    near_x = np.abs(c1[:, 0, None] - c2[:, 0]) < h1[:, 0, None] + (h2[:, 0] + m)
+    near_y = np.abs(c1[:, 1, None] - c2[:, 1]) < h1[:, 1, None] + (h2[:, 1] + m)
+    return np.asarray(near_x & near_y)
+
+
+def place(
+    request: Request,
+    discs: F32,
+    frame: tuple[float, float, float, float],
+    previous: Placement = NOWHERE,
+    boxes: F32 | None = None,
+) -> tuple[I8, Placement]:
+    """Return the position given to each text (N,), −1 for those without room, and the memory for the next frame.
+
+    `discs` (M, 3) are marks (x, y, radius) and `boxes` (M, 4) rectangles (x, y, half-width, half-height) that no text
+    may cover; every text lies within `frame`.
+    """
+    n, k = request.centres.shape[:2]
+    choice = np.full(n, -1, np.int8)
+    if not n:
+        return choice, NOWHERE
+    left, top, right, bottom = frame
+    half = request.half
+    fixed = np.empty((0, 4), np.float32) if boxes is None else boxes
+    low = np.array([left, top], np.float32) + half
+    high = np.array([right, bottom], np.float32) - half
+    # NaN compares false, so that a position that does not exist is not on the page either.
+    allowed = np.asarray(((request.centres >= low[:, None]) & (request.centres <= high[:, None])).all(axis=2))
+
+    # Incumbents keep their positions unless one of higher rank, a mark or the edge of the map is in the way.
+    recalled = previous.recall(request.ids)
+    old = np.flatnonzero((recalled >= 0) & (recalled < k))
+    old = old[allowed[old, recalled[old]]]
+    at, size = request.centres[old, recalled[old]], half[old]
+    stands = ~_hits_discs(at, size, discs, 0.0)
+    if len(fixed):
+        stands &= ~_overlap(at, size, fixed[:, :2], fixed[:, 2:], 0.0).any(axis=1)
+    old, at, size = old[stands], at[stands], size[stands]
+    clash = _overlap(at, size, at, size, 0.0)
+    # Row i against the higher ranks, columns below i.
+    stays = ~np.tril(clash, -1).any(axis=1)
+    choice[old[stays]] = recalled[old[stays]]
+
+    # Newcomers and the displaced: all positions against all that is fixed by now, in one go.
+    new = np.flatnonzero(choice < 0)
+    if len(new):
+        order = np.tile(np.arange(k), (len(new), 1))
+        again = recalled[new]
+        remembered = np.flatnonzero((again > 0) & (again < k))
+        order[remembered, 0], order[remembered, again[remembered]] = again[remembered], 0
+        flat_text, flat_position = np.repeat(np.arange(len(new)), k), order.reshape(-1)
+        usable = allowed[new[flat_text], flat_position]
+        flat_text, flat_position = flat_text[usable], flat_position[usable]
+        at = request.centres[new[flat_text], flat_position]
+        size = half[new[flat_text]]
+        taken = _hits_discs(at, size, discs, MARGIN)
+        kept = np.flatnonzero(choice >= 0)
+        taken |= _overlap(at, size, request.centres[kept, choice[kept]], half[kept], MARGIN).any(axis=1)
+        if len(fixed):
+            taken |= _overlap(at, size, fixed[:, :2], fixed[:, 2:], MARGIN).any(axis=1)
+        free = np.flatnonzero(~taken)
+        if len(free):
+            _settle(new, flat_text[free], flat_position[free], at[free], size[free], choice)
+    shown = np.flatnonzero(choice >= 0)
+    order_of_ids = np.argsort(request.ids[shown])
+    return choice, Placement(request.ids[shown][order_of_ids], choice[shown][order_of_ids])
+
+
+def _settle(
+    new: NDArray[np.intp], texts: NDArray[np.intp], positions: NDArray[np.intp], at: F32, size: F32, out: I8
+) -> None:
+    """Give each newcomer in order of rank its first free position that no newcomer before it has taken."""
+    # Few newcomers, or the first frame of all: a plain loop over a grid of buckets as large as a usual text.
+    bucket = 64.0
+    taken: dict[tuple[int, int], list[tuple[float, float, float, float]]] = {}
+    done = -1
+    rows = zip(texts.tolist(), positions.tolist(), at.tolist(), size.tolist(), strict=True)
+    for text, position, (x, y), (w, h) in rows:
+        if text == done:
+            continue
+        columns = range(int((x - w - MARGIN) // bucket), int((x + w + MARGIN) // bucket) + 1)
+        lines = range(int((y - h - MARGIN) // bucket), int((y + h + MARGIN) // bucket) + 1)
+        cells = [(i, j) for i in columns for j in lines]
+        blocked = any(
+            abs(x - x2) < w + w2 + MARGIN and abs(y - y2) < h + h2 + MARGIN
+            for cell in cells
+            for x2, y2, w2, h2 in taken.get(cell, ())
+        )
+        if blocked:
+            continue
+        for cell in cells:
+            taken.setdefault(cell, []).append((x, y, w, h))
+        out[new[text]] = position
+        done = text
