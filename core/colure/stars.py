@@ -206,7 +206,7 @@ class Catalogue:
     @cached_property
     def fine(self) -> NDArray[Any]:
         """The finer records of the naked-eye stars, sorted by row number."""
-        return self._load("naked_eye.npy", FINE, 1)
+        return self._load("fine.npy", FINE, 1)
 
     @cached_property
     def fast(self) -> NDArray[Any]:
