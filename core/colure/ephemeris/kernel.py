@@ -65,9 +65,10 @@ class Kernel:
         return self.name
 
     def uncertainty_arcsec(
-        self, bodies: Sequence[str], tdb1: Days, tdb2: Days = 0.0, distance: ArrayLike = 1.0
+        self, bodies: Sequence[str], tdb1: Days, tdb2: Days = 0.0, distance: ArrayLike | None = None
     ) -> Float:
         """Return bounds (bodies, *shape) in arcsec; a kernel has no error of fit, the other terms remain."""
+        check_bodies(bodies, self.bodies, f"kernel '{self.name}'")
         return uncertainty.bound(bodies, np.asarray(tdb1) + np.asarray(tdb2), distance)
 
     def close(self) -> None:

@@ -65,11 +65,11 @@ class Ephemeris(Protocol):
         ...
 
     def uncertainty_arcsec(
-        self, bodies: Sequence[str], tdb1: Days, tdb2: Days = 0.0, distance: ArrayLike = 1.0
+        self, bodies: Sequence[str], tdb1: Days, tdb2: Days = 0.0, distance: ArrayLike | None = None
     ) -> Float:
         """Return bounds (bodies, *shape) on the error of a geocentric direction in seconds of arc.
 
-        `distance` is the distance of the body in au, (bodies, *shape) or a scalar.
+        `distance` is that of the body in au, (bodies, *shape) or a scalar; None takes the least it can be.
         """
         ...
 
