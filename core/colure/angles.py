@@ -9,6 +9,7 @@ import re
 from dataclasses import dataclass
 
 from colure.errors import AngleError
+from colure.wording import one_line
 
 MINUS = "−"
 UNKNOWN = "—"
@@ -60,23 +61,23 @@ class _Angle:
 
 def _tokens(text: str, what: str) -> tuple[str, list[_Token]]:
     """Return the normalised text and its numbers; raise AngleError at the first thing that is neither."""
-    shown = text.strip()
-    if not shown:
+    shown, length = one_line(text), len(text.strip())
+    if not length:
         raise AngleError(f"{what}: nothing was given; expected an angle such as 129.4, 12h34m56s or −0°30′")
-    if len(shown) > _LONGEST:
-        raise AngleError(f"{what} '{shown[:40]}…': {len(shown)} characters long; expected an angle")
-    plain = shown.translate(_SIGNS).casefold().replace("′′", "″")
+    if length > _LONGEST:
+        raise AngleError(f"{what} '{shown}': {length} characters long; expected an angle")
+    plain = text.strip().translate(_SIGNS).casefold().replace("′′", "″")
     plain = _WORD.sub(lambda m: _WORDS[m[1]], re.sub(r"(?<=\d)d(?=[\d\s.]|\Z)", "°", plain))
     plain = _ALMANAC.sub(r"\1.\3\2", plain)
     tokens, at = [], 0
     while at < len(plain):
         found = _TOKEN.match(plain, at)
         if found is None:
-            rest = plain[at:].strip()
+            rest = one_line(plain[at:])
             if not rest:
                 break
             raise AngleError(
-                f"{what} '{shown}': '{rest[:12]}' is no part of an angle; expected such as 129.4 or 12h34m56s"
+                f"{what} '{shown}': '{one_line(rest, 12)}' is no part of an angle; expected such as 129.4 or 12h34m56s"
             )
         tokens.append(_Token(bool(found["colon"]), found["sign"] or "", found["number"], found["unit"] or "", at))
         at = found.end()
@@ -177,9 +178,9 @@ def _latitude(tokens: list[_Token], shown: str, what: str) -> float:
 
 def parse_angle(text: str, what: str = "angle") -> float:
     """Return degrees of an angle in degrees, decimal or sexagesimal, with its sign; `what` names it in errors."""
-    angle = _angle(_tokens(text, what)[1], text.strip(), what)
+    angle = _angle(_tokens(text, what)[1], one_line(text), what)
     if angle.unit == "h":
-        raise AngleError(f"{what} '{text.strip()}': in hours; expected degrees")
+        raise AngleError(f"{what} '{one_line(text)}': in hours; expected degrees")
     return angle.value
 
 
@@ -189,19 +190,19 @@ def parse_longitude(text: str, *, equatorial: bool = False, what: str = "longitu
     Decimals are degrees. A sexagesimal text without h or ° is degrees, but in an equatorial frame an AngleError that
     shows both readings.
     """
-    return _longitude(_tokens(text, what)[1], text.strip(), equatorial, what)
+    return _longitude(_tokens(text, what)[1], one_line(text), equatorial, what)
 
 
 def parse_latitude(text: str, what: str = "latitude") -> float:
     """Return degrees, −90 to 90, of a latitude or declination, decimal or sexagesimal."""
-    return _latitude(_tokens(text, what)[1], text.strip(), what)
+    return _latitude(_tokens(text, what)[1], one_line(text), what)
 
 
 def parse_extent(text: str, what: str = "size") -> float:
     """Return the degrees of a size such as `3`, `2.5°`, `30′` or `10″`; AngleError unless positive."""
     value = parse_angle(text, what)
     if not value > 0.0:
-        raise AngleError(f"{what} '{text.strip()}': expected more than zero")
+        raise AngleError(f"{what} '{one_line(text)}': expected more than zero")
     return value
 
 
@@ -212,19 +213,20 @@ def parse_position(text: str, *, equatorial: bool) -> tuple[float, float]:
     middle. `equatorial` says whether the longitude is a right ascension; see `parse_longitude`.
     """
     what = "position"
-    shown = text.strip()
+    shown = one_line(text)
     halves = text.split(",")
     if len(halves) == 2:
         pieces = [
-            (_tokens(half, name)[1], half.strip()) for half, name in zip(halves, ("longitude", "latitude"), strict=True)
+            (_tokens(half, name)[1], one_line(half))
+            for half, name in zip(halves, ("longitude", "latitude"), strict=True)
         ]
     elif len(halves) > 2:
-        raise AngleError(f"{what} '{shown[:60]}': {len(halves) - 1} commas; expected LON LAT, with at most one between")
+        raise AngleError(f"{what} '{shown}': {len(halves) - 1} commas; expected LON LAT, with at most one between")
     else:
         plain, tokens = _tokens(text, what)
         cut = _cut(tokens, shown)
         at = tokens[cut].start
-        pieces = [(tokens[:cut], plain[:at].strip()), (tokens[cut:], plain[at:].strip())]
+        pieces = [(tokens[:cut], one_line(plain[:at])), (tokens[cut:], one_line(plain[at:]))]
     (lon_tokens, lon_text), (lat_tokens, lat_text) = pieces
     lon = _longitude(lon_tokens, lon_text, equatorial, "longitude")
     return lon, _latitude(lat_tokens, lat_text, "latitude")

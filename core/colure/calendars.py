@@ -35,7 +35,8 @@ def _whole(what: str, value: ArrayLike) -> Int:
         array = numbers
     if np.any(np.abs(array) > YEAR_LIMIT):
         raise MomentError(f"{what} {array[np.abs(array) > YEAR_LIMIT].flat[0]:g}: beyond ±{YEAR_LIMIT}")
-    return np.asarray(array, dtype=np.int64)
+    whole: Int = np.asarray(array, dtype=np.int64)
+    return whole
 
 
 def _check_calendar(calendar: str) -> None:
@@ -49,7 +50,9 @@ def _number(year: Int, month: Int, day: Int, gregorian: bool) -> Int:
     y = year + 4800 - shift
     m = month + 12 * shift - 3
     days = day + (153 * m + 2) // 5 + 365 * y + y // 4
-    return days - y // 100 + y // 400 - 32045 if gregorian else days - 32083
+    if gregorian:
+        days = days - y // 100 + y // 400 - 32045 + 32083
+    return np.asarray(days - 32083)
 
 
 def _date(number: Int, gregorian: bool) -> tuple[Int, Int, Int]:

@@ -26,16 +26,16 @@ def _table() -> tuple[Int, Int]:
 
 
 @cache
-def _lists() -> tuple[list[int], list[int], list[float]]:
-    """Return the table as lists, with the TAI (MJD) of each step, for single moments."""
+def _lists() -> tuple[list[int], list[int]]:
+    """Return the table as lists, for single moments."""
     days, offsets = _table()
-    return days.tolist(), offsets.tolist(), (days + offsets / DAY).tolist()
+    return days.tolist(), offsets.tolist()
 
 
 def tai_minus_utc(mjd: Int | int) -> Int | int:
     """Return TAI−UTC in whole seconds during UTC days given by their MJD; the caller keeps to 1972 and later."""
     if isinstance(mjd, int):
-        days, offsets, _ = _lists()
+        days, offsets = _lists()
         return offsets[max(bisect_right(days, mjd) - 1, 0)]
     table_days, table_offsets = _table()
     return np.asarray(table_offsets[np.maximum(np.searchsorted(table_days, mjd, side="right") - 1, 0)])
@@ -52,10 +52,13 @@ def split_tt(jd1: Float | float, jd2: Float | float) -> tuple[Int | int, Float |
     `jd1` is a midnight (ends in .5) and `jd2` a part of a day, so that nothing is lost to rounding (1e-11 s).
     """
     if isinstance(jd1, float) and isinstance(jd2, float):
-        days, offsets, starts = _lists()
+        days, offsets = _lists()
         base = round(jd1 - 2400000.5)
         tai = jd2 * DAY - TT_MINUS_TAI
-        i = max(bisect_right(starts, base + tai / DAY) - 1, 0)
+        # Compare in seconds from a step: an MJD in one number would be good to a microsecond only.
+        i = max(bisect_right(days, base + 1) - 1, 0)
+        if i > 0 and (base - days[i]) * DAY + tai < offsets[i]:
+            i -= 1
         seconds = tai - offsets[i]
         day = base + int(seconds // DAY)
         last = days[i + 1] - 1 if i + 1 < len(days) else day
@@ -64,8 +67,9 @@ def split_tt(jd1: Float | float, jd2: Float | float) -> tuple[Int | int, Float |
     table_days, table_offsets = _table()
     base_days = np.rint(np.asarray(jd1) - 2400000.5).astype(np.int64)
     tai_seconds = np.asarray(jd2) * DAY - TT_MINUS_TAI
-    steps = table_days + table_offsets / DAY
-    index = np.maximum(np.searchsorted(steps, base_days + tai_seconds / DAY, side="right") - 1, 0)
+    index = np.maximum(np.searchsorted(table_days, base_days + 1, side="right") - 1, 0)
+    early = (base_days - table_days[index]) * DAY + tai_seconds < table_offsets[index]
+    index = np.maximum(index - early, 0)
     of_day = tai_seconds - table_offsets[index]
     utc_day = base_days + np.floor(of_day / DAY).astype(np.int64)
     ends = np.append(table_days[1:] - 1, np.iinfo(np.int64).max)
@@ -75,6 +79,7 @@ def split_tt(jd1: Float | float, jd2: Float | float) -> tuple[Int | int, Float |
 
 def join_tt(mjd: Int | int, seconds: Float | float) -> tuple[Float | float, Float | float]:
     """Return TT Julian dates (midnight, part of a day, which may pass 1) of UTC days and seconds of the day."""
-    tt2: Float | float = (seconds + tai_minus_utc(mjd) + TT_MINUS_TAI) / DAY
-    tt1: Float | float = mjd + 2400000.5
-    return tt1, tt2
+    clock = seconds + tai_minus_utc(mjd) + TT_MINUS_TAI
+    if isinstance(mjd, int) and isinstance(clock, float):
+        return mjd + 2400000.5, clock / DAY
+    return np.asarray(mjd, dtype=np.float64) + 2400000.5, np.asarray(clock, dtype=np.float64) / DAY

@@ -13,6 +13,7 @@ from colure import calendars, deltat, leapseconds, moment_text, orientation, tim
 from colure.arrays import Bool, Float
 from colure.errors import MomentError
 from colure.tdb import tdb_minus_tt
+from colure.wording import one_line
 
 SCALES = ("UTC", "UT1", "TT", "TDB")
 FIRST_JD = -104826.5
@@ -97,7 +98,9 @@ class Moment:
             return cls._from_days(number, parts.seconds, parts.scale, calendar, parts.offset)
         except MomentError as fault:
             message = str(fault)
-            raise MomentError(message if text in message else f"moment '{text.strip()[:60]}': {message}") from None
+            raise MomentError(
+                message if message.startswith("moment") else f"moment '{one_line(text)}': {message}"
+            ) from None
 
     @classmethod
     def from_jd(

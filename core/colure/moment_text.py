@@ -8,6 +8,7 @@ import numpy as np
 
 from colure import calendars
 from colure.errors import MomentError
+from colure.wording import one_line
 
 EXPECTED = "expected such as 2026-12-01 21:36 UTC, -1200-03-30, JD 2455200.5 TT, J2000.0 or now"
 
@@ -41,12 +42,12 @@ class Parsed:
 
 def parse(text: str) -> Parsed:
     """Return the parts of a moment's text; raise MomentError that says what is wrong and what was expected."""
-    shown = text.strip()[:60]
+    shown = one_line(text)
     plain = text.translate(_PLAIN_SIGNS).strip()
     if not plain:
         raise MomentError(f"moment: nothing was given; {EXPECTED}")
     if len(plain) > 100:
-        raise MomentError(f"moment '{shown}…': too long; {EXPECTED}")
+        raise MomentError(f"moment '{shown}': too long; {EXPECTED}")
     body, scale, calendar = _trailing(plain, shown)
     if body.casefold() == "now":
         return Parsed("now", scale, calendar)
@@ -82,6 +83,8 @@ def _trailing(plain: str, shown: str) -> tuple[str, str | None, str | None]:
     words = plain.replace("(", " ").replace(")", " ").split()
     scale: str | None = None
     calendar: str | None = None
+    if not words:
+        raise MomentError(f"moment '{shown}': not understood; {EXPECTED}")
     while len(words) > 1:
         word = words[-1].casefold()
         if word == "calendar" and words[-2].casefold() in calendars.CALENDARS:

@@ -9,6 +9,7 @@ from colure import calendars
 from colure.arrays import Float
 from colure.errors import MomentError
 from colure.moment import Moment
+from colure.wording import one_line
 
 MOST = 5_000_000
 """The most moments that one range may have."""
@@ -45,14 +46,14 @@ class Step:
         found = _TEXT.match(text.replace("−", "-").strip()) if len(text) < 60 else None
         unit = _ALIASES.get(found[2].casefold()) if found else None
         if found is None or unit is None:
-            raise MomentError(f"step '{text.strip()[:60]}': expected a number and a unit ({', '.join(UNITS)})")
+            raise MomentError(f"step '{one_line(text)}': expected a number and a unit ({', '.join(UNITS)})")
         number = float(found[1]) if found[1] else 1.0
         if number == 0.0:
-            raise MomentError(f"step '{text.strip()}': zero leads nowhere")
+            raise MomentError(f"step '{one_line(text)}': zero leads nowhere")
         if unit in _MONTHS and number != int(number):
-            raise MomentError(f"step '{text.strip()}': a calendar step is a whole number of {unit}")
+            raise MomentError(f"step '{one_line(text)}': a calendar step is a whole number of {unit}")
         if abs(number) > 1e12:
-            raise MomentError(f"step '{text.strip()}': too large")
+            raise MomentError(f"step '{one_line(text)}': too large")
         return cls(number, unit)
 
     def __str__(self) -> str:
@@ -87,14 +88,13 @@ class Step:
             number = calendars.day_number(year, month, day, start.calendar)
             moved = steps * self.number
             whole = np.floor(moved)
-            jd1: Float = number - 0.5 + whole
-            part: Float = clock + (moved - whole)
-            return Moment.from_jd(jd1, part, scale, start.calendar)
+            midnight = np.asarray(number - 0.5 + whole, dtype=np.float64)
+            return Moment.from_jd(midnight, clock + (moved - whole), scale, start.calendar)
         months = np.rint(year * 12 + month - 1 + steps * self.number * _MONTHS[self.unit])
         if np.any(np.abs(months) > 12e5):
             raise MomentError(f"step {self}: leads beyond the years −4999 to 4999")
-        midnight: Float = calendars.nearest_day(months // 12, months % 12 + 1, day, start.calendar) - 0.5
-        return Moment.from_jd(midnight, clock, scale, start.calendar)
+        days = calendars.nearest_day(months // 12, months % 12 + 1, day, start.calendar)
+        return Moment.from_jd(np.asarray(days, dtype=np.float64) - 0.5, clock, scale, start.calendar)
 
 
 def moments(start: Moment, until: Moment, step: str) -> Moment:
