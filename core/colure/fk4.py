@@ -102,7 +102,7 @@ def from_fk5(
 ) -> Float:
     """Return unit vectors (..., 3) of FK4 for ones on the axes of FK5 J2000: the exact inverse of `to_fk5`."""
     at = equinox if epoch is None else epoch
-    p = unit(_rotate(np.linalg.inv(_to_fk5_matrix(at)), vectors))
+    p = unit(_rotate(np.asarray(np.linalg.inv(_to_fk5_matrix(at)), dtype=np.float64), vectors))
     if equinox != 1950.0:
         p = p @ precession.newcomb_matrix(1950.0, equinox).T
     return add_e_terms(p, equinox, at) if e_terms else p

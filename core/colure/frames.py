@@ -139,7 +139,7 @@ def _of_date(frame: Frame, moment: Moment, site: Ground | None) -> Float:
             from colure import bodies
 
             sun = bodies.sun_longitude(moment)
-            return np.asarray(rotation_z(sun) @ ofdate.true_ecliptic_matrix(moment, model))
+            return ofdate.turned(ofdate.true_ecliptic_matrix(moment, model), sun)
         case "cirs", _:
             return ofdate.cirs_matrix(moment, model)
         case "horizon", _ if site is not None:

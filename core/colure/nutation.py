@@ -1,18 +1,20 @@
 """Nutation in longitude and obliquity: IAU 2000A as adjusted to IAU 2006, exact for few moments, tabled for many."""
 
+from functools import lru_cache
+
 import erfa
 import numpy as np
 
 from colure import nutationtable
-from colure.arrays import Float, rotation_x, rotation_z
+from colure.arrays import Float
 from colure.errors import FrameError, SpanError
 from colure.precession import Instant, julian_years, tt_parts
 
 SERIES = ("iau2000a", "iau1980")
 SPAN = (-8000.0, 12000.0)
 """Julian years. The series was fitted to a century; its arguments are extrapolated beyond, a degree at 5,000 years."""
-FEW = 24
-"""Up to this many moments the series itself (4 µs each) is as quick as the table."""
+FEW = 2
+"""Up to this many moments the series itself is as quick as the table."""
 
 
 def series_of(model: str) -> str:
@@ -34,9 +36,17 @@ def nutation(at: Instant, series: str = "iau2000a") -> tuple[Float, Float]:
         raise SpanError(f"nutation: a year is outside the span of the series, {SPAN[0]:g} to {SPAN[1]:g}")
     if series == "iau1980":
         return _pair(erfa.nut80(jd1, jd2))
+    if isinstance(jd1, float) and isinstance(jd2, float):
+        return _scalar(jd1, jd2)
     if years.size <= FEW:
         return _pair(erfa.nut06a(jd1, jd2))
     return nutationtable.interpolate(jd1, jd2)
+
+
+@lru_cache(maxsize=64)
+def _scalar(jd1: float, jd2: float) -> tuple[Float, Float]:
+    # One moment asks for its nutation several times: for its equator, its sidereal time, its obliquity.
+    return _pair(erfa.nut06a(jd1, jd2))
 
 
 def _pair(values: tuple[Float, Float]) -> tuple[Float, Float]:
@@ -45,4 +55,4 @@ def _pair(values: tuple[Float, Float]) -> tuple[Float, Float]:
 
 def matrix(mean_obliquity: Float, dpsi: Float, deps: Float) -> Float:
     """Return the matrix (*shape, 3, 3) from the mean to the true equator and equinox of date."""
-    return np.asarray(rotation_x(-(mean_obliquity + deps)) @ rotation_z(-dpsi) @ rotation_x(mean_obliquity))
+    return np.asarray(erfa.numat(mean_obliquity, dpsi, deps))

@@ -4,7 +4,7 @@ import erfa
 import numpy as np
 
 from colure import nutation, obliquity, precession
-from colure.arrays import Float, rotation_z
+from colure.arrays import Float
 from colure.errors import FrameError
 from colure.precession import Instant, tt_parts
 
@@ -16,20 +16,29 @@ def true_equator_matrix(at: Instant, model: str = "auto") -> Float:
     Agrees with ERFA's `pnm06a` to 0.01 mas within 200 years of J2000.
     """
     dpsi, deps = _nutation(at, model)
-    return np.asarray(
-        nutation.matrix(obliquity.mean(at, model), dpsi, deps) @ precession.bias_precession_matrix(at, model)
-    )
+    mean = precession.bias_precession_matrix(at, model)
+    return np.asarray(erfa.rxr(nutation.matrix(obliquity.mean(at, model), dpsi, deps), mean))
 
 
 def true_ecliptic_matrix(at: Instant, model: str = "auto") -> Float:
     """Return the matrix (*shape, 3, 3) from ICRS axes to the mean ecliptic of date, longitude from the true equinox."""
-    return np.asarray(rotation_z(-_nutation(at, model)[0]) @ precession.ecliptic_matrix(at, model))
+    return turned(precession.ecliptic_matrix(at, model), -_nutation(at, model)[0])
 
 
 def cirs_matrix(at: Instant, model: str = "auto") -> Float:
     """Return the matrix (*shape, 3, 3) from ICRS axes to the celestial intermediate system (CIP and CIO) of date."""
-    true = true_equator_matrix(at, model)
-    return np.asarray(rotation_z(-origins(at, model)) @ true)
+    return turned(true_equator_matrix(at, model), -origins(at, model))
+
+
+def turned(matrix: Float, angle: Float | float) -> Float:
+    """Return matrices (*shape, 3, 3) whose target axes are turned by `angle` (*shape) about their z."""
+    # Two rows change: a product of whole matrices would cost five times as much.
+    c, s = np.cos(angle)[..., None], np.sin(angle)[..., None]
+    out = np.empty(np.broadcast_shapes(matrix.shape, (*np.shape(angle), 3, 3)))
+    out[..., 0, :] = c * matrix[..., 0, :] + s * matrix[..., 1, :]
+    out[..., 1, :] = c * matrix[..., 1, :] - s * matrix[..., 0, :]
+    out[..., 2, :] = matrix[..., 2, :]
+    return out
 
 
 def origins(at: Instant, model: str = "auto") -> Float:

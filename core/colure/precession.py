@@ -11,13 +11,13 @@
 iau2006 ends where it is 30″ from the long-term model, that of iau1976 where its obliquity is 15″ from it.
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from typing import TypeAlias
 
 import erfa
 import numpy as np
 
-from colure.arrays import ARCSEC, Float, rotation_x, rotation_z
+from colure.arrays import ARCSEC, Bool, Float, rotation_x, rotation_z
 from colure.errors import FrameError, SpanError, near_names
 from colure.moment import Moment
 
@@ -80,13 +80,13 @@ def model_at(at: Instant, model: str = "auto") -> str:
     return "iau2006, vondrak2011" if np.any(far) else "iau2006"
 
 
-def is_far(years: Float) -> Float:
+def is_far(years: Float) -> Bool:
     """Return where the automatic model leaves IAU 2006 for the long-term one."""
     return np.asarray(np.abs(years - 2000.0) > SEAM_YEARS)
 
 
 def by_model(
-    at: Instant, model: str, functions: dict[str, Callable[[Float | float, Float | float], Float]], tail: int
+    at: Instant, model: str, functions: Mapping[str, Callable[[Float | float, Float | float], Float]], tail: int
 ) -> Float:
     """Evaluate the function of the model chosen; under `auto` each side of the seam by its own.
 

@@ -6,7 +6,7 @@ import erfa
 import numpy as np
 
 from colure import ofdate
-from colure.arrays import DEG, TWO_PI, Float, rotation_z
+from colure.arrays import DEG, TWO_PI, Float
 from colure.moment import Moment
 
 
@@ -66,7 +66,7 @@ def terrestrial_matrix(moment: Moment, *, polar_motion: bool = True, model: str 
 
     By the equinox: polar motion × sidereal time × nutation × precession × bias; equal to ERFA's `c2t06a` to 0.01 mas.
     """
-    turned = rotation_z(gast(moment, model)) @ ofdate.true_equator_matrix(moment, model)
+    turned = ofdate.turned(ofdate.true_equator_matrix(moment, model), gast(moment, model))
     return np.asarray(polar_motion_matrix(moment) @ turned if polar_motion else turned)
 
 
