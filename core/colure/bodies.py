@@ -7,6 +7,7 @@ into one dictionary per body and moment.
 from collections.abc import Sequence
 from typing import Any
 
+import erfa
 import numpy as np
 
 from colure import appearance, constellations, frames, horizon, phases, photometry, refraction, sidereal
@@ -49,6 +50,22 @@ def longitudes(
     seen = reduce_bodies(bodies, moment, observer=observer or Observer(), place=place, ephemeris=ephemeris)
     matrix = frames.rotation(frame, moment, observer.site if observer else None).matrix
     return turned(seen.vectors, matrix)
+
+
+def apparent_ecliptic(
+    bodies: Sequence[str], moment: Moment, *, ephemeris: Ephemeris | None = None
+) -> tuple[Float, Float]:
+    """Return apparent geocentric longitudes and latitudes (bodies, *shape), rad, true equinox and ecliptic of date."""
+    return longitudes(bodies, moment, ephemeris=ephemeris)
+
+
+def moon_mean_node(moment: Moment) -> Float:
+    """Return the longitude (*shape) of the mean ascending node of the Moon's orbit, rad, mean equinox of date.
+
+    IERS Conventions 2003 (Simon et al. 1994); within 0.01° over four thousand years about J2000.
+    """
+    tdb1, tdb2 = moment.tdb
+    return np.asarray(erfa.faom03((np.asarray(tdb1) - 2451545.0 + tdb2) / 36525.0) % TWO_PI)
 
 
 def turned(vectors: Float, matrix: Float) -> tuple[Float, Float]:

@@ -7,6 +7,7 @@ import erfa
 import numpy as np
 
 from colure.arrays import DEG, TWO_PI, Float
+from colure.ephemeris import KM_PER_AU
 from colure.errors import SiteError, near_names
 
 Angle = Float | float
@@ -22,6 +23,14 @@ def hadec(az: Angle, alt: Angle, lat: Angle) -> tuple[Float, Float]:
     """Return hour angle (0 to 2π) and declination of an azimuth and altitude."""
     ha, dec = erfa.ae2hd(az, alt, lat)
     return np.asarray(ha) % TWO_PI, np.asarray(dec)
+
+
+def geocentric_site(lat: Angle, height_m: Angle, sidereal: Angle) -> Float:
+    """Return the vector (..., 3), au, from the Earth's centre to a site, in the equator of date (WGS84).
+
+    `sidereal` is the local sidereal time; with the longitude in its place the axes are Earth-fixed.
+    """
+    return np.asarray(erfa.gd2gc(1, sidereal, lat, height_m)) / (KM_PER_AU * 1000.0)
 
 
 def parallactic_angle(hour_angle: Angle, dec: Angle, lat: Angle) -> Float:

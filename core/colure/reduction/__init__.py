@@ -7,9 +7,16 @@ from colure.reduction.observer import (
     Observer,
     ObserverState,
     observer_state,
-    terrestrial_matrix,
 )
-from colure.reduction.starpath import StarContext, apply_context, reduce_stars, space_velocity, star_context
+from colure.reduction.starpath import (
+    StarContext,
+    apply_context,
+    reduce_stars,
+    space_motion,
+    space_velocity,
+    star_context,
+    unreduce,
+)
 from colure.reduction.steps import GEOMETRY, OPTICS, PLACES
 
 __all__ = [
@@ -28,7 +35,8 @@ __all__ = [
     "observer_state",
     "reduce_bodies",
     "reduce_stars",
+    "space_motion",
     "space_velocity",
     "star_context",
-    "terrestrial_matrix",
+    "unreduce",
 ]

@@ -2,14 +2,13 @@
 
 from dataclasses import dataclass
 
-import erfa
 import numpy as np
 
 from colure import sidereal
 from colure.arrays import DEG, Float
-from colure.ephemeris import KM_PER_AU, Ephemeris
+from colure.ephemeris import Ephemeris
 from colure.errors import SiteError
-from colure.frames import Frame, rotation
+from colure.horizon import geocentric_site
 from colure.moment import Moment
 from colure.refraction import Atmosphere, standard_pressure
 from colure.sites import Site
@@ -19,20 +18,21 @@ C_AU_DAY = 173.1446326846693
 """Speed of light, au per day: 299792458 m/s × 86400 s / 149597870700 m."""
 EARTH_TURN_RAD_DAY = 2.0 * np.pi * 1.00273781191135448
 """Rate of the Earth rotation angle against UT1 (IAU 2000)."""
-TRUE_OF_DATE = Frame.parse("equator/true/date")
 
 
 @dataclass(frozen=True, slots=True)
 class Observer:
     """Where the observer stands: a centre, or a site on the Earth.
 
-    `polar_motion` switches the IERS pole of a site; `air` overrides the site's atmosphere for the observed place.
+    `polar_motion` switches the IERS pole of a site; `air` overrides the site's atmosphere for the observed place;
+    `model` is the precession that carries the site ("auto", or a name of `colure.precession`).
     """
 
     origin: str = "earth"
     site: Site | None = None
     polar_motion: bool = True
     air: Atmosphere | None = None
+    model: str = "auto"
 
     def __post_init__(self) -> None:
         if self.origin not in ORIGINS:
@@ -73,26 +73,10 @@ class ObserverState:
     to_itrs: Float | None = None
 
 
-def terrestrial_matrix(moment: Moment, *, polar_motion: bool = True) -> Float:
-    """Return the matrices (*shape, 3, 3) from ICRS axes to the Earth-fixed ITRS, with or without polar motion."""
-    true = rotation(TRUE_OF_DATE, moment).matrix
-    angle = np.asarray(sidereal.gast(moment), dtype=np.float64)
-    c, s = np.cos(angle), np.sin(angle)
-    turned = np.empty(np.broadcast_shapes(true.shape, (*angle.shape, 3, 3)))
-    turned[..., 0, :] = c[..., None] * true[..., 0, :] + s[..., None] * true[..., 1, :]
-    turned[..., 1, :] = c[..., None] * true[..., 1, :] - s[..., None] * true[..., 0, :]
-    turned[..., 2, :] = true[..., 2, :]
-    if not polar_motion:
-        return turned
-    xp, yp = moment.polar_motion
-    locator = erfa.sp00(*moment.tt)
-    return np.asarray(erfa.pom00(xp, yp, locator) @ turned)
-
-
 def _site_vectors(site: Site, matrix: Float) -> tuple[Float, Float, Float]:
     """Return position (au), velocity (au/day) and zenith, each (*shape, 3), of a site about the Earth's centre."""
     lon, lat = site.lon_deg * DEG, site.lat_deg * DEG
-    fixed = np.asarray(erfa.gd2gc(1, lon, lat, site.height_m)) / (KM_PER_AU * 1000.0)
+    fixed = geocentric_site(lat, site.height_m, lon)
     up = np.array([np.cos(lat) * np.cos(lon), np.cos(lat) * np.sin(lon), np.sin(lat)])
     # v = ω × r about the pole of the Earth-fixed axes; the pole's own motion is 1e-6 of that.
     moving = EARTH_TURN_RAD_DAY * np.array([-fixed[1], fixed[0], 0.0])
@@ -117,7 +101,7 @@ def place_observer(
     """Return the state of an observer about a centre whose barycentric state is already known."""
     if observer.origin != "site" or observer.site is None:
         return ObserverState(centre[0], centre[1], centre[0], centre[1], sun[0], sun[1])
-    matrix = terrestrial_matrix(moment, polar_motion=observer.polar_motion)
+    matrix = sidereal.terrestrial_matrix(moment, polar_motion=observer.polar_motion, model=observer.model)
     offset, motion, zenith = _site_vectors(observer.site, matrix)
     return ObserverState(centre[0] + offset, centre[1] + motion, centre[0], centre[1], sun[0], sun[1], zenith, matrix)
 

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colure import refraction
-from colure.arrays import Float
+from colure.arrays import Float, unit
 from colure.ephemeris import Ephemeris, default
 from colure.moment import Moment
 from colure.reduction.bodypath import GEOCENTRE, check_place
@@ -61,6 +61,15 @@ def space_velocity(
     outward = np.asarray(radial_km_s) * KM_S_AU_YR * np.asarray(parallax)
     velocity = np.asarray(pm_lon)[..., None] * east + np.asarray(pm_lat)[..., None] * north
     return position, velocity + outward[..., None] * position
+
+
+def space_motion(position: Float, velocity: Float, years: Float | float) -> Float:
+    """Return unit directions (n, 3) after `years` of straight motion at constant speed.
+
+    Arguments as `space_velocity` gives them. Exact for any span: perspective acceleration is in the straight line.
+    """
+    moved = position + np.asarray(years, dtype=np.float64)[..., None] * velocity
+    return unit(moved)
 
 
 def star_context(
@@ -189,3 +198,24 @@ def reduce_stars(
         moment, observer=observer, place=place, epoch_jd=epoch_jd, rotation=rotation, ephemeris=ephemeris
     )
     return apply_context(context, position, velocity, parallax)
+
+
+def unreduce(
+    directions: Float,
+    moment: Moment,
+    *,
+    observer: Observer = GEOCENTRE,
+    place: str = "apparent",
+    ephemeris: Ephemeris | None = None,
+) -> Float:
+    """Return the ICRS directions (n, 3) of distant sources that are seen in `directions` (n, 3, ICRS axes) at a place.
+
+    The inverse of `reduce_stars` without motion and parallax, by iteration to 1e-13 rad; close to the Sun's disc,
+    where deflection is not one-to-one, to 1″.
+    """
+    context = star_context(moment, observer=observer, place=place, ephemeris=ephemeris)
+    wanted = unit(np.atleast_2d(np.asarray(directions, dtype=np.float64)))
+    guess = wanted
+    for _ in range(6):
+        guess = unit(guess + (wanted - apply_context(context, guess, None, None)))
+    return guess.reshape(np.shape(directions))

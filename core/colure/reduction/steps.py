@@ -81,14 +81,15 @@ def light_time(state: State) -> None:
     d, v = state.vector, state.body_vel
     from_sun = state.body_pos - state.sun_pos
     r2 = dot3(from_sun, from_sun)
-    pull = -GM_SUN / np.where(r2 > 1e-6, r2 * np.sqrt(r2), np.inf)  # nothing for the Sun itself
+    r = np.sqrt(r2)
+    pull = -GM_SUN / np.where(r2 > 1e-6, r2 * r, np.inf)  # nothing for the Sun itself
     dv = dot3(d, v)
     slow = C_AU_DAY**2 - dot3(v, v)
     tau = (np.sqrt(dv * dv + slow * dot3(d, d)) - dv) / slow
     bend = 0.5 * tau * tau * pull
     state.vector = d - tau * v + bend * from_sun
-    # The Sun that lit the body stood where it was as long ago again; its own motion in that time is 1e-7 au.
-    state.from_sun = from_sun * (1.0 + bend) - tau * (v - state.sun_vel)
+    # The light that the body sends on left the Sun r/c earlier still, which shifts the Sun by some 1e-8 au.
+    state.from_sun = from_sun * (1.0 + bend) - tau * v + (tau + r * (1.0 / C_AU_DAY)) * state.sun_vel
     state.light_days = tau
 
 
