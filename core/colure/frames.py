@@ -211,11 +211,11 @@ def from_icrs(
     frame: Frame | str,
     moment: Moment | None = None,
     site: Ground | None = None,
-    epoch: float | None = None,
+    epoch: Float | float | None = None,
 ) -> Float:
     """Return vectors (..., 3) on ICRS axes turned into a frame, FK4 included.
 
-    `epoch` is the Besselian year of observation of an FK4 position, by default the frame's equinox; FK4 keeps
+    `epoch` is the Besselian year (...) of observation of an FK4 position, by default the frame's equinox; FK4 keeps
     directions, not lengths: its vectors come back as unit vectors.
     """
     frame = parsed(frame)
@@ -229,7 +229,7 @@ def to_icrs(
     frame: Frame | str,
     moment: Moment | None = None,
     site: Ground | None = None,
-    epoch: float | None = None,
+    epoch: Float | float | None = None,
 ) -> Float:
     """Return vectors (..., 3) given in a frame turned to ICRS axes; the inverse of `from_icrs`."""
     frame = parsed(frame)
@@ -244,7 +244,7 @@ def convert(
     target: Frame | str,
     moment: Moment | None = None,
     site: Ground | None = None,
-    epoch: float | None = None,
+    epoch: Float | float | None = None,
 ) -> Float:
     """Return vectors (..., 3) given in `source`, in `target`; by way of ICRS axes."""
     return from_icrs(to_icrs(vectors, source, moment, site, epoch), target, moment, site, epoch)
