@@ -1,0 +1,195 @@
+"""Star names: IAU proper names, Bayer and Flamsteed designations, catalogue numbers, and the search through them.
+
+The table holds what the shipped sources carry: all IAU proper names of stars in Hipparcos, about a thousand Bayer
+letters, few Flamsteed numbers (counts in the resource's PROVENANCE.toml). Catalogue numbers cover every star.
+"""
+
+import re
+from dataclasses import dataclass
+from functools import cache
+from typing import Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colure import designations, resources, stars
+from colure.errors import ResourceError, TargetError, near_names
+
+Kind = Literal["proper", "bayer", "flamsteed"]
+_HIP_END = 200_000
+"""The table's numbers are Hipparcos numbers below this and Gaia numbers above it."""
+_HIP = re.compile(r"hip\s*(\d{1,12})", re.IGNORECASE)
+_TYCHO = re.compile(r"tyc\s*(\d{1,5})[\s-]+(\d{1,5})[\s-]+(\d{1,2})", re.IGNORECASE)
+_GAIA = re.compile(r"gaia(?:\s*dr3)?\s*(\d{1,30})", re.IGNORECASE)
+
+
+@dataclass(frozen=True, slots=True)
+class Names:
+    """All names of one star; an empty string where there is none."""
+
+    row: int
+    proper: str = ""
+    bayer: str = ""
+    flamsteed: str = ""
+    also: tuple[str, ...] = ()
+    hip: str = ""
+    tycho: str = ""
+    gaia: str = ""
+
+    @property
+    def every(self) -> tuple[str, ...]:
+        """All names, the most telling first."""
+        listed = (self.proper, self.bayer, self.flamsteed, *self.also, self.hip, self.tycho, self.gaia)
+        return tuple(name for name in listed if name)
+
+    @property
+    def best(self) -> str:
+        """The name to print; a star without any is called by its row number."""
+        return self.every[0] if self.every else f"star {self.row}"
+
+
+@dataclass(frozen=True, slots=True)
+class _Table:
+    rows: NDArray[np.int64]
+    proper: tuple[str, ...]
+    bayer: tuple[str, ...]
+    flamsteed: tuple[str, ...]
+    also: tuple[tuple[str, ...], ...]
+    at: dict[int, int]
+    index: dict[str, int]
+    spelling: dict[str, str]
+
+
+@cache
+def _table() -> _Table:
+    """Read the table, the brightest star first, so that the first of a name is the one that is meant."""
+    catalogue = stars.catalogue()
+    try:
+        lines = resources.path("names/names.tsv").read_text(encoding="utf-8").splitlines()[1:]
+        fields = [line.split("\t") for line in lines]
+        numbers = np.array([int(f[0]) for f in fields], dtype=np.int64)
+        columns = list(zip(*[(f[1], f[2], f[3], f[4]) for f in fields], strict=True))
+    except (ValueError, IndexError) as fault:
+        raise ResourceError(f"data file 'names/names.tsv': {fault}; run 'colure selfcheck'") from fault
+    hip_rows, hip_numbers = catalogue.hip
+    order = np.argsort(hip_numbers)
+    place = np.searchsorted(hip_numbers, numbers, sorter=order)
+    place[place == len(order)] = 0
+    rows = hip_rows[order[place]].astype(np.int64)
+    lost = hip_numbers[order[place]] != numbers
+    for k in np.flatnonzero(numbers > _HIP_END).tolist():
+        row = catalogue.by_gaia(int(numbers[k]))
+        rows[k], lost[k] = row or 0, row is None
+    if lost.any():
+        raise ResourceError(f"data file 'names/names.tsv': star {numbers[lost][0]} is not in the star catalogue")
+    bright = np.argsort(catalogue.rows(rows).vmag, kind="stable").tolist()
+    proper, bayer, flamsteed, also = ([column[k] for k in bright] for column in columns)
+    index: dict[str, int] = {}
+    spelling: dict[str, str] = {}
+    more = [tuple(text.split(";")) if text else () for text in also]
+    for k, _ in enumerate(bright):
+        for name in (proper[k], bayer[k], flamsteed[k], *more[k]):
+            if name:
+                index.setdefault(_key(name), k)
+                spelling.setdefault(_key(name), name)
+    for k, name in enumerate(bayer):
+        # "α Cap" means the brighter of α1 and α2, where no star is called α Cap itself.
+        plain = re.sub(r"\d+ ", " ", name)
+        if plain != name:
+            index.setdefault(_key(plain), k)
+    rows = rows[bright]
+    at = {int(row): k for k, row in enumerate(rows)}
+    return _Table(rows, tuple(proper), tuple(bayer), tuple(flamsteed), tuple(more), at, index, spelling)
+
+
+def _key(text: str) -> str:
+    return designations.parse(text) or designations.simplified(text)
+
+
+def identify(row: int) -> Names:
+    """Return all names of the star in a row of the catalogue."""
+    star = stars.catalogue().rows([row])
+    table = _table()
+    k = table.at.get(int(row))
+    hip, gaia, tycho = int(star.hip[0]), int(star.gaia[0]), star.tycho[0]
+    return Names(
+        row=int(row),
+        proper="" if k is None else table.proper[k],
+        bayer="" if k is None else table.bayer[k],
+        flamsteed="" if k is None else table.flamsteed[k],
+        also=() if k is None else table.also[k],
+        hip=f"HIP {hip}" if hip else "",
+        tycho=f"TYC {tycho[0]}-{tycho[1]}-{tycho[2]}" if tycho[0] else "",
+        gaia=f"Gaia DR3 {gaia}" if gaia else "",
+    )
+
+
+def labels(kind: Kind) -> tuple[NDArray[np.int64], tuple[str, ...]]:
+    """Return the rows (n,) of the stars that have a name of a kind, the brightest first, and the names to print.
+
+    A Bayer label is the letter with its index ("θ1"), a Flamsteed label the number, without the constellation.
+    """
+    table = _table()
+    names = {"proper": table.proper, "bayer": table.bayer, "flamsteed": table.flamsteed}[kind]
+    has = [k for k, name in enumerate(names) if name]
+    short = tuple(names[k] if kind == "proper" else names[k].rsplit(" ", 1)[0] for k in has)
+    return table.rows[has], short
+
+
+def find(text: str) -> int:
+    """Return the row of a star by any of its names; raise TargetError with near names.
+
+    Understood are proper names, Bayer and Flamsteed designations in every usual spelling ("α Tau", "alpha Tauri",
+    "alf Tau", "61 Cyg"), "HIP 21421", "TYC 1266-1416-1" and "Gaia DR3 …". Case and accents do not count.
+    """
+    asked = " ".join(text.split())
+    number = _by_number(asked)
+    if number is not None:
+        return number
+    table = _table()
+    k = table.index.get(_key(asked)) if asked else None
+    if k is not None:
+        return int(table.rows[k])
+    designation = designations.parse(asked)
+    if designation:
+        carried = f"{sum(map(bool, table.bayer))} Bayer letters and {sum(map(bool, table.flamsteed))} Flamsteed numbers"
+        raise TargetError(f"star '{designation}': not among the {carried} carried; give its HIP or TYC number")
+    expected = "expected a proper name, a designation such as 'α Tau' or '61 Cyg', or a HIP, TYC or Gaia DR3 number"
+    raise TargetError(f"star '{asked}': in no list; {expected}{near_names(asked, table.spelling.values())}")
+
+
+def _by_number(text: str) -> int | None:
+    """Return the row of a catalogue number, None for any other text; raise TargetError for a number not there."""
+    catalogue = stars.catalogue()
+    if form := _HIP.fullmatch(text):
+        row, listed = catalogue.by_hip(int(form[1])), "the new reduction of Hipparcos lists 117955 of 1 to 120404"
+    elif form := _TYCHO.fullmatch(text):
+        row = catalogue.by_tycho(int(form[1]), int(form[2]), int(form[3]))
+        listed = "expected a star of Tycho-2 (1-9537, 1-12121, 1-4) that is no blend of another"
+    elif form := _GAIA.fullmatch(text):
+        row, listed = catalogue.by_gaia(int(form[1])), "only Gaia stars with G < 10 are carried"
+    else:
+        return None
+    if row is None:
+        raise TargetError(f"star '{text}': not in the catalogue; {listed}")
+    return row
+
+
+def search(text: str, most: int = 10) -> list[tuple[str, int]]:
+    """Return up to `most` (name, row) whose name begins with the text, the brightest star first; for completion."""
+    asked = designations.simplified(text)
+    number = re.fullmatch(r"\s*(hip|tyc|gaia).*", text, re.IGNORECASE)
+    if number:
+        try:
+            row = find(text)
+        except TargetError:
+            return []
+        return [(" ".join(text.split()), row)]
+    table = _table()
+    whole = designations.parse(text)
+    found = [
+        (table.spelling[key], int(table.rows[k]))
+        for key, k in sorted(table.index.items(), key=lambda item: item[1])
+        if key in table.spelling and asked and (key == whole or designations.simplified(key).startswith(asked))
+    ]
+    return found[:most]
