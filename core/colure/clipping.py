@@ -8,12 +8,15 @@ is then dropped on the page. Filled areas are cut in `clipping_areas`.
 from dataclasses import dataclass
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colure.arrays import Bool, Float
 from colure.marks import F32, I32
 from colure.projections import Projector, Real
 
 Rect = tuple[float, float, float, float]
+_PARTS = 48
+"""Pieces that an arc is divided into where it swings over the page."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -63,33 +66,66 @@ class Window:
         return sky if np.isfinite(sky).all() else self.projector.camera[2].copy()
 
 
-def lines(window: Window, camera: Real, starts: I32) -> tuple[F32, I32]:
-    """Return page polylines (points (M, 2), starts) of polylines on the sphere, cut at edge, seam and rectangle.
+@dataclass(frozen=True, slots=True, eq=False)
+class Trace:
+    """Polylines on the page before they are put together.
+
+    `x`, `y` (N,) are the page positions of the points, `whole` (N − 1) which segments are drawn as they are, `cut_xy`
+    (2k, 2) the ends, in pairs, of the pieces of segments that are cut, and `cut_of` (k,) the number of the first point
+    of the segment that each is a piece of.
+    """
+
+    x: Real
+    y: Real
+    whole: Bool
+    cut_xy: F32
+    cut_of: NDArray[np.intp]
+
+    def between(self, first: int, last: int) -> tuple[F32, I32]:
+        """Return page polylines (points (M, 2), starts) of the points first … last − 1, which are whole polylines."""
+        whole = self.whole[first : last - 1]
+        n = last - first
+        before = np.zeros(n, dtype=bool)
+        before[1:] = whole
+        keep = before.copy()
+        keep[:-1] |= whole
+        kept = np.flatnonzero(keep)
+        points = np.empty((len(kept), 2), dtype=np.float32)
+        points[:, 0] = self.x[first:last][kept]
+        points[:, 1] = self.y[first:last][kept]
+        firsts = np.flatnonzero(~before[kept])
+        if len(self.cut_of):
+            mine = (self.cut_of >= first) & (self.cut_of < last)
+            if mine.any():
+                extra = self.cut_xy[np.repeat(mine, 2)]
+                firsts = np.concatenate([firsts, len(points) + np.arange(0, len(extra), 2)])
+                points = np.concatenate([points, extra])
+        return points, np.append(firsts, len(points)).astype(np.int32)
+
+
+def trace(window: Window, camera: Real, starts: I32) -> Trace:
+    """Return polylines on the sphere, laid on the page and cut at edge, seam and rectangle.
 
     The segments are great-circle arcs, each shorter than half a turn.
     """
-    n = camera.shape[1]
-    if n < 2:
-        return np.empty((0, 2), np.float32), np.zeros(1, np.int32)
-    joined = np.ones(n - 1, dtype=bool)
+    joined = np.ones(camera.shape[1] - 1, dtype=bool)
     joined[starts[1:-1] - 1] = False
-    whole, cut = _segments(window, camera, joined)
+    whole, pieces, owner = _segments(window, camera, joined)
     x, y = window.projector.to_page(camera)
     whole &= _seen(window.rect, x[:-1], y[:-1], x[1:], y[1:])
-    before = np.empty(n, dtype=bool)
-    before[0] = False
-    before[1:] = whole
-    keep = before.copy()
-    keep[:-1] |= whole
-    points = np.stack([x[keep], y[keep]], axis=1).astype(np.float32, copy=False)
-    firsts = np.flatnonzero(~before[keep])
-    if cut.shape[1]:
-        cx, cy = window.projector.to_page(cut)
-        seen = np.repeat(_seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2]), 2)
-        extra = np.stack([cx[seen], cy[seen]], axis=1).astype(np.float32)
-        firsts = np.concatenate([firsts, len(points) + np.arange(0, len(extra), 2)])
-        points = np.concatenate([points, extra])
-    return points, np.append(firsts, len(points)).astype(np.int32)
+    if not len(owner):
+        return Trace(x, y, whole, np.empty((0, 2), np.float32), owner)
+    cx, cy = window.projector.to_page(pieces)
+    seen = _seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2])
+    both = np.repeat(seen, 2)
+    return Trace(x, y, whole, np.stack([cx[both], cy[both]], axis=1).astype(np.float32), owner[seen])
+
+
+def lines(window: Window, camera: Real, starts: I32) -> tuple[F32, I32]:
+    """Return page polylines (points (M, 2), starts) of polylines on the sphere; see `trace`."""
+    if camera.shape[1] < 2:
+        return np.empty((0, 2), np.float32), np.zeros(1, np.int32)
+    return trace(window, camera, starts).between(0, camera.shape[1])
 
 
 def _seen(rect: Rect, x1: Real, y1: Real, x2: Real, y2: Real) -> Bool:
@@ -103,8 +139,8 @@ def _seen(rect: Rect, x1: Real, y1: Real, x2: Real, y2: Real) -> Bool:
     )
 
 
-def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float]:
-    """Return which segments are drawn whole (N − 1), and the shown pieces of those that are cut: (3, 2k), in pairs."""
+def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float, NDArray[np.intp]]:
+    """Return which segments are drawn whole (N − 1), the shown pieces (3, 2k) of those that are cut, and whose (k,)."""
     projection = window.projector.projection
     if projection.unrolled:
         x, z = camera[0], camera[2]
@@ -133,14 +169,15 @@ def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float]:
             special |= joined & outside[:-1] & outside[1:] & _through(camera, np.cos(window.cap))
     at = np.flatnonzero(special)
     if not len(at):
-        return whole, np.empty((3, 0))
+        return whole, np.empty((3, 0)), at
     a, b = camera[:, at].astype(np.float64), camera[:, at + 1].astype(np.float64)
     swung = wild[at]
     if swung.any():
-        fa, fb = _divide(a[:, swung], b[:, swung], 48)
+        fa, fb = _divide(a[:, swung], b[:, swung], _PARTS)
         a, b = np.concatenate([a[:, ~swung], fa], axis=1), np.concatenate([b[:, ~swung], fb], axis=1)
-    a, b = cut_segments(window, a, b)
-    return whole, np.stack([a, b], axis=2).reshape(3, -1)
+        at = np.concatenate([at[~swung], np.repeat(at[swung], _PARTS)])
+    a, b, kept = cut_segments(window, a, b)
+    return whole, np.stack([a, b], axis=2).reshape(3, -1), at[kept]
 
 
 def _wild(u: Real, v: Real, suspect: Bool) -> Bool:
@@ -177,38 +214,48 @@ def _through(camera: Real, z_cap: float) -> Bool:
     return np.asarray(near & between & (a[2] + b[2] > 0.0))
 
 
-def cut_segments(window: Window, a: Float, b: Float) -> tuple[Float, Float]:
-    """Return the pieces (3, M), (3, M) of arcs (3, N), (3, N) that the projection shows, cut at its edge and seam."""
+def cut_segments(window: Window, a: Float, b: Float) -> tuple[Float, Float, NDArray[np.intp]]:
+    """Return the pieces of arcs (3, N), (3, N) that the projection shows, cut at its edge and seam.
+
+    Answers the ends (3, M), (3, M) and for each piece the number of its arc (M,).
+    """
     projection = window.projector.projection
+    which = np.arange(a.shape[1])
     if not projection.unrolled:
-        return _cut_cap(a, b, 2, np.cos(window.cap))
+        return _cut_cap(a, b, which, 2, np.cos(window.cap))
     if projection.edge < 1.57:
-        a, b = _cut_cap(a, b, 1, -np.sin(projection.edge))
-        a, b = _cut_cap(a * [[1], [-1], [1]], b * [[1], [-1], [1]], 1, -np.sin(projection.edge))
-        a, b = a * [[1], [-1], [1]], b * [[1], [-1], [1]]
-    side_a, side_b = np.signbit(a[0]), np.signbit(b[0])
-    across = side_a != side_b
+        level = -np.sin(projection.edge)
+        turned = np.array([[1.0], [-1.0], [1.0]])
+        a, b, which = _cut_cap(a, b, which, 1, level)
+        a, b, which = _cut_cap(a * turned, b * turned, which, 1, level)
+        a, b = a * turned, b * turned
+    across = np.signbit(a[0]) != np.signbit(b[0])
     span = np.where(across, a[0] - b[0], 1.0)
     t = a[0] / np.where(span == 0.0, 1.0, span)
     cross = a + t * (b - a)
     cross /= np.sqrt((cross * cross).sum(axis=0))
     across &= cross[2] < 0.0
     if not across.any():
-        return a, b
+        return a, b, which
     on_a, on_b = cross[:, across].copy(), cross[:, across].copy()
     on_a[0] = np.copysign(0.0, a[0, across])
     on_b[0] = np.copysign(0.0, b[0, across])
-    starts = np.concatenate([a[:, ~across], a[:, across], on_b], axis=1)
-    return starts, np.concatenate([b[:, ~across], on_a, b[:, across]], axis=1)
+    firsts = np.concatenate([a[:, ~across], a[:, across], on_b], axis=1)
+    lasts = np.concatenate([b[:, ~across], on_a, b[:, across]], axis=1)
+    return firsts, lasts, np.concatenate([which[~across], which[across], which[across]])
 
 
-def _cut_cap(a: Float, b: Float, axis: int, level: float) -> tuple[Float, Float]:
+def _cut_cap(
+    a: Float, b: Float, which: NDArray[np.intp], axis: int, level: float
+) -> tuple[Float, Float, NDArray[np.intp]]:
     """Return the parts of arcs where the component `axis` of the direction is at least `level`."""
     t0, t1 = cap_interval(a, b, axis, level)
     shown = t1 > t0
     a, b, t0, t1 = a[:, shown], b[:, shown], t0[shown], t1[shown]
     first, last = a + t0 * (b - a), a + t1 * (b - a)
-    return first / np.sqrt((first * first).sum(axis=0)), last / np.sqrt((last * last).sum(axis=0))
+    first /= np.sqrt((first * first).sum(axis=0))
+    last /= np.sqrt((last * last).sum(axis=0))
+    return first, last, which[shown]
 
 
 def cap_interval(a: Float, b: Float, axis: int, level: float) -> tuple[Float, Float]:

@@ -179,7 +179,7 @@ def _pieces(window: Window, camera: Float, edges: Int, after: Int) -> list[_Piec
     pieces: list[_Piece] = []
     for edge in edges.tolist():
         a, b = camera[:, edge], camera[:, after[edge]]
-        firsts, lasts = cut_segments(window, a[:, None], b[:, None])
+        firsts, lasts, _ = cut_segments(window, a[:, None], b[:, None])
         parts: list[tuple[float, _Piece]] = []
         for j in range(firsts.shape[1]):
             p, q = firsts[:, j], lasts[:, j]
