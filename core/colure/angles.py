@@ -145,6 +145,10 @@ def _angle(tokens: list[_Token], shown: str, what: str) -> _Angle:
     return _Angle(-value if negative else value, unit, tuple(token.number for token in tokens), negative)
 
 
+def _brief(value: float) -> str:
+    return f"{value:.6g}".replace("-", MINUS)
+
+
 def _longitude(tokens: list[_Token], shown: str, equatorial: bool, what: str) -> float:
     angle = _angle(tokens, shown, what)
     if angle.unit == "" and equatorial:
@@ -158,10 +162,10 @@ def _longitude(tokens: list[_Token], shown: str, equatorial: bool, what: str) ->
         )
     if angle.unit == "h":
         if abs(angle.value) > 24.0:
-            raise AngleError(f"{what} '{shown}': {angle.value:.6g} h; expected up to 24h")
+            raise AngleError(f"{what} '{shown}': {_brief(angle.value)} h; expected up to 24h")
         return angle.value * 15.0 % 360.0
     if abs(angle.value) > 360.0:
-        raise AngleError(f"{what} '{shown}': {angle.value:.6g}°; expected −360° to 360°")
+        raise AngleError(f"{what} '{shown}': {_brief(angle.value)}°; expected −360° to 360°")
     # A tiny negative angle becomes exactly 360 under the remainder; keep the half-open range.
     lon = angle.value % 360.0
     return 0.0 if lon >= 360.0 else lon
@@ -172,7 +176,7 @@ def _latitude(tokens: list[_Token], shown: str, what: str) -> float:
     if angle.unit == "h":
         raise AngleError(f"{what} '{shown}': in hours; expected degrees")
     if abs(angle.value) > 90.0:
-        raise AngleError(f"{what} '{shown}': {angle.value:.6g}°; expected −90° to 90°")
+        raise AngleError(f"{what} '{shown}': {_brief(angle.value)}°; expected −90° to 90°")
     return angle.value
 
 
