@@ -1,24 +1,22 @@
 """The ephemeris that is shipped: Chebyshev tables fitted to DE440 (1550 to 2650) and DE422 (years −2999 to 3000)."""
 
-import json
 import threading
 from collections.abc import Sequence
 from functools import cached_property
-from typing import Any
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import ArrayLike
 
-from colure import resources
 from colure.arrays import ARCSEC, Float, Int, rotation_x
 from colure.ephemeris import uncertainty
 from colure.ephemeris.protocol import BODIES, Days, check_bodies, check_span
-from colure.ephemeris.tables import Table, basis, combine, slopes
+from colure.ephemeris.tables import Table, basis, combine, index, slopes, tables
 
 CHOICES = 32
 """Choices of bodies whose last segments are kept, at some 8 kB each."""
-CHUNK = 4096
-"""Moments evaluated at a time: bounds the working memory to some 10 MB."""
+CHUNK = 3400
+"""Moments evaluated at a time, so that a body's coefficients (1.4 MB) stay in the processor's cache."""
 
 
 class Embedded:
@@ -33,42 +31,25 @@ class Embedded:
     def __init__(self) -> None:
         self._last = _Last()
 
-    @cached_property
-    def _index(self) -> dict[str, Any]:
-        index: dict[str, Any] = json.loads(resources.path("ephemeris/index.json").read_text(encoding="utf-8"))
-        return index
-
-    @cached_property
+    @property
     def span(self) -> tuple[float, float]:
         """First and last Julian date (TDB)."""
-        first, last = self._index["span"]
+        first, last = index()["span"]
         return float(first), float(last)
 
     @cached_property
     def _tables(self) -> dict[str, Table]:
-        return {
-            body: Table(
-                body=body,
-                length=float(entry["length"]),
-                start=float(entry["start"]),
-                segments=int(entry["segments"]),
-                order=int(entry["order"]),
-                step=float(entry["step"]),
-                words=tuple(tuple(word) for word in entry["words"]),
-                span=self.span,
-            )
-            for body, entry in self._index["bodies"].items()
-        }
+        return tables()
 
     @cached_property
     def _axes(self) -> Float:
         """The matrix from the tables' axes, the mean ecliptic of J2000, to those of the ICRS."""
-        return rotation_x(-float(self._index["tilt_arcsec"]) * ARCSEC)
+        return rotation_x(-float(index()["tilt_arcsec"]) * ARCSEC)
 
     @cached_property
     def _moon_share(self) -> float:
         """The Earth's distance from the Earth-Moon barycentre as a share of the Moon's from the Earth."""
-        return 1.0 / (1.0 + float(self._index["emrat"]))
+        return 1.0 / (1.0 + float(index()["emrat"]))
 
     def posvel(self, bodies: Sequence[str], tdb1: Days, tdb2: Days = 0.0, *, each: bool = False) -> tuple[Float, Float]:
         """Return positions (au) and velocities (au/day), both (bodies, *shape, 3), barycentric, ICRS axes."""
@@ -80,7 +61,7 @@ class Embedded:
 
     def source(self, tdb: float) -> str:
         """Return "DE440 fit", "DE422 fit" or, inside the two windows between them, "DE422 to DE440 fit"."""
-        (first, start), (end, last) = self._index["blend"]
+        (first, start), (end, last) = index()["blend"]
         if start <= tdb <= end:
             return "DE440 fit"
         if first < tdb < last:
@@ -114,17 +95,24 @@ class Embedded:
         lead = (len(bodies), -1) if each else (-1,)
         day, part, jd = day.reshape(lead), part.reshape(lead), jd.reshape(lead)
         count = jd.shape[-1]
-        # One block for both: numpy asks for large pages from 4 MiB on, which is faster than all that is saved below.
+        # One block for both: numpy asks for large pages from 4 MiB on, and touching small ones is most of the cost.
         both = np.empty((1 + rates, len(bodies), 3, count))
-        scratch = np.empty(3 * max(table.order for table in self._tables.values()) * min(count, CHUNK))
-        for a in range(0, count, CHUNK):
-            piece = slice(a, a + CHUNK)
-            shared = None if each else _Moments(jd[piece], day[piece], part[piece], scratch)
-            for row, body in enumerate(bodies):
-                moments = shared or _Moments(jd[row, piece], day[row, piece], part[row, piece], scratch)
-                self._fill(body, moments, both[:, row, :, piece])
+        pieces = -(-count // CHUNK)
+        bounds = [count * i // pieces for i in range(pieces + 1)] if pieces else []
+        work = np.empty((5, max(table.order for table in self._tables.values()) * -(-count // max(pieces, 1))))
+        order = sorted(range(len(bodies)), key=lambda row: self._turn_of(bodies[row]))
+        for a, b in pairwise(bounds):
+            shared = None if each else _Moments(jd[a:b], day[a:b], part[a:b], work)
+            for row in order:
+                moments = shared or _Moments(jd[row, a:b], day[row, a:b], part[row, a:b], work)
+                self._fill(bodies[row], moments, both[:, row, :, a:b])
         vectors = np.moveaxis(both.reshape(*both.shape[:3], *shape), 2, -1)
         return vectors[0], vectors[1] if rates else np.empty((0, 3))
+
+    def _turn_of(self, body: str) -> tuple[float, int]:
+        """Return a key to sort by: one segment length after the other, the highest order first, Earth and Moon last."""
+        table = self._tables.get(body)
+        return (np.inf, 0) if table is None or body == "moon" else (table.length, -table.order)
 
     def _fill(self, body: str, moments: "_Moments", out: Float) -> None:
         """Write the position and, where there is room for it, the velocity (1 or 2, 3, N) of one body on ICRS axes."""
@@ -140,39 +128,34 @@ class Embedded:
 
 
 class _Moments:
-    """A batch of moments with what the bodies share: the Chebyshev basis of a segment length, the Earth's parts."""
+    """A batch of N moments with what bodies share: the last Chebyshev basis, and the parts that make Earth and Moon.
 
-    def __init__(self, jd: Float, day: Float, part: Float, scratch: Float) -> None:
-        self.jd, self.day, self.part, self._scratch = jd, day, part, scratch
-        self._places: dict[float, tuple[Int, tuple[Float, ...]]] = {}
+    `work` is memory for the coefficients (three rows) and for the basis and its derivatives (one row each).
+    """
+
+    def __init__(self, jd: Float, day: Float, part: Float, work: Float) -> None:
+        self.jd, self.day, self.part, self._work = jd, day, part, work
+        self._place: tuple[float, Int, list[Float]] | None = None
         self._states: dict[str, list[Float]] = {}
 
     def state(self, table: Table, rates: bool) -> list[Float]:
         """Return [position (3, N), velocity (3, N) if asked for] on the table's axes."""
-        if self.jd.size == 0:
-            return [np.empty((3, 0))] * (2 if rates else 1)
-        known = self._states.get(table.body)
-        if known is not None and len(known) == 1 + rates:
-            return known
-        number, functions = self._place(table, rates)
-        state = combine(table, number, functions, self._scratch)
+        if table.body in self._states:
+            return self._states[table.body]
+        if self._place is None or self._place[0] != table.length or len(self._place[2][0]) < table.order:
+            number = table.locate(self.jd)
+            x = table.argument(number, self.day, self.part)
+            functions = [
+                f(x, table.order, out) for f, out in zip((basis, slopes)[: 1 + rates], self._work[3:], strict=False)
+            ]
+            self._place = (table.length, number, functions)
+        _, number, functions = self._place
+        state = combine(table, number, [f[: table.order] for f in functions], self._work[:3].reshape(-1))
         if rates:
             state[1] *= 2.0 / table.length
         if table.body in ("emb", "moon"):
             self._states[table.body] = state
         return state
-
-    def _place(self, table: Table, rates: bool) -> tuple[Int, tuple[Float, ...]]:
-        """Return the segment numbers and the Chebyshev functions, with the derivatives if asked for."""
-        known = self._places.get(table.length)
-        if known is None or len(known[1][0]) < table.order:
-            number = table.locate(self.jd)
-            x = table.argument(number, self.day, self.part)
-            values = (basis(x, table.order),)
-            known = (number, (*values, slopes(x, table.order)) if rates else values)
-            self._places[table.length] = known
-        number, functions = known
-        return number, tuple(f[: table.order] for f in functions)
 
 
 class _Last(threading.local):

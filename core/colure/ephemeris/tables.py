@@ -6,8 +6,10 @@ units of one step; a wide coefficient may lend the low bits of its word to a nar
 the narrow one.
 """
 
+import json
+from collections.abc import Sequence
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cache, cached_property
 from typing import Any
 
 import numpy as np
@@ -15,9 +17,39 @@ from numpy.typing import NDArray
 
 from colure import resources
 from colure.arrays import Float, Int
+from colure.errors import ResourceError
 
 FEW = 128
 """Below this number of rows one fancy index over all words is faster than a pass over each column."""
+
+
+@cache
+def index() -> dict[str, Any]:
+    """Return what is known of the tables as a whole: span, windows, layout, errors; read once."""
+    file = "ephemeris/index.json"
+    try:
+        found: dict[str, Any] = json.loads(resources.path(file).read_text(encoding="utf-8"))
+    except (ValueError, OSError) as fault:
+        raise ResourceError(f"data file '{file}': {fault}; run 'colure selfcheck'") from fault
+    return found
+
+
+def tables() -> dict[str, "Table"]:
+    """Return the table of every body that has one: all but the Earth; the Moon's is from the Earth."""
+    first, last = index()["span"]
+    return {
+        body: Table(
+            body=body,
+            length=float(entry["length"]),
+            start=float(entry["start"]),
+            segments=int(entry["segments"]),
+            order=int(entry["order"]),
+            step=float(entry["step"]),
+            words=tuple(tuple(word) for word in entry["words"]),
+            span=(float(first), float(last)),
+        )
+        for body, entry in index()["bodies"].items()
+    }
 
 
 @dataclass(frozen=True)
@@ -36,8 +68,15 @@ class Table:
     @cached_property
     def rows(self) -> NDArray[Any]:
         """The mapped rows, a structured array (segments,) with fields w32, w16, w8."""
+        file = f"ephemeris/{self.body}.npy"
         # A plain view: the memmap class costs more at every slice than the arithmetic on it.
-        return resources.load_array(f"ephemeris/{self.body}.npy").view(np.ndarray)
+        rows = resources.load_array(file).view(np.ndarray)
+        if rows.shape != (self.segments,) or rows.dtype.names is None:
+            raise ResourceError(
+                f"data file '{file}': {rows.dtype} of shape {rows.shape}, expected {self.segments} rows of words; "
+                "run 'colure selfcheck'"
+            )
+        return rows
 
     @cached_property
     def _plan(self) -> tuple[Int, Int, Float, Float, Int]:
@@ -59,7 +98,9 @@ class Table:
     @cached_property
     def _unstored(self) -> Int:
         """The rows of (3 × order) that no word holds: coefficients that never reach one step."""
-        return np.setdiff1d(np.arange(3 * self.order), self._plan[0])
+        stored = np.zeros(3 * self.order, dtype=bool)
+        stored[self._plan[0]] = True
+        return np.flatnonzero(~stored)
 
     def locate(self, jd: Float) -> Int:
         """Return the segment number of each Julian date within the span."""
@@ -100,32 +141,33 @@ class Table:
         return out.reshape(3, self.order, number.size)
 
 
-def basis(x: Float, order: int) -> Float:
-    """Return the Chebyshev polynomials T_k(x) as (order, N)."""
-    return _recurrence(x, order, x)
+def basis(x: Float, order: int, memory: Float) -> Float:
+    """Return the Chebyshev polynomials T_k(x) as (order, N), in `memory`."""
+    return _recurrence(x, x, memory[: order * x.size].reshape(order, x.size))
 
 
-def slopes(x: Float, order: int) -> Float:
-    """Return the derivatives T'_k(x) = k U_(k−1)(x) as (order, N)."""
-    out = np.zeros((order, x.size))
+def slopes(x: Float, order: int, memory: Float) -> Float:
+    """Return the derivatives T'_k(x) = k U_(k−1)(x) as (order, N), in `memory`."""
+    out = memory[: order * x.size].reshape(order, x.size)
+    out[0] = 0.0
     if order > 1:
-        np.multiply(_recurrence(x, order - 1, 2.0 * x), np.arange(1.0, order)[:, None], out=out[1:])
+        _recurrence(x, 2.0 * x, out[1:])
+        out[1:] *= np.arange(1.0, order)[:, None]
     return out
 
 
-def _recurrence(x: Float, order: int, second: Float) -> Float:
-    out = np.empty((order, x.size))
+def _recurrence(x: Float, second: Float, out: Float) -> Float:
     out[0] = 1.0
-    if order > 1:
+    if len(out) > 1:
         out[1] = second
     twice = 2.0 * x
-    for k in range(2, order):
+    for k in range(2, len(out)):
         np.multiply(twice, out[k - 1], out=out[k])
         out[k] -= out[k - 2]
     return out
 
 
-def combine(table: Table, number: Int, functions: tuple[Float, ...], scratch: Float) -> list[Float]:
+def combine(table: Table, number: Int, functions: Sequence[Float], scratch: Float) -> list[Float]:
     """Return Σ c_k f_k as (3, N) for each set of functions (order, N), the coefficients taken from segments `number`.
 
     `scratch` holds at least 3 × order × N numbers: fresh memory of that size would cost more than the work done in it.

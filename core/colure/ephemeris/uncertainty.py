@@ -2,26 +2,24 @@
 
 - Fit: the largest error in position found against the source when the tables were built, of the body and of the
   Earth, over the distance.
-- Knowledge: DE440 and DE422 differ by an angle that grows from the present. The rate is the least that covers their
-  difference at every date that both have (1550 to 2650), and is taken to hold on. Growth is with the square of the
-  time where that is what the two show (Sun, Mercury, Venus, Moon), otherwise with the time.
+- Knowledge: DE440 and DE422 differ by an angle that grows from the present. Its size at present and its growth are
+  the least that cover their difference at every date that both have (1550 to 2650), and the growth is taken to hold
+  on. It goes with the square of the time where that is what the two show (Sun, Mercury, Venus, Moon), otherwise with
+  the time.
 - Centre: Mars to Pluto are the barycentres of their systems. The planet is off it by Σ mass ratio × distance of its
   satellites at most.
 
 ΔT is not in it: it belongs to the conversion of time, not to the ephemeris.
 """
 
-import json
 from collections.abc import Sequence
-from functools import cache
-from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
 
-from colure import resources
 from colure.arrays import ARCSEC, Float
 from colure.ephemeris.protocol import KM_PER_AU
+from colure.ephemeris.tables import index
 
 J2000 = 2451545.0
 CENTURY = 36525.0
@@ -49,29 +47,23 @@ NEAREST_AU = {
 """Least distance from the Earth within the span; for the Earth itself and the Earth-Moon barycentre from the Sun."""
 
 
-@cache
-def _measured() -> dict[str, Any]:
-    index: dict[str, Any] = json.loads(resources.path("ephemeris/index.json").read_text(encoding="utf-8"))
-    return index
-
-
 def knowledge_arcsec(body: str, jd: Float) -> Float:
     """Return how far two good ephemerides may differ in the direction of a body at a Julian date, in arcsec.
 
     The Earth and the Earth-Moon barycentre are judged by the direction of the Sun.
     """
-    entry = _measured()["knowledge"]["sun" if body in ("earth", "emb") else body]
-    centuries = np.maximum(np.abs(jd - J2000) / CENTURY, 1.0)
-    return np.asarray(entry["arcsec"] * centuries ** entry["power"])
+    entry = index()["knowledge"]["sun" if body in ("earth", "emb") else body]
+    centuries = np.abs(jd - J2000) / CENTURY
+    return np.asarray(entry["arcsec"] + entry["growth"] * centuries ** entry["power"])
 
 
 def fit_au(body: str, jd: Float) -> Float:
     """Return the error of the tables in the position of a body from the Earth, in au."""
-    index = _measured()
-    (first, _), (_, last) = index["blend"]
+    known = index()
+    (first, _), (_, last) = known["blend"]
     modern = (jd > first) & (jd < last)
     names = {"moon": ("moon",), "earth": ("emb",), "emb": ("emb",)}.get(body, (body, "emb"))
-    errors = [sum(float(index["bodies"][name]["error_au"][era]) for name in names) for era in (0, 1)]
+    errors = [sum(float(known["bodies"][name]["error_au"][era]) for name in names) for era in (0, 1)]
     return np.where(modern, errors[0], errors[1])
 
 
