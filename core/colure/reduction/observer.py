@@ -46,13 +46,10 @@ class Observer:
         if self.air is not None:
             return self.air
         site = self.site
-        height = site.height_m if site is not None else 0.0
-        pressure = getattr(site, "pressure_hpa", None)
-        temperature = getattr(site, "temperature_c", None)
-        return Atmosphere(
-            pressure_hpa=standard_pressure(height) if pressure is None else float(pressure),
-            temperature_c=10.0 if temperature is None else float(temperature),
-        )
+        if site is None:
+            return Atmosphere()
+        pressure = standard_pressure(site.height_m) if site.pressure_hpa is None else site.pressure_hpa
+        return Atmosphere(pressure, 10.0 if site.temperature_c is None else site.temperature_c)
 
 
 @dataclass(frozen=True, slots=True)

@@ -216,6 +216,9 @@ def unreduce(
     context = star_context(moment, observer=observer, place=place, ephemeris=ephemeris)
     wanted = unit(np.atleast_2d(np.asarray(directions, dtype=np.float64)))
     guess = wanted
-    for _ in range(6):
-        guess = unit(guess + (wanted - apply_context(context, guess, None, None)))
+    for _ in range(50):  # three or four without refraction; near the horizon each gains but a factor of three
+        missing = wanted - apply_context(context, guess, None, None)
+        guess = unit(guess + missing)
+        if np.abs(missing).max(initial=0.0) < 1e-14:
+            break
     return guess.reshape(np.shape(directions))
