@@ -70,7 +70,8 @@ def moon_mean_node(moment: Moment) -> Float:
 
 def turned(vectors: Float, matrix: Float) -> tuple[Float, Float]:
     """Return longitude and latitude of unit vectors (bodies, *shape, 3) after the matrices (*shape, 3, 3) or (3, 3)."""
-    m = np.ascontiguousarray(np.moveaxis(matrix, (-2, -1), (0, 1)))
+    axes = matrix.ndim
+    m = matrix.transpose(axes - 2, axes - 1, *range(axes - 2)).copy()
     x, y, z = vectors[..., 0], vectors[..., 1], vectors[..., 2]
     a = m[0, 0] * x
     a += m[0, 1] * y

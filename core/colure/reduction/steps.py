@@ -6,6 +6,7 @@ are component first, (3, bodies, moments).
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 
@@ -148,6 +149,7 @@ PLACES = ("geometric", "astrometric", "apparent", "observed")
 _LAST = {"geometric": "parallax", "astrometric": "light time", "apparent": "aberration", "observed": "refraction"}
 
 
+@cache
 def path(place: str) -> tuple[tuple[Step, ...], tuple[Step, ...]]:
     """Return the geometric and the optical steps that lead to a place."""
     steps = GEOMETRY + OPTICS
