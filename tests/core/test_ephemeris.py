@@ -11,6 +11,7 @@ from colure import ephemeris, resources
 from colure.arrays import ARCSEC, norm, separation
 from colure.ephemeris.embedded import CHUNK, Embedded
 from colure.ephemeris.protocol import BODIES
+from colure.ephemeris.tables import index
 from colure.errors import BodyError, EphemerisSpanError, ResourceError
 
 GEOCENTRIC = ("sun", "mercury", "venus", "mars", "jupiter", "saturn", "uranus", "neptune", "pluto", "moon")
@@ -141,6 +142,12 @@ def test_each_body_at_its_own_moments(tables, shape):
         np.testing.assert_allclose(vel[i], v[0], rtol=0, atol=1e-13)
 
 
+def test_moments_for_each_body_must_number_the_bodies(tables):
+    for dates in (2451545.0, np.full(3, 2451545.0)):
+        with pytest.raises(BodyError, match=r"each of 2 bodies.*expected \(2, …\)"):
+            tables.position(("sun", "moon"), dates, each=True)
+
+
 def test_two_part_dates_keep_their_precision(tables):
     """The Moon moves 1e-12 au in 0.1 ms, a hundred times less than one double of a Julian date resolves."""
     steps = np.arange(5) * 1e-9
@@ -152,11 +159,7 @@ def test_two_part_dates_keep_their_precision(tables):
 
 def test_segments_meet(tables):
     """At 300 seams of each body the two sides differ by no more than the sum of two errors of the tables."""
-    index = resources.path("ephemeris/index.json").read_text(encoding="utf-8")
-    import json
-
-    entries = json.loads(index)["bodies"]
-    for body, entry in entries.items():
+    for body, entry in index()["bodies"].items():
         if body == "moon":
             continue  # from the Earth; seen through the directions above
         number = np.random.default_rng(1).integers(1, entry["segments"] - 1, 300)

@@ -100,6 +100,50 @@ def test_truncated_kernel(tmp_path, path, size):
     assert "\n" not in str(caught.value)
 
 
+@pytest.fixture(scope="module")
+def excerpt(tmp_path_factory, path):
+    """All segments of DE440 over 200 days, some 60 kB, written by jplephem's own excerpter."""
+    from jplephem.excerpter import write_excerpt
+
+    file = tmp_path_factory.mktemp("kernel") / "excerpt.bsp"
+    with SPK.open(path) as spk, open(file, "w+b") as out:
+        write_excerpt(spk, out, 2451500.0, 2451700.0, list(spk.daf.summaries()))
+    return file
+
+
+def test_excerpt_has_its_own_span(excerpt, kernel):
+    part = ephemeris.open_kernel(excerpt)
+    assert part.bodies == ephemeris.BODIES
+    assert np.array_equal(part.position(part.bodies, 2451600.25), kernel.position(part.bodies, 2451600.25))
+    with pytest.raises(EphemerisSpanError, match=r"years 1999\.9 to 2000\.4"):
+        part.position(("sun",), 2451800.0)
+    part.close()
+
+
+@pytest.mark.parametrize("seed", range(40))
+def test_damaged_bytes_give_an_answer_or_one_clear_line(tmp_path, excerpt, seed):
+    """Bytes changed in the headers, and sometimes the end lost: nothing but a KernelError may come of it."""
+    rng = np.random.default_rng(seed)
+    data = bytearray(excerpt.read_bytes())
+    for place in rng.integers(0, 8192, 6):
+        data[place] = rng.integers(0, 256)
+    if seed % 4 == 0:
+        del data[rng.integers(0, len(data)) :]
+    file = tmp_path / "damaged.bsp"
+    file.write_bytes(data)
+    message, places = "damaged.bsp", np.zeros(3)
+    try:
+        damaged = ephemeris.open_kernel(file)
+    except KernelError as fault:
+        message = str(fault)
+    else:
+        places = damaged.position(damaged.bodies, sum(damaged.span) / 2.0)
+        damaged.close()
+    assert "damaged.bsp" in message
+    assert "\n" not in message
+    assert np.isfinite(places).all()
+
+
 def test_kernel_without_planets_is_refused_by_name(tmp_path, path):
     """An excerpt with the Sun and the Earth-Moon barycentre only, written by jplephem's excerpter."""
     from jplephem.excerpter import write_excerpt

@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike
 
 from colure.arrays import ARCSEC, Float, Int, rotation_x
 from colure.ephemeris import uncertainty
-from colure.ephemeris.protocol import BODIES, Days, check_bodies, check_span
+from colure.ephemeris.protocol import BODIES, Days, check_bodies, check_each, check_span
 from colure.ephemeris.tables import Table, basis, combine, index, slopes, tables
 
 CHOICES = 32
@@ -88,6 +88,8 @@ class Embedded:
             day, part = np.broadcast_arrays(day, part)
         jd = day + part
         check_bodies(bodies, BODIES, self.name)
+        if each:
+            check_each(jd.shape, bodies)
         check_span(jd, self.span, self.name)
         if (jd.ndim == 1 and each) or jd.ndim == 0:
             return self._last.evaluate(self, tuple(bodies), day, part, rates)

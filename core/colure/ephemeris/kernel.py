@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 
 from colure.arrays import Float
 from colure.ephemeris import uncertainty
-from colure.ephemeris.protocol import BODIES, KM_PER_AU, Days, check_bodies, check_span
+from colure.ephemeris.protocol import BODIES, KM_PER_AU, Days, check_bodies, check_each, check_span
 from colure.errors import ColureError, ResourceError
 
 NAIF = {
@@ -98,6 +98,8 @@ class Kernel:
     ) -> tuple[Float, Float]:
         check_bodies(bodies, self.bodies, f"kernel '{self.name}'")
         day, part = np.broadcast_arrays(np.asarray(tdb1, dtype=np.float64), np.asarray(tdb2, dtype=np.float64))
+        if each:
+            check_each(day.shape, bodies)
         check_span(day + part, self.span, f"kernel '{self.name}'")
         shape = day.shape[1:] if each else day.shape
         pos = np.empty((len(bodies), *shape, 3))

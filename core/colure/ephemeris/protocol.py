@@ -84,6 +84,12 @@ def check_bodies(bodies: Sequence[str], known: Sequence[str], name: str) -> None
         raise BodyError(f"body '{body}': not known{near_names(body, BODIES)}; expected one of {', '.join(BODIES)}")
 
 
+def check_each(shape: tuple[int, ...], bodies: Sequence[str]) -> None:
+    """Raise BodyError unless the first dimension of dates given for each body runs over the bodies."""
+    if not shape or shape[0] != len(bodies):
+        raise BodyError(f"dates for each of {len(bodies)} bodies: their shape is {shape}, expected ({len(bodies)}, …)")
+
+
 def years(span: tuple[float, float]) -> str:
     """Return a span of Julian dates as plain years of astronomical numbering, such as `"-2999.0 to 3000.1"`."""
     # Rounded inwards, so that every year printed is covered.
