@@ -246,5 +246,11 @@ def convert(
     site: Ground | None = None,
     epoch: Float | float | None = None,
 ) -> Float:
-    """Return vectors (..., 3) given in `source`, in `target`; by way of ICRS axes."""
+    """Return vectors (..., 3) given in `source`, in `target`; by way of ICRS axes.
+
+    `epoch` is that of an FK4 observation; by default the equinox of the first of the two frames that is FK4.
+    """
+    source, target = parsed(source), parsed(target)
+    if epoch is None and not source.is_rotation:
+        epoch = source.besselian_year()  # one observation has one epoch, also between two equinoxes of FK4
     return from_icrs(to_icrs(vectors, source, moment, site, epoch), target, moment, site, epoch)

@@ -93,7 +93,7 @@ def _vondrak_fit(years: Float) -> Float:
 
 
 def _vondrak_poles(years: Float) -> Float:
-    equator, ecliptic = np.asarray(erfa.ltpequ(years)), np.asarray(erfa.ltpecl(years))
+    equator, ecliptic = precession.long_term_poles(years)
     return np.arctan2(norm(np.cross(equator, ecliptic)), dot(equator, ecliptic))
 
 

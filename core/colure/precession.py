@@ -138,6 +138,15 @@ def ecliptic_pole(at: Instant, model: str = "auto") -> Float:
     return ecliptic_matrix(at, model)[..., 2, :]
 
 
+def long_term_poles(years: Float | float) -> tuple[Float, Float]:
+    """Return the poles (*shape, 3) of equator and ecliptic of Julian years, on the mean equator and equinox J2000.
+
+    Vondrák, Capitaine & Wallace 2011 (ERFA's `ltpequ` and `ltpecl`), without the frame bias.
+    """
+    check_span("vondrak2011", np.asarray(years, dtype=np.float64))
+    return np.asarray(erfa.ltpequ(years)), np.asarray(erfa.ltpecl(years))
+
+
 # The models. Every function takes a two-part TT and returns matrices from ICRS axes.
 
 
