@@ -30,7 +30,7 @@ FROM_EARTH = ("earth", "emb", "site")
 
 def sun_longitude(moment: Moment, ephemeris: Ephemeris | None = None) -> Float:
     """Return the Sun's apparent geocentric longitude (*shape), rad, mean ecliptic of date, true equinox."""
-    return longitudes(("sun",), moment, ephemeris=ephemeris)[0][0]
+    return np.asarray(longitudes(("sun",), moment, ephemeris=ephemeris)[0][0])
 
 
 def longitudes(
@@ -169,17 +169,10 @@ def facts(
     return out
 
 
-def _sight(seen: Directions, count: int) -> Float:
-    """Return the vectors (bodies, *shape, 3), au, from the observer to where each body was when its light left."""
-    state: ObserverState = seen.observer
-    tau = seen.light_time_s[:count] / 86400.0
-    return np.asarray(seen.heliocentric[:count] + (state.sun_pos - state.pos) - tau[..., None] * state.sun_vel)
-
-
 def _light(bodies: tuple[str, ...], moment: Moment, seen: Directions) -> dict[str, Any]:
     """Return phase, magnitude and size: true geometry, without aberration."""
     count = len(bodies)
-    sight = _sight(seen, count)
+    sight = seen.sight[:count]
     from_sun = seen.heliocentric[:count]
     phase = phases.phase_angle(from_sun, sight)
     tdb1, tdb2 = moment.tdb

@@ -302,3 +302,11 @@ def test_observed_agrees_with_erfa_above_fifteen_degrees() -> None:
     assert (alt > 30.0 * DEG).sum() > 1000
     assert off[alt > 15.0 * DEG].max() < 3.0
     assert off[alt > 30.0 * DEG].max() < 0.1
+
+
+def test_sight_is_the_astrometric_vector() -> None:
+    moment = moments(200, 2378496.5, 2524593.5, 22)
+    apparent = reduce_bodies(BODIES, moment, place="apparent", ephemeris=kernel())
+    plain = reduce_bodies(BODIES, moment, place="astrometric", ephemeris=kernel())
+    # 1e-11 au are 1 m: the retardation of the Sun is undone with a distance good to its own motion in a light time.
+    assert np.abs(apparent.sight - plain.vectors * plain.distance_au[..., None]).max() < 1e-11

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from colure.arrays import Float
+from colure.arrays import Float, norm
 from colure.ephemeris import Ephemeris, default
 from colure.errors import BodyError, ColureError, FrameError, near_names
 from colure.moment import Moment
@@ -36,6 +36,15 @@ class Directions:
     light_time_s: Float
     heliocentric: Float
     observer: ObserverState
+
+    @property
+    def sight(self) -> Float:
+        """Vectors (bodies, *shape, 3), au, from the observer to where each body was when its light left it."""
+        state = self.observer
+        # The heliocentric vector starts where the Sun was when it lit the body.
+        ago = self.light_time_s / 86400.0
+        ago = ago + np.where(ago > 0.0, norm(self.heliocentric) / C_AU_DAY, 0.0)
+        return np.asarray(self.heliocentric + (state.sun_pos - state.pos) - ago[..., None] * state.sun_vel)
 
 
 @dataclass(frozen=True, slots=True)
