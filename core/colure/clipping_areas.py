@@ -49,6 +49,26 @@ def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F
     return points.astype(np.float32), ends.astype(np.int32)
 
 
+def rim_ring(window: Window) -> F32 | None:
+    """Return the outline of the projection on the page (N, 2), or None where the map lies wholly within it."""
+    projection = window.projector.projection
+    if not projection.unrolled and window.cap < projection.edge:
+        return None
+    rim = _Rim(window)
+    x, y = window.projector.to_page(rim.along(0.0, rim.length)[:, :-1])
+    left, top, right, bottom = window.rect
+    points = np.stack([x, y], axis=1)
+    if max(np.abs(points[:, 0]).max(), np.abs(points[:, 1]).max()) > _FAR + max(right, bottom):
+        points, ends = _boxed(points, np.array([0, len(points)]), window.rect)
+        if not len(points):
+            return None
+        points = points[: ends[1]]
+    whole = points[:, 0].min() <= left and points[:, 0].max() >= right
+    if whole and points[:, 1].min() <= top and points[:, 1].max() >= bottom and projection.name == "mercator":
+        return None
+    return points.astype(np.float32)
+
+
 def following(n: int, starts: I32) -> Int:
     """Return the index of the next point of the same ring for each of n points."""
     after = np.arange(1, n + 1)

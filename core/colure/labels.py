@@ -45,12 +45,14 @@ class Request:
     """Texts to be placed, highest rank first.
 
     `ids` (N,) are distinct; `centres` (N, K, 2) the positions in order of preference, NaN where there is none; `half`
-    (N, 2) the half-width and half-height of the upright box that holds the text.
+    (N, 2) the half-width and half-height of the upright box that holds the text. `preference` (N, K), where given,
+    is the order in which the positions are tried; the number of a position, which is what is remembered, is its column.
     """
 
     ids: I64
     centres: F32
     half: F32
+    preference: NDArray[np.intp] | None = None
 
     def __len__(self) -> int:
         return len(self.ids)
@@ -63,14 +65,19 @@ def join(requests: list[Request]) -> Request:
         return Request(np.empty(0, np.int64), np.empty((0, 1, 2), np.float32), np.empty((0, 2), np.float32))
     most = max(request.centres.shape[1] for request in requests)
     centres = np.full((sum(map(len, requests)), most, 2), np.nan, np.float32)
+    preference = np.tile(np.arange(most), (len(centres), 1))
     at = 0
     for request in requests:
-        centres[at : at + len(request), : request.centres.shape[1]] = request.centres
+        rows, k = slice(at, at + len(request)), request.centres.shape[1]
+        centres[rows, :k] = request.centres
+        if request.preference is not None:
+            preference[rows, :k] = request.preference
         at += len(request)
     return Request(
         np.concatenate([request.ids for request in requests]),
         centres,
         np.concatenate([request.half for request in requests]),
+        preference,
     )
 
 
@@ -152,10 +159,11 @@ def place(
     # Newcomers and the displaced: all positions against all that is fixed by now, in one go.
     new = np.flatnonzero(choice < 0)
     if len(new):
-        order = np.tile(np.arange(k), (len(new), 1))
+        order = np.tile(np.arange(k), (len(new), 1)) if request.preference is None else request.preference[new]
         again = recalled[new]
-        remembered = np.flatnonzero((again > 0) & (again < k))
-        order[remembered, 0], order[remembered, again[remembered]] = again[remembered], 0
+        # What lost its place looks there first.
+        for i in np.flatnonzero((again >= 0) & (again < k)).tolist():
+            order[i] = [again[i], *(j for j in order[i].tolist() if j != again[i])]
         flat_text, flat_position = np.repeat(np.arange(len(new)), k), order.reshape(-1)
         usable = allowed[new[flat_text], flat_position]
         flat_text, flat_position = flat_text[usable], flat_position[usable]

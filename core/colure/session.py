@@ -88,6 +88,10 @@ def _colour(where: str, value: str | None) -> str | None:
     return value
 
 
+def _no_extras() -> Mapping[str, Any]:
+    return MappingProxyType({})
+
+
 @dataclass(frozen=True, slots=True)
 class Centre:
     """What the chart is centred on: a body, or a longitude and latitude in degrees in a frame."""
@@ -142,7 +146,7 @@ class View:
 
 @dataclass(frozen=True, slots=True)
 class Circle:
-    """A great circle, or a small one at a latitude, of a frame."""
+    """A great circle, or a small one at a latitude, of a frame; `extras` are unknown keys kept from a file."""
 
     frame: str
     lat_deg: float = 0.0
@@ -150,6 +154,7 @@ class Circle:
     visible: bool = True
     graduated: bool = True
     label: str | None = None
+    extras: Mapping[str, Any] = field(default_factory=_no_extras, compare=False)
 
     def __post_init__(self) -> None:
         """Check the frame, the latitude and the colour."""
@@ -200,10 +205,6 @@ class Layers:
         """Check the frame of the grid."""
         if self.grid is not None:
             object.__setattr__(self, "grid", _frame("layers.grid", self.grid))
-
-
-def _no_extras() -> Mapping[str, Any]:
-    return MappingProxyType({})
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,0 +1,203 @@
+"""Reference circles on the page: their curves, their graduation, and where figures and names may stand along them."""
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from colure.arrays import ARCSEC, DEG, TWO_PI, Bool, Float, Int, cartesian
+from colure.clipping import Trace, trace
+from colure.graduation import Steps, grid_step, multiples, steps, visible_longitudes
+from colure.marks import CIRCLE, DIVISION, F32, GRID, Layer, Lines, Mark, Segments
+from colure.scene.context import Context, in_page
+from colure.session import Circle
+from colure.sky import FrameAxes
+
+TICKS = (3.0, 5.5, 8.5)
+"""Lengths in pixels of the smallest tick, the middle tick and the tick with a figure."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Curve:
+    """A graduated curve on the page, sampled at every smallest tick.
+
+    `arcsec` (N,) longitudes as whole arcseconds, `xy` (N, 2) pixels, `tangent` (N, 2) unit vectors towards growing
+    longitude, `north` (N, 2) unit vectors to the north side, `shown` (N,) whether the point is on the map.
+    """
+
+    number: int
+    circle: Circle
+    steps: Steps
+    arcsec: Int
+    xy: F32
+    tangent: F32
+    north: F32
+    shown: Bool
+
+
+def _radians(arcsec: Int) -> Float:
+    return np.asarray(arcsec * ARCSEC, dtype=np.float64)
+
+
+@lru_cache(maxsize=256)
+def _base(first: int, last: int, step: int, lat: float) -> tuple[Int, Float]:
+    """Return longitudes in arcseconds and directions (3, N) in the frame, for the multiples first … last of a step."""
+    arcsec = np.arange(first, last + 1) * step
+    columns = np.ascontiguousarray(cartesian(_radians(arcsec), lat).T)
+    columns.flags.writeable = False
+    return arcsec, columns
+
+
+def span(ctx: Context, axes: FrameAxes, lat: float) -> tuple[float, float]:
+    """Return the longitudes (rad) between which a parallel of a frame can be on the map; equal if nowhere."""
+    radius = ctx.window.radius
+    if radius > 1.0:
+        return 0.0, TWO_PI
+    lon0, lat0 = axes.spherical(ctx.window.centre[None, :])
+    return visible_longitudes(float(lon0[0]), float(lat0[0]), radius, lat)
+
+
+def columns_of(axes: FrameAxes, first: float, last: float, step: int, lat: float) -> tuple[Int, Float]:
+    """Return longitudes in arcseconds and directions (3, N) on ICRS axes at the multiples of a step over a span."""
+    whole = last - first >= TWO_PI - 1e-9
+    if whole:
+        low, high = 0, round(TWO_PI / ARCSEC / step)
+    else:
+        low, high = int(np.floor(first / ARCSEC / step)), int(np.ceil(last / ARCSEC / step))
+    arcsec, columns = _base(low, high, step, lat)
+    if axes.matrix is None:
+        return arcsec, axes.columns(_radians(arcsec), lat)
+    return arcsec, axes.matrix @ columns
+
+
+def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
+    """Return the layer of circles, and their curves for the labels."""
+    chosen = steps(ctx.scale)
+    parts: list[tuple[int, Circle, FrameAxes, Int, Float]] = []
+    for number, (circle, axes) in enumerate(ctx.sky["circles"]):
+        lat = circle.lat_deg * DEG
+        first, last = span(ctx, axes, lat)
+        if last > first:
+            parts.append((number, circle, axes, *columns_of(axes, first, last, chosen.minor, lat)))
+    if not parts:
+        return Layer("circles", (), key(ctx)), ()
+    starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
+    columns = np.concatenate([part[4] for part in parts], axis=1)
+    drawn = trace(ctx.window, ctx.projector.to_camera(columns), starts)
+    tangent, valid = _tangents(drawn)
+    valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
+    xy = np.stack([drawn.x, drawn.y], axis=1).astype(np.float32)
+    # North is to the left of growing longitude seen from outside the sphere; a sky chart is seen from inside, and the
+    # horizon counts its azimuths the other way round.
+    side = 1.0 if ctx.view.east_left else -1.0
+    marks: list[Mark] = []
+    curves: list[Curve] = []
+    for k, (number, circle, axes, arcsec, _) in enumerate(parts):
+        a, b = int(starts[k]), int(starts[k + 1])
+        points, ends = drawn.between(a, b)
+        if len(ends) < 2:
+            continue
+        marks.append(Lines("circle", points, ends, CIRCLE, circle.colour))
+        left_handed = axes.matrix is not None and np.linalg.det(axes.matrix) < 0.0
+        hand = np.float32(-side if left_handed else side)
+        t = tangent[a:b]
+        north = np.empty_like(t)
+        north[:, 0], north[:, 1] = -t[:, 1] * hand, t[:, 0] * hand
+        curve = Curve(number, circle, chosen, arcsec, xy[a:b], t, north, valid[a:b])
+        curves.append(curve)
+        if circle.graduated:
+            marks.append(_ticks(curve))
+    return Layer("circles", tuple(marks), key(ctx)), tuple(curves)
+
+
+def key(ctx: Context) -> object:
+    """Return what the layer depends on."""
+    return (ctx.sky.key("circles"), ctx.view_key)
+
+
+def _tangents(drawn: Trace) -> tuple[F32, Bool]:
+    """Return unit tangents (N, 2) on the page from the neighbours that are joined, and which points have one."""
+    n = len(drawn.x)
+    after = np.zeros(n, dtype=bool)
+    after[:-1] = drawn.whole
+    before = np.zeros(n, dtype=bool)
+    before[1:] = drawn.whole
+    here = np.arange(n)
+    upper, lower = here + after, here - before
+    dx, dy = drawn.x[upper] - drawn.x[lower], drawn.y[upper] - drawn.y[lower]
+    length = np.hypot(dx, dy)
+    valid = length > 0.0
+    length = np.where(valid, length, 1.0)
+    return np.stack([dx / length, dy / length], axis=1).astype(np.float32), valid
+
+
+def _ticks(curve: Curve) -> Segments:
+    """Return the ticks of a curve, on its north side."""
+    major, middle = curve.arcsec % curve.steps.major == 0, curve.arcsec % curve.steps.middle == 0
+    length = np.where(major, TICKS[2], np.where(middle, TICKS[1], TICKS[0])).astype(np.float32)[curve.shown, None]
+    xy = curve.xy[curve.shown]
+    ends = xy + curve.north[curve.shown] * length
+    return Segments("circle", np.concatenate([xy, ends], axis=1), GRID, curve.circle.colour)
+
+
+def grid(ctx: Context) -> Layer:
+    """Return the layer of coordinate lines, evenly spaced in latitude, and in longitude as evenly as a pole allows."""
+    step = grid_step(ctx.scale)
+    axes: FrameAxes = ctx.sky["grid"]
+    pieces: list[Float] = []
+    sizes: list[int] = []
+    radius = ctx.window.radius
+    lon0, lat0 = (float(v[0]) for v in axes.spherical(ctx.window.centre[None, :]))
+    whole = radius > 1.0
+    low, high = (-np.pi / 2, np.pi / 2) if whole else (max(lat0 - radius, -np.pi / 2), min(lat0 + radius, np.pi / 2))
+    # About 12 pixels between points, and never more than 2° apart, so that curves look like curves.
+    fine = max(min(step // 10, 7200), 1)
+    for arcsec in multiples(step, low, high).tolist():
+        lat = arcsec * ARCSEC
+        first, last = (0.0, TWO_PI) if whole else visible_longitudes(lon0, lat0, radius, lat)
+        if abs(lat) < np.pi / 2 - 1e-9 and last > first:
+            points = columns_of(axes, first, last, fine, lat)[1]
+            pieces.append(points)
+            sizes.append(points.shape[1])
+    reach = (0.0, TWO_PI)
+    if not whole:
+        spans = [visible_longitudes(lon0, lat0, radius, lat) for lat in (low, lat0, high, 0.5 * (low + lat0))]
+        spans.append(visible_longitudes(lon0, lat0, radius, float(np.arcsin(np.clip(np.sin(lat0), -1, 1)))))
+        reach = (min(s[0] for s in spans), max(s[1] for s in spans))
+        if reach[1] - reach[0] > TWO_PI:
+            reach = (0.0, TWO_PI)
+    lon_step = _meridian_step(step, min(abs(low), abs(high)) if low * high > 0 else 0.0)
+    lats = _latitudes(low, high, fine, lon_step)
+    meridians = multiples(lon_step, *reach)
+    if reach[1] - reach[0] >= TWO_PI - 1e-9:
+        meridians = np.unique(meridians % 1296000)
+    for arcsec in meridians.tolist():
+        pieces.append(axes.columns(np.full(len(lats), arcsec * ARCSEC), lats))
+        sizes.append(len(lats))
+    if not pieces:
+        return Layer("grid", (), grid_key(ctx))
+    starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
+    camera = ctx.projector.to_camera(np.concatenate(pieces, axis=1))
+    xy, ends = trace(ctx.window, camera, starts).between(0, int(starts[-1]))
+    return Layer("grid", (Lines("grid", xy, ends, GRID),), grid_key(ctx))
+
+
+def _meridian_step(step: int, nearest_lat: float) -> int:
+    """Return the spacing of meridians: that of the parallels, wider where a field near a pole squeezes them."""
+    wanted = step / max(np.cos(nearest_lat), 0.02)
+    round_ones = (1, 5, 10, 30, 60, 300, 600, 1800, 3600, 7200, 18000, 36000, 54000, 108000)
+    return next((r for r in round_ones if r >= wanted - 1e-6), round_ones[-1])
+
+
+def _latitudes(low: float, high: float, fine: int, lon_step: int) -> Float:
+    """Return the latitudes of the points of a meridian; on the whole sky it stops a degree short of most poles."""
+    n = max(int((high - low) / ARCSEC / fine), 2)
+    return np.linspace(low, high, n + 1)
+
+
+def grid_key(ctx: Context) -> object:
+    """Return what the layer of the grid depends on."""
+    return (ctx.sky.key("grid"), ctx.view_key)
+
+
+__all__ = ["DIVISION", "Curve", "build", "columns_of", "grid", "grid_key", "key", "span"]

@@ -1,0 +1,82 @@
+"""What every layer of a scene is built from: the sky, the view on the page, and the scene before."""
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from colure.arrays import DEG
+from colure.clipping import Window
+from colure.marks import Layer
+from colure.projections import Projector, projector
+from colure.scene.layout import Layout, layout
+from colure.session import View
+from colure.sky import Sky
+from colure.sky_layers import limit_of
+
+PAGE_MARGIN = 10.0
+"""Pixels outside the map within which marks are kept: more than the radius of the largest star."""
+
+
+@dataclass(slots=True)
+class Context:
+    """The inputs of one build. `view_key` changes whenever any direction would fall on another pixel."""
+
+    sky: Sky
+    view: View
+    page: Layout
+    projector: Projector
+    window: Window
+    view_key: object
+    limit: float
+    previous: dict[str, tuple[Layer, Any]]
+    made: dict[str, tuple[Layer, Any]] = field(default_factory=dict)
+
+    @property
+    def frame(self) -> tuple[float, float, float, float]:
+        """The map rectangle."""
+        return self.page.frame
+
+    @property
+    def scale(self) -> float:
+        """Pixels per radian at the centre."""
+        return self.projector.scale
+
+    def layer(self, name: str, key: object, make: Callable[[], tuple[Layer, Any]]) -> Any:
+        """Add a layer, that of the scene before if its key is the same, and return what it holds for other layers."""
+        old = self.previous.get(name)
+        self.made[name] = old if old is not None and old[0].key == key else make()
+        return self.made[name][1]
+
+
+def context(sky: Sky, size: tuple[int, int], previous: dict[str, tuple[Layer, Any]]) -> Context:
+    """Return the context of a build on a page of `size` logical pixels."""
+    view = sky.session.view
+    page = layout(*size)
+    p = projector(
+        view.projection,
+        sky.axes.centre,
+        sky.axes.pole,
+        sky.axes.spare,
+        east_left=view.east_left,
+        width=view.width_deg * DEG,
+        rotation=view.rotation_deg * DEG,
+        frame=page.frame,
+    )
+    key = (view.projection, size, p.camera.tobytes(), p.plane.tobytes(), p.shift.tobytes())
+    return Context(sky, view, page, p, Window.of(p, page.frame), key, limit_of(view), previous)
+
+
+def in_page(ctx: Context, x: Any, y: Any, margin: float = PAGE_MARGIN) -> Any:
+    """Return which pixels (N,) lie on the map or within a margin of it."""
+    left, top, right, bottom = ctx.frame
+    return (x > left - margin) & (x < right + margin) & (y > top - margin) & (y < bottom + margin)
+
+
+def on_page(ctx: Context, columns: Any, margin: float = PAGE_MARGIN) -> tuple[Any, Any]:
+    """Return page positions (N, 2) float32 of directions (3, N) on ICRS axes, and which (N,) are on the map."""
+    camera = ctx.projector.to_camera(columns)
+    x, y = ctx.projector.to_page(camera)
+    shown = ctx.projector.on_sky(camera) & in_page(ctx, x, y, margin)
+    return np.stack([x, y], axis=1).astype(np.float32), shown

@@ -1,0 +1,106 @@
+"""Deep-sky objects and the points of the ecliptic on the page: map symbols, as large as the object where that shows."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colure import deepsky as objects
+from colure.arrays import Float
+from colure.marks import Layer, Symbols
+from colure.scene.context import Context, in_page, on_page
+from colure.sky_layers import SYMBOLS, DeepSky
+
+LEAST = 3.6
+"""Least half-axis of a symbol in pixels."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Spots:
+    """What of the deep sky asks for a text: directions (3, N), rows, radii in pixels and texts."""
+
+    columns: Float
+    rows: NDArray[np.int64]
+    radius: NDArray[np.float32]
+    texts: tuple[str, ...]
+
+
+def limit_of(ctx: Context) -> float:
+    """Return the magnitude down to which objects are shown: they are harder to see than stars, and need room."""
+    if ctx.view.width_deg >= 30.0:
+        return ctx.limit - 0.8
+    return ctx.limit + 1.0 if ctx.view.width_deg >= 5.0 else 100.0
+
+
+def build(ctx: Context) -> tuple[Layer, Spots | None]:
+    """Return the layer of symbols, and what of them asks for a text."""
+    sky: DeepSky = ctx.sky["deep sky"]
+    count = int(np.searchsorted(sky.magnitude, limit_of(ctx)))
+    xy, on = on_page(ctx, sky.columns[:, :count], 20.0)
+    at = np.flatnonzero(on)
+    if not len(at):
+        return Layer("deep sky", (), key(ctx)), None
+    step = 1e-5
+    x, y = ctx.projector.to_page(ctx.projector.to_camera(sky.columns[:, at] + step * sky.axis[:, at]))
+    dx, dy = x - xy[at, 0], y - xy[at, 1]
+    # The scale along the axis from the page itself; differences of float32 pixels are too coarse for it.
+    camera = ctx.projector.to_camera(np.ascontiguousarray(sky.columns[:, at]))
+    x0, y0 = ctx.projector.to_page(camera)
+    dx, dy = x - x0, y - y0
+    scale = np.hypot(dx, dy) / step
+    size = sky.half[at] * scale[:, None]
+    real = size[:, 0] > LEAST
+    floor = np.maximum(size[:, 1], 0.45 * size[:, 0])
+    shape = np.where(real[:, None], np.stack([size[:, 0], np.maximum(floor, 1.5)], axis=1), LEAST)
+    galaxy = sky.symbol[at] == 0
+    shape[~real & galaxy] = (LEAST + 1.0, 2.2)
+    # Only galaxies are drawn along their axis; the other symbols stand upright.
+    angle = np.where(galaxy, np.arctan2(dy, dx), 0.0)
+    round_ones = ~galaxy
+    shape[round_ones] = shape[round_ones].max(axis=1)[:, None]
+    inside = in_page(ctx, xy[at, 0], xy[at, 1], 0.0)
+    mark = Symbols(
+        "deepsky",
+        SYMBOLS,
+        sky.symbol[at],
+        xy[at],
+        shape.astype(np.float32),
+        angle.astype(np.float32),
+        sky.ids[at],
+    )
+    named = at[inside]
+    spots = Spots(
+        sky.columns[:, named], sky.ids[named], shape[inside].max(axis=1).astype(np.float32), _texts(sky, named, ctx)
+    )
+    return Layer("deep sky", (mark,), key(ctx), shown=len(at), total=len(at)), spots
+
+
+def _texts(sky: DeepSky, at: NDArray[np.intp], ctx: Context) -> tuple[str, ...]:
+    """Return short names; those past Messier's only where the field is small, as their list is read for it."""
+    small = ctx.view.width_deg < 30.0
+    return tuple(
+        f"M {messier}" if messier else objects.names(int(row))[0] if small else ""
+        for messier, row in zip(sky.messier[at].tolist(), sky.ids[at].tolist(), strict=True)
+    )
+
+
+def key(ctx: Context) -> object:
+    """Return what the layer depends on."""
+    return (ctx.sky.key("deep sky"), ctx.view_key, ctx.limit)
+
+
+def points(ctx: Context) -> Layer:
+    """Return the layer of equinoxes, solstices and poles."""
+    sky = ctx.sky["points"]
+    xy, on = on_page(ctx, sky.columns, 4.0)
+    at = np.flatnonzero(on)
+    mark = Symbols(
+        "point",
+        ("point", "cross"),
+        np.where(at < 4, 0, 1).astype(np.uint8),
+        xy[at],
+        np.full((len(at), 2), 3.2, np.float32),
+        np.zeros(len(at), np.float32),
+        at.astype(np.int64),
+    )
+    return Layer("points", (mark,) if len(at) else (), (ctx.sky.key("points"), ctx.view_key))

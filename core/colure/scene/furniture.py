@@ -1,0 +1,213 @@
+"""What explains the chart: the title block at the corners, the magnitude legend, and the caution about the Sun."""
+
+from functools import lru_cache
+
+import numpy as np
+
+from colure.arrays import DEG, separation
+from colure.fontmetrics import PX_PER_PT, width_px
+from colure.frames import Frame
+from colure.graduation import figure
+from colure.marks import Discs, Labels, Layer, Mark
+from colure.scene.context import Context
+from colure.scene.stars import RADII, area_ratio, size_class
+from colure.session import Centre, View
+
+TITLE_PT, LEGEND_PT = 10.0, 9.0
+MINUS = "\N{MINUS SIGN}"
+NEAR_SUN_DEG = 20.0
+FINDER_WIDTH_DEG = 40.0
+"""A chart no wider than this is taken for a finder chart."""
+
+_SYMBOLS = {
+    "ecliptic": ("λ", "β"),
+    "galactic": ("l", "b"),
+    "supergalactic": ("SGL", "SGB"),
+    "horizon": ("azimuth", "altitude"),
+    "invariable": ("λ", "β"),
+}
+
+
+def angle_across(width_deg: float) -> str:
+    """Return an angle in the largest unit that needs few figures: `110°`, `3.5°`, `40′`, `90″`."""
+    if width_deg >= 1.0:
+        return f"{width_deg:.3g}°"
+    minutes = width_deg * 60.0
+    return f"{minutes:.3g}′" if minutes >= 1.0 else f"{minutes * 60.0:.3g}″"
+
+
+@lru_cache(maxsize=256)
+def frame_label(name: str) -> str:
+    """Return a frame as a reader calls it."""
+    return Frame.parse(name).label()
+
+
+def up_label(view: View) -> str:
+    """Return which way is up, and by how much the picture is turned from it."""
+    if view.up == "zenith":
+        text = "zenith up"
+    else:
+        frame = Frame.parse(view.up)
+        plain = view.up in ("ecliptic/mean/date", "equator/mean/date", "ecliptic/true/date", "equator/true/date")
+        text = f"{frame.plane if plain or frame.plane in ('galactic', 'invariable') else frame.label()} up"
+        text = text.replace("equator up", "north up")
+    return text if view.rotation_deg == 0.0 else f"{text}, turned {view.rotation_deg:g}°"
+
+
+def projection_label(name: str) -> str:
+    """Return a projection's name as it is printed."""
+    return {"plate-carree": "plate carrée", "mercator": "Mercator", "hammer": "Hammer"}.get(
+        name, name.replace("-", " ")
+    )
+
+
+def centre_label(centre: Centre, width_deg: float) -> str:
+    """Return what the chart is centred on: a body, or a position with figures as fine as a pixel, and its frame."""
+    if centre.body is not None:
+        return f"centred on {centre.body.capitalize()}"
+    # A hundredth of the width, in the unit below: nobody reads a finer position off a chart.
+    step = 60 if width_deg >= 2.0 else 1
+    plane = Frame.parse(centre.frame).plane
+    first, second = _SYMBOLS.get(plane, ("α", "δ"))
+    lon = round(centre.lon_deg * 3600.0 / step) * step
+    lat = round(centre.lat_deg * 3600.0 / step) * step
+    return f"{first} {_minutes(lon % 1296000)}  {second} {_minutes(lat, True)}  ({frame_label(centre.frame)})"
+
+
+def _minutes(arcsec: int, signed: bool = False) -> str:
+    text = figure(arcsec, signed)
+    return text if "′" in text else f"{text} 00′"
+
+
+def title(ctx: Context) -> Layer:
+    """Return the layer of the title block, the legend and the notes."""
+    session, view, page = ctx.sky.session, ctx.view, ctx.page
+    rows = len(page.above)
+    key = title_key(ctx)
+    if rows == 0:
+        return Layer("title", (), key, clip=False)
+    left, right = ctx.frame[0] - 7.0, ctx.frame[2] + 7.0
+    moment = str(session.moment.text())
+    where = f"{session.site.name} · {session.site.coordinates()}" if session.site.name else session.site.coordinates()
+    seen_from = f"from {session.site.name or 'the site'}" if session.from_site else "from the Earth’s centre"
+    hand = "east left" if view.east_left else "east right, a map"
+    across = f"{angle_across(view.width_deg)} across"
+    lines_of_text = [
+        ("left", 0, moment),
+        ("right", 0, f"{projection_label(view.projection)} · {up_label(view)} · {across}"),
+        ("left", -1, centre_label(view.centre, view.width_deg)),
+    ]
+    if rows > 1:
+        lines_of_text += [
+            ("left", 1, where),
+            ("right", 1, hand),
+            ("left", -2, f"{session.place} places, {seen_from}"),
+        ]
+    marks: list[Mark] = []
+    texts: list[str] = []
+    places: list[tuple[float, float]] = []
+    for side, row, text in lines_of_text:
+        y = page.above[row] if row >= 0 else page.below[-1 - row] if -1 - row < rows else page.below[-1]
+        # Row −1 is nearest the map at the foot of the page.
+        if row < 0:
+            y = page.below[rows + row]
+        fitted, width = _fitted(text, 0.56 * (right - left) if side == "left" else 0.43 * (right - left))
+        texts.append(fitted)
+        places.append((left + 0.5 * width if side == "left" else right - 0.5 * width, y))
+    xy = np.array(places, np.float32)
+    index = np.arange(len(texts), dtype=np.int32)
+    marks.append(Labels("title", tuple(texts), index, xy, np.zeros(len(texts), np.float32), TITLE_PT, halo=False))
+    marks += _legend(ctx, right, page.below[rows - 1], page.below[0], left)
+    return Layer("title", tuple(marks), key, clip=False)
+
+
+def title_key(ctx: Context) -> object:
+    """Return what the title block depends on."""
+    session = ctx.sky.session
+    stars = "stars" in ctx.sky.layers
+    return (session.moment, session.site, session.place, session.from_site, ctx.view, ctx.limit, ctx.page, stars)
+
+
+def _fitted(text: str, room: float) -> tuple[str, float]:
+    """Return a text cut to the room at one of its ` · `, or anywhere, and its width."""
+    width = width_px(text, TITLE_PT, "title")
+    while width > room and " · " in text:
+        text = text.rpartition(" · ")[0]
+        width = width_px(text, TITLE_PT, "title")
+    while width > room and len(text) > 4:
+        text = text[:-2].rstrip() + "…"
+        width = width_px(text, TITLE_PT, "title")
+    return text, width
+
+
+def _legend(ctx: Context, right: float, y_text: float, y_discs: float, left: float) -> list[Mark]:
+    """Return the magnitude limit, and below it discs of whole magnitudes with their figures."""
+    limit = f"stars to {ctx.limit:.1f} mag".replace("-", MINUS)
+    if "stars" in ctx.sky.layers and y_discs != y_text:
+        limit += f" · area × {1.0 / area_ratio(ctx.limit):.2f} for each"
+    width = width_px(limit, LEGEND_PT, "legend")
+    marks: list[Mark] = [
+        Labels(
+            "legend",
+            (limit,),
+            np.zeros(1, np.int32),
+            np.array([[right - 0.5 * width, y_text]], np.float32),
+            np.zeros(1, np.float32),
+            LEGEND_PT,
+            halo=False,
+        )
+    ]
+    if y_discs == y_text or "stars" not in ctx.sky.layers:
+        return marks
+    faintest = int(np.floor(ctx.limit))
+    step = 1 if faintest <= 8 else 2
+    magnitudes = np.arange(-1, faintest + 1, step)[::-1]
+    texts = tuple(f"{m}".replace("-", MINUS) for m in magnitudes.tolist())
+    size = size_class(magnitudes.astype(np.float32), ctx.limit)
+    x = right
+    discs: list[tuple[float, float]] = []
+    labels: list[tuple[float, float]] = []
+    for text, radius in zip(texts, RADII[size].tolist(), strict=True):
+        w = width_px(text, LEGEND_PT, "legend")
+        labels.append((x - 0.5 * w, y_discs))
+        x -= w + 4.0 + radius
+        discs.append((x, y_discs))
+        x -= radius + 11.0
+    n = len(texts)
+    neutral = np.full(n, 3, np.uint8)
+    marks.append(Discs("legend.star", np.array(discs, np.float32), size, neutral, RADII, np.full(n, -1, np.int64)))
+    angle = np.zeros(n, np.float32)
+    unique = Labels(
+        "legend", texts, np.arange(n, dtype=np.int32), np.array(labels, np.float32), angle, LEGEND_PT, halo=False
+    )
+    return [*marks, unique]
+
+
+def caution(ctx: Context) -> tuple[Layer, tuple[str, ...]]:
+    """Return the warning about the Sun, if a finder chart lies within 20° of it, and its text as a note."""
+    sun = ctx.sky["bodies"].vector("sun")
+    text = ""
+    if sun is not None and ctx.view.width_deg <= FINDER_WIDTH_DEG:
+        apart = float(separation(ctx.window.centre, sun)) / DEG - ctx.window.radius / DEG
+        if apart < NEAR_SUN_DEG:
+            text = (
+                "The Sun is in this field. Pointing optics at the Sun injures eyes and instruments."
+                if apart <= 0.0
+                else f"The Sun is {max(apart, 0.1):.0f}° from this field. "
+                "Pointing optics near the Sun injures eyes and instruments."
+            )
+    key = (text, ctx.page)
+    if not text:
+        return Layer("caution", (), key), ()
+    left, _, right, bottom = ctx.frame
+    size = 10.0
+    while size > 9.0 and width_px(text, size, "caution", bold=True) > right - left - 20:
+        size -= 0.5
+    parts = [text]
+    if width_px(text, size, "caution", bold=True) > right - left - 20:
+        parts = [part if part.endswith(".") else part + "." for part in text.split(". ")]
+    y = bottom - 12.0 - size * PX_PER_PT * 1.3 * np.arange(len(parts))[::-1]
+    xy = np.stack([np.full(len(parts), 0.5 * (left + right)), y], axis=1).astype(np.float32)
+    index = np.arange(len(parts), dtype=np.int32)
+    label = Labels("caution", tuple(parts), index, xy, np.zeros(len(parts), np.float32), size, bold=True)
+    return Layer("caution", (label,), key), (text,)

@@ -1,0 +1,100 @@
+"""Stars on the page: discs whose areas fall with magnitude on one scale, at most one in each 3-pixel cell."""
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colure.marks import F32, U8, Discs, Layer
+from colure.scene.context import Context, in_page
+
+SIZES = 24
+"""Number of size classes between the faintest star shown and the brightest."""
+SMALLEST, LARGEST = 0.62, 6.6
+"""Radii in pixels of a star at the limit and of one of magnitude −1.5."""
+BRIGHTEST = -1.5
+CELL = 3.0
+
+
+def radii() -> F32:
+    """Return the radius of each size class, in pixels: a geometric series, so that areas fall evenly by magnitude."""
+    return (SMALLEST * (LARGEST / SMALLEST) ** (np.arange(SIZES) / (SIZES - 1.0))).astype(np.float32)
+
+
+RADII = radii()
+
+
+def size_class(vmag: NDArray[np.floating], limit: float) -> U8:
+    """Return the size class of magnitudes on the scale of a chart with this limit."""
+    per_mag = (SIZES - 1) / (limit - BRIGHTEST)
+    classes = (np.float32(limit) - vmag) * np.float32(per_mag) + np.float32(0.5)
+    return np.asarray(np.clip(classes, 0.0, SIZES - 1), dtype=np.uint8)
+
+
+def area_ratio(limit: float) -> float:
+    """Return by how much the area of a disc falls from one magnitude to the next."""
+    return float((LARGEST / SMALLEST) ** (2.0 / (limit - BRIGHTEST)))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Shown:
+    """The stars on the page: places in the sky's rows (faintest first), their positions and radii."""
+
+    at: NDArray[np.intp]
+    xy: F32
+    radius: F32
+
+
+def build(ctx: Context) -> tuple[Layer, Shown]:
+    """Return the layer of stars and which are shown."""
+    stars = ctx.sky["stars"]
+    base, directions = stars.base, stars.directions
+    # Rows are sorted faintest first: what is brighter than the limit is the end of the list.
+    first = int(np.searchsorted(-base.vmag, np.float32(-ctx.limit), side="left"))
+    camera = ctx.projector.to_camera(directions[:, first:])
+    numbers: NDArray[np.intp] | None = None
+    if not ctx.projector.projection.unrolled and ctx.window.cap < 3.1:
+        numbers = np.flatnonzero(camera[2] >= np.cos(ctx.window.cap))
+        # Most stars of the sky are out of a small field: drop them before the projection.
+        camera = camera[:, numbers]
+    x, y = ctx.projector.to_page(camera)
+    shown = in_page(ctx, x, y)
+    if ctx.projector.projection.name == "mercator":
+        shown &= ctx.projector.on_sky(camera)
+    inside = np.flatnonzero(shown)
+    x, y = x[inside], y[inside]
+    total = len(inside)
+    keep = _thin(x - (ctx.frame[0] - 16.0), y - (ctx.frame[1] - 16.0), ctx.page.width + 32, ctx.page.height + 32)
+    inside = inside[keep]
+    xy = np.empty((len(keep), 2), dtype=np.float32)
+    xy[:, 0] = x[keep]
+    xy[:, 1] = y[keep]
+    at = inside if numbers is None else numbers[inside]
+    at = at + first
+    size = size_class(base.vmag[at], ctx.limit)
+    mark = Discs("star", xy, size, base.tint[at], RADII, base.ids[at])
+    layer = Layer("stars", (mark,), _key(ctx), shown=len(at), total=total)
+    return layer, Shown(at, xy, RADII[size])
+
+
+def _key(ctx: Context) -> object:
+    return (ctx.sky.key("stars"), ctx.view_key, ctx.limit)
+
+
+def key(ctx: Context) -> object:
+    """Return what the layer of stars depends on."""
+    return _key(ctx)
+
+
+def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: int) -> NDArray[np.intp]:
+    """Return the numbers, ascending, of the last point in each cell of CELL pixels; x, y are not negative."""
+    columns = int(width / CELL) + 2
+    scale = x.dtype.type(1.0 / CELL)
+    cell = (y * scale).astype(np.int32)
+    cell *= columns
+    cell += (x * scale).astype(np.int32)
+    # Later rows are brighter and overwrite fainter ones; the table need not be cleared, as only written cells are read.
+    owner = np.empty(columns * (int(height / CELL) + 2), dtype=np.int32)
+    numbers = np.arange(len(cell), dtype=np.int32)
+    owner[cell] = numbers
+    return np.flatnonzero(owner[cell] == numbers)

@@ -1,0 +1,110 @@
+"""Lines and filled zones under everything else: the sky itself, the Milky Way, the belt, constellation edges."""
+
+import numpy as np
+
+from colure.arrays import ARCSEC, DEG, TWO_PI, Float
+from colure.clipping import lines
+from colure.clipping_areas import areas, rim_ring
+from colure.graduation import steps, visible_longitudes
+from colure.marks import DIVISION, GRID, Areas, Layer, Lines, Mark
+from colure.scene.circles import columns_of
+from colure.scene.context import Context
+from colure.sky import FrameAxes
+
+DIVISIONS = 12
+
+
+def sky_disc(ctx: Context) -> Layer:
+    """Return the layer of the sky's own shape: the map rectangle, or the outline of the projection where that shows."""
+    left, top, right, bottom = ctx.frame
+    box = np.array([[left, top], [right, top], [right, bottom], [left, bottom]], np.float32)
+    ring = rim_ring(ctx.window)
+    marks: list[Mark] = []
+    if ring is None:
+        marks.append(Areas("sky", box, np.array([0, 4], np.int32)))
+    else:
+        marks.append(Areas("sky", ring, np.array([0, len(ring)], np.int32)))
+        closed = np.concatenate([ring, ring[:1]])
+        marks.append(Lines("rim", closed, np.array([0, len(closed)], np.int32), GRID))
+    return Layer("sky", tuple(marks), ctx.view_key)
+
+
+def milky_way(ctx: Context) -> Layer:
+    """Return the layer of the Milky Way's levels, fainter ones first."""
+    marks: list[Mark] = []
+    for level, outline in ctx.sky["milky way"]:
+        camera = ctx.projector.to_camera(outline.columns)
+        outside = ctx.projector.camera @ outline.outside
+        points, starts = areas(ctx.window, camera, outline.starts, outside)
+        if len(points):
+            marks.append(Areas(f"milkyway.{level}", points, starts))
+    return Layer("milky way", tuple(marks), (ctx.sky.key("milky way"), ctx.view_key))
+
+
+def belt(ctx: Context) -> Layer:
+    """Return the filled belt, its two edges and the twelve divisions from the equinox."""
+    axes: FrameAxes = ctx.sky["belt"]
+    setting = ctx.sky.session.belt
+    half = setting.half_width_deg * DEG
+    fine = min(max(steps(ctx.scale).minor, 60), 3600)
+    marks: list[Mark] = []
+    edges = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
+    full = [columns_of(axes, 0.0, TWO_PI, 3600, lat)[1][:, :-1] for lat in (half, -half)]
+    if ctx.window.radius < 0.5:
+        full = [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
+    ring_starts = np.array([0, full[0].shape[1], full[0].shape[1] + full[1].shape[1]], np.int32)
+    pole = axes.columns(np.zeros(1), np.pi / 2)[:, 0]
+    points, starts = areas(
+        ctx.window, ctx.projector.to_camera(np.concatenate(full, axis=1)), ring_starts, ctx.projector.camera @ pole
+    )
+    if len(points):
+        marks.append(Areas("belt", points, starts, alpha=0.55))
+    sizes = [edge.shape[1] for edge in edges]
+    edge_points, edge_starts = lines(
+        ctx.window,
+        ctx.projector.to_camera(np.concatenate(edges, axis=1)),
+        np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32),
+    )
+    if len(edge_points):
+        marks.append(Lines("belt.edge", edge_points, edge_starts, GRID))
+    if setting.divisions:
+        lon = np.repeat(np.arange(DIVISIONS) * (TWO_PI / DIVISIONS), 21)
+        lat = np.tile(np.linspace(-half, half, 21), DIVISIONS)
+        camera = ctx.projector.to_camera(axes.columns(lon, lat))
+        points, starts = lines(ctx.window, camera, np.arange(DIVISIONS + 1, dtype=np.int32) * 21)
+        if len(points):
+            marks.append(Lines("belt.division", points, starts, DIVISION))
+    return Layer("belt", tuple(marks), belt_key(ctx))
+
+
+def belt_key(ctx: Context) -> object:
+    """Return what the layer of the belt depends on."""
+    return (ctx.sky.key("belt"), ctx.sky.session.belt, ctx.view_key)
+
+
+def _span(ctx: Context, axes: FrameAxes, lat: float) -> tuple[float, float]:
+    if ctx.window.radius > 1.0:
+        return 0.0, TWO_PI
+    lon0, lat0 = axes.spherical(ctx.window.centre[None, :])
+    return visible_longitudes(float(lon0[0]), float(lat0[0]), ctx.window.radius, lat)
+
+
+def _dense_ring(ctx: Context, axes: FrameAxes, lat: float, fine: int) -> Float:
+    """Return a closed parallel (3, N): fine where it can be seen, a degree apart elsewhere."""
+    first, last = _span(ctx, axes, lat)
+    coarse = np.arange(0.0, TWO_PI, DEG)
+    if last > first:
+        seen = np.arange(int(first / ARCSEC / fine), int(last / ARCSEC / fine) + 1) * (fine * ARCSEC)
+        rest = coarse[
+            ((coarse - seen[-1]) % TWO_PI > DEG * 0.01) & ((coarse - seen[-1]) % TWO_PI < TWO_PI - (last - first))
+        ]
+        coarse = np.concatenate([seen, seen[-1] + np.sort((rest - seen[-1]) % TWO_PI)])
+    return axes.columns(coarse, lat)
+
+
+def edges(ctx: Context) -> Layer:
+    """Return the layer of constellation edges."""
+    sky = ctx.sky["edges"]
+    points, starts = lines(ctx.window, ctx.projector.to_camera(sky.columns), sky.starts)
+    marks = (Lines("edge", points, starts, GRID, dash=True),) if len(points) else ()
+    return Layer("edges", marks, (ctx.sky.key("edges"), ctx.view_key))

@@ -1,0 +1,217 @@
+"""The sky of a session: directions on ICRS axes at one place, in layers that are computed only when their key changes.
+
+A layer is a pure function of a frozen key declared beside it: the part of the session that it reads. `compute` takes
+the sky before and hands on every layer whose key is the same. Theme, selection and hover are in no key, and the view is
+in none but the stars' (which sky cells) and the axes'.
+"""
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from types import MappingProxyType
+from typing import Any
+
+import numpy as np
+
+from colure import frames, sky_layers
+from colure.arrays import DEG, Float, cartesian
+from colure.errors import FrameError, SpanError
+from colure.frames import Frame
+from colure.moment import Moment
+from colure.reduction import Observer
+from colure.session import Session
+from colure.sites import Site
+from colure.sky_layers import BodiesSky, StarsSky
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class SkyLayer:
+    """One layer's value, and the key that it is a pure function of."""
+
+    name: str
+    key: object
+    value: Any
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Axes:
+    """What the view needs of the sky: unit vectors (3,) on ICRS axes.
+
+    `centre` is what the chart is centred on, `pole` what is up, `spare` the zero of longitude of that frame.
+    """
+
+    centre: Float
+    pole: Float
+    spare: Float
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Sky:
+    """Every layer of the sky of one session. `notes` say what could not be had, and why."""
+
+    session: Session
+    observer: Observer
+    axes: Axes
+    layers: MappingProxyType[str, SkyLayer]
+    notes: tuple[str, ...] = ()
+
+    def __getitem__(self, name: str) -> Any:
+        """Return a layer's value."""
+        return self.layers[name].value
+
+    def key(self, name: str) -> object:
+        """Return a layer's key."""
+        return self.layers[name].key
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FrameAxes:
+    """A frame at one moment: `matrix` (3, 3) takes its axes to ICRS; None for FK4, which is no rotation."""
+
+    frame: Frame
+    moment: Moment
+    site: Site | None
+    matrix: Float | None
+
+    def columns(self, lon: Float, lat: Float | float) -> Float:
+        """Return directions (3, N) on ICRS axes for longitudes and latitudes (N,) in radians."""
+        v = cartesian(lon, lat)
+        if self.matrix is not None:
+            return np.asarray(self.matrix @ v.reshape(-1, 3).T)
+        return np.asarray(frames.to_icrs(v.reshape(-1, 3), self.frame, self.moment, self.site).T)
+
+    def spherical(self, vectors: Float) -> tuple[Float, Float]:
+        """Return longitude (0…2π) and latitude (N,) of directions (N, 3) on ICRS axes."""
+        v = frames.from_icrs(vectors, self.frame, self.moment, self.site)
+        return np.arctan2(v[:, 1], v[:, 0]) % (2.0 * np.pi), np.arctan2(v[:, 2], np.hypot(v[:, 0], v[:, 1]))
+
+
+def frame_axes(name: str, moment: Moment, site: Site | None) -> FrameAxes:
+    """Return the axes of a frame given by its name."""
+    frame = sky_layers.frame_named(name)
+    if not frame.is_rotation:
+        return FrameAxes(frame, moment, site, None)
+    return FrameAxes(frame, moment, site, frames.rotation(frame, moment, site).matrix.T)
+
+
+def _frame_key(name: str, session: Session) -> object:
+    """Return what a frame's axes depend on: a fixed frame not on the moment, and only the horizon on the site."""
+    frame = sky_layers.frame_named(name)
+    return (
+        name,
+        session.moment if frame.needs_moment else None,
+        session.site if frame.needs_site else None,
+    )
+
+
+def observer_of(session: Session) -> Observer:
+    """Return where the session looks from: its site, or the centre of the Earth."""
+    return Observer("site", session.site) if session.from_site else Observer("earth")
+
+
+def place_key(session: Session) -> object:
+    """Return what every direction depends on: moment, place and observer."""
+    return (session.moment, session.place, session.site if session.from_site else None)
+
+
+def compute(session: Session, previous: Sky | None = None) -> Sky:
+    """Return the sky of a session; layers of `previous` whose keys are the same are handed on as they are.
+
+    A model that does not reach the moment leaves its layer empty and a note; an impossible view raises FrameError.
+    """
+    observer = observer_of(session)
+    layers: dict[str, SkyLayer] = {}
+    notes: list[str] = []
+
+    def layer(name: str, key: object, make: Callable[[], Any]) -> Any:
+        old = previous.layers.get(name) if previous is not None else None
+        layers[name] = old if old is not None and old.key == key else SkyLayer(name, key, make())
+        return layers[name].value
+
+    def axes_of(name: str) -> FrameAxes:
+        return frame_axes(name, session.moment, session.site)
+
+    def body_names() -> tuple[str, ...]:
+        centre = session.view.centre.body
+        # The Sun is always known, for the caution; the centre of the chart must be.
+        wanted = (*session.bodies, "sun", *((centre,) if centre else ()))
+        seen_from = None if observer.origin == "site" else "earth"
+        return tuple(dict.fromkeys(n for n in wanted if n not in (seen_from, "earth")))
+
+    names = body_names()
+    bodies: BodiesSky = layer(
+        "bodies", (names, place_key(session)), lambda: sky_layers.bodies(names, session.moment, observer, session.place)
+    )
+    if bodies.note:
+        notes.append(bodies.note)
+    axes = _axes(session, bodies)
+
+    limit, cell = sky_layers.star_cell(session.view, axes.centre)
+    base = layer("star rows", (limit, cell), lambda: sky_layers.star_rows(limit, cell))
+    if session.layers.stars:
+        stars: StarsSky = layer(
+            "stars",
+            (limit, cell, place_key(session)),
+            lambda: sky_layers.stars(base, session.moment, observer, session.place),
+        )
+        if stars.note:
+            notes.append(stars.note)
+        kinds = sky_layers.names_wanted(session.view.width_deg)
+        if session.layers.star_names:
+            layer("star names", (limit, cell, kinds), lambda: sky_layers.star_names(base, kinds))
+    # MILKY WAY
+    if session.layers.deep_sky:
+        layer("deep sky", (), sky_layers.deep_sky)
+    step = sky_layers.edge_step(session.view.width_deg)
+    if session.layers.edges:
+        layer("edges", step, lambda: sky_layers.edges(step))
+    if session.layers.constellation_names:
+        layer("constellations", (), sky_layers.constellation_names)
+    if session.layers.grid is not None:
+        grid = session.layers.grid
+        layer("grid", _frame_key(grid, session), lambda: axes_of(grid))
+    if session.belt.visible:
+        belt = session.belt
+        layer("belt", (_frame_key(belt.frame, session), belt), lambda: axes_of(belt.frame))
+    shown = tuple(circle for circle in session.circles if circle.visible)
+    layer(
+        "circles",
+        tuple((_frame_key(circle.frame, session), circle) for circle in shown),
+        lambda: _circles(session, shown, notes),
+    )
+    if session.layers.points:
+        ecliptic = session.belt.frame
+        layer("points", (session.moment, ecliptic), lambda: sky_layers.points(ecliptic, session.moment))
+    return Sky(session, observer, axes, MappingProxyType(layers), tuple(notes))
+
+
+def _circles(session: Session, shown: tuple[Any, ...], notes: list[str]) -> tuple[tuple[Any, FrameAxes], ...]:
+    """Return the circles that can be drawn with their axes; the others become notes."""
+    out = []
+    for circle in shown:
+        try:
+            out.append((circle, frame_axes(circle.frame, session.moment, session.site)))
+        except (FrameError, SpanError) as fault:
+            notes.append(f"circle {circle.frame}: {fault}")
+    return tuple(out)
+
+
+def _axes(session: Session, bodies: BodiesSky) -> Axes:
+    """Return the centre and the pole of the view on ICRS axes."""
+    view, moment, site = session.view, session.moment, session.site
+    centre = view.centre
+    if centre.body is not None:
+        if centre.body not in bodies.names:
+            raise FrameError(
+                f"view.centre: body '{centre.body}' has no direction here; {bodies.note or 'choose another'}"
+            )
+        middle = bodies.vectors[bodies.names.index(centre.body)]
+    else:
+        middle = frame_axes(centre.frame, moment, site).columns(
+            np.array([centre.lon_deg * DEG]), np.array([centre.lat_deg * DEG])
+        )[:, 0]
+    up = frame_axes("horizon" if view.up == "zenith" else view.up, moment, site)
+    pole = up.columns(np.array([0.0]), np.array([np.pi / 2]))[:, 0]
+    # Where the centre is the pole itself, its own longitude says which way is up: the limit of approaching along it.
+    lon = centre.lon_deg * DEG if centre.body is None and abs(centre.lat_deg) == 90.0 else 0.0
+    spare = up.columns(np.array([lon]), np.array([0.0]))[:, 0]
+    return Axes(middle, pole, spare)

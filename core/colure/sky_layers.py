@@ -1,0 +1,335 @@
+"""What each layer of the sky is made of: plain functions of moment, place and observer to directions on ICRS axes."""
+
+from dataclasses import dataclass
+from functools import cache, lru_cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from colure import appearance, belt, constellations, deepsky, frames, names, phases
+from colure.arrays import ARCSEC, DEG, TWO_PI, Float, unit
+from colure.errors import SpanError
+from colure.frames import Frame
+from colure.moment import Moment
+from colure.reduction import Observer, apply_context, reduce_bodies, star_context
+from colure.session import View
+from colure.stars import EPOCH_JD, Rows, catalogue
+
+ALL_SKY_WIDTH = 60.0
+"""From this width (degrees) on, the stars of the whole sky are kept ready; below it those of a cone."""
+
+FINE_WIDTH = 12.0
+"""Below this width directions are float64, with parallaxes: a float32 direction is good to 0.01″ only."""
+
+EDGE_STEPS = ((20.0, 1.0), (4.0, 0.25), (0.0, 0.05))
+"""Spacing of the points of constellation edges (degrees) from each width on."""
+
+FAINTEST = 13.0
+
+_TINT_LIMITS = np.array([-0.12, 0.12, 0.42, 0.80, 1.10, 1.45], np.float32)
+"""B−V between the seven tint classes, roughly between the spectral types O-B, A, F, G, K, K-M, M."""
+
+
+@lru_cache(maxsize=512)
+def frame_named(name: str) -> Frame:
+    """Return the frame of a canonical name, parsed once."""
+    return Frame.parse(name)
+
+
+# Stars
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StarRows:
+    """The stars that may be drawn, faintest first.
+
+    `ids` (N,) rows of the catalogue, `vmag` (N,) descending, `tint` (N,) classes of B−V, `state` (6, N) positions and
+    velocities at the catalogue's epoch, `parallax` (N,) rad or None where it would not show.
+    """
+
+    rows: Rows
+    ids: NDArray[np.int64]
+    vmag: NDArray[np.float32]
+    tint: NDArray[np.uint8]
+    state: NDArray[np.floating]
+    parallax: Float | None
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StarsSky:
+    """Directions (3, N) of the stars of `base` on ICRS axes, in its precision."""
+
+    base: StarRows
+    directions: NDArray[np.floating]
+    note: str = ""
+
+
+Cell = tuple[float, float, float] | None
+"""Centre (rad) and radius (rad) of the cone of stars that is kept ready; None for the whole sky."""
+
+
+def auto_limit(width_deg: float) -> float:
+    """Return the magnitude limit that follows a width: about as many stars on the page at every width.
+
+    Star counts grow by 10^0.45 a magnitude and the area by the square of the width; 7.2 at 110° is the design's chart.
+    """
+    return round(float(np.clip(7.2 - 2.0 / 0.45 * np.log10(width_deg / 110.0), 5.6, 12.5)), 1)
+
+
+def limit_of(view: View) -> float:
+    """Return the magnitude limit of a view: its own, or the one that follows its width."""
+    return auto_limit(view.width_deg) if view.limit_mag is None else view.limit_mag
+
+
+def star_cell(view: View, centre: Float) -> tuple[float, Cell]:
+    """Return the magnitude down to which stars are kept ready, and the cone that they are taken from.
+
+    Both go in steps, so that small changes of the view change neither: half a magnitude, √2 in radius, and half a
+    radius in position.
+    """
+    limit = min(float(np.ceil(limit_of(view) * 2.0 - 1e-6) / 2.0), FAINTEST)
+    if view.limit_mag is not None:
+        limit = view.limit_mag
+    if view.width_deg >= ALL_SKY_WIDTH:
+        return limit, None
+    # The corners of a page as high as 1.6 times its width are 0.95 of a width from its centre.
+    reach = 0.95 * view.width_deg * DEG
+    radius = float(2.0 ** (np.ceil(np.log2(reach) * 2.0) / 2.0))
+    lat_step = 0.5 * radius
+    lat = float(np.round(np.arctan2(centre[2], np.hypot(centre[0], centre[1])) / lat_step) * lat_step)
+    lat = min(max(lat, -np.pi / 2), np.pi / 2)
+    columns = max(int(TWO_PI * np.cos(lat) / lat_step), 1)
+    lon = float(np.round(np.arctan2(centre[1], centre[0]) / TWO_PI * columns) * TWO_PI / columns)
+    # Half a step in both directions is 0.36 radius away at worst.
+    return limit, (lon, lat, min(radius * 1.4, np.pi))
+
+
+def star_rows(limit: float, cell: Cell) -> StarRows:
+    """Return the stars brighter than a limit, of the whole sky or of a cone, sorted faintest first."""
+    found = catalogue().brighter(limit) if cell is None else catalogue().cone(*cell, vmag=limit)
+    order = np.argsort(-found.vmag, kind="stable")
+    rows = found.take(order)
+    fine = cell is not None and cell[2] <= 1.4 * 1.42 * 0.95 * FINE_WIDTH * DEG
+    dtype = np.float64 if fine else np.float32
+    bv = np.nan_to_num(rows.bv, nan=0.6)
+    return StarRows(
+        rows=rows,
+        ids=rows.ids,
+        vmag=np.ascontiguousarray(rows.vmag),
+        tint=np.searchsorted(_TINT_LIMITS, bv).astype(np.uint8),
+        state=np.ascontiguousarray(rows.state(dtype)),
+        parallax=rows.parallax_mas * (1e-3 * ARCSEC) if fine else None,
+    )
+
+
+def stars(base: StarRows, moment: Moment, observer: Observer, place: str) -> StarsSky:
+    """Return the directions of stars at a moment and place."""
+    state = base.state
+    try:
+        context = star_context(moment, observer=observer, place=place, epoch_jd=EPOCH_JD)
+    except SpanError as fault:
+        years = (float(moment.jd_tt) - EPOCH_JD) / 365.25
+        moved = state[:3] + state[3:] * state.dtype.type(years)
+        moved /= np.sqrt((moved * moved).sum(axis=0))
+        return StarsSky(base, moved, f"stars without the Earth's motion: {fault}")
+    directions = apply_context(context, state[:3].T, state[3:].T, base.parallax)
+    return StarsSky(base, np.ascontiguousarray(directions.T))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class StarNames:
+    """Names of stars, the brightest first: rows of the catalogue, places in StarRows, magnitudes and texts."""
+
+    ids: NDArray[np.int64]
+    at: NDArray[np.intp]
+    vmag: NDArray[np.float32]
+    texts: tuple[str, ...]
+
+
+def names_wanted(width_deg: float) -> tuple[names.Kind, ...]:
+    """Return the kinds of star names that a width has room for."""
+    if width_deg >= 50.0:
+        return ("proper",)
+    return ("proper", "bayer") if width_deg >= 15.0 else ("proper", "bayer", "flamsteed")
+
+
+def star_names(base: StarRows, kinds: tuple[names.Kind, ...]) -> StarNames:
+    """Return the names of those stars that have one, each star by the first kind that it has."""
+    order = np.argsort(base.ids)
+    listed = base.ids[order]
+    found: dict[int, str] = {}
+    for kind in kinds:
+        rows, texts = names.labels(kind)
+        for row, text in zip(rows.tolist(), texts, strict=True):
+            found.setdefault(row, text)
+    ids = np.array(list(found), np.int64)
+    if not len(listed) or not len(ids):
+        return StarNames(np.empty(0, np.int64), np.empty(0, np.intp), np.empty(0, np.float32), ())
+    place = np.minimum(np.searchsorted(listed, ids), len(listed) - 1)
+    mine = np.flatnonzero(listed[place] == ids)
+    at = order[place[mine]]
+    # Rows are faintest first, so the largest place is the brightest.
+    bright = np.argsort(-at)
+    every = list(found.values())
+    texts_of = tuple(every[i] for i in mine[bright].tolist())
+    return StarNames(ids[mine[bright]], at[bright], base.vmag[at[bright]], texts_of)
+
+
+# Bodies
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class BodiesSky:
+    """Sun, Moon and planets as the observer sees them.
+
+    `vectors` (B, 3) on ICRS axes, `towards_sun` (B, 3) unit tangents from each body towards the Sun, `distance_au`,
+    `magnitude` (NaN where no formula reaches), `radius` (rad), `lit` the illuminated fraction; all (B,).
+    """
+
+    names: tuple[str, ...]
+    vectors: Float
+    towards_sun: Float
+    distance_au: Float
+    magnitude: Float
+    radius: Float
+    lit: Float
+    note: str = ""
+
+    def vector(self, name: str) -> Float | None:
+        """Return a body's direction (3,), or None."""
+        return self.vectors[self.names.index(name)] if name in self.names else None
+
+
+def bodies(names: tuple[str, ...], moment: Moment, observer: Observer, place: str) -> BodiesSky:
+    """Return directions, sizes, magnitudes and phases of bodies at a moment and place."""
+    try:
+        seen = reduce_bodies(names, moment, observer=observer, place=place)
+    except SpanError as fault:
+        none = np.empty(0)
+        return BodiesSky((), np.empty((0, 3)), np.empty((0, 3)), none, none, none, none, f"no bodies: {fault}")
+    state = seen.observer
+    # As in the reduction: from the observer to where the body was when its light left.
+    sight = seen.heliocentric + (state.sun_pos - state.pos) - (seen.light_time_s / 86400.0)[:, None] * state.sun_vel
+    phase = phases.phase_angle(seen.heliocentric, sight)
+    jd = float(moment.tdb[0]) + float(moment.tdb[1])
+    magnitude = np.array(
+        [
+            float(appearance.magnitude(name, seen.heliocentric[i], sight[i], np.asarray(jd)))
+            for i, name in enumerate(names)
+        ]
+    )
+    radius = np.array([appearance.RADIUS_KM.get(name, 0.0) for name in names]) / 149597870.7 / seen.distance_au
+    lit = np.asarray(phases.illuminated(phase))
+    sun = seen.vectors[names.index("sun")] if "sun" in names else -unit(seen.heliocentric[0])
+    tangent = sun - (seen.vectors @ sun)[:, None] * seen.vectors
+    length = np.sqrt((tangent * tangent).sum(axis=1))[:, None]
+    tangent = tangent / np.where(length > 1e-12, length, 1.0)
+    if "sun" in names:
+        lit[names.index("sun")] = 1.0
+    return BodiesSky(
+        names,
+        seen.vectors,
+        tangent,
+        seen.distance_au,
+        magnitude,
+        np.arcsin(np.minimum(radius, 1.0)),
+        np.clip(lit, 0, 1),
+    )
+
+
+# Constellations, deep sky, Milky Way
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class LinesSky:
+    """Polylines on ICRS axes: columns (3, N) float32 and starts."""
+
+    columns: NDArray[np.float32]
+    starts: NDArray[np.int32]
+
+
+def edge_step(width_deg: float) -> float:
+    """Return the spacing in degrees of the points of constellation edges at a width."""
+    return next(step for width, step in EDGE_STEPS if width_deg >= width)
+
+
+@lru_cache(maxsize=4)
+def edges(step_deg: float) -> LinesSky:
+    """Return the edges of the constellations, at their catalogue positions."""
+    found = constellations.edges(step_deg)
+    return LinesSky(np.ascontiguousarray(found.points.T.astype(np.float32)), found.starts)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class NamesSky:
+    """Texts at directions: columns (3, N), one text each, and a rank (smaller is more important)."""
+
+    columns: Float
+    texts: tuple[str, ...]
+    rank: Float
+
+
+@cache
+def constellation_names() -> NamesSky:
+    """Return the names of the constellations where they fit best, the roomiest first."""
+    found = constellations.anchors()
+    names = {entry.code: entry.name for entry in constellations.constellations()}
+    order = np.argsort(-found.radius)
+    texts = tuple(names[str(code)] for code in found.codes[order])
+    return NamesSky(np.ascontiguousarray(found.points[order].T), texts, -found.radius[order])
+
+
+SYMBOLS = ("galaxy", "open_cluster", "globular", "nebula", "planetary", "dark")
+_SYMBOL_OF = {
+    "OCl": 1, "GCl": 2, "*Ass": 1, "Cl+N": 1, "Neb": 3, "HII": 3, "EmN": 3, "RfN": 3, "DrkN": 5, "PN": 4, "SNR": 3,
+    "Nova": 4, "*": 1, "**": 1,
+}  # fmt: skip
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class DeepSky:
+    """Deep-sky objects, the brightest first.
+
+    `ids` (N,) rows of the list, `columns` (3, N) and `axis` (3, N): the direction and the unit tangent along the major
+    axis, ICRS; `half` (N, 2) half-axes in radians (0 where unknown), `symbol` (N,) places in SYMBOLS, `messier` (N,).
+    """
+
+    ids: NDArray[np.int64]
+    columns: Float
+    axis: Float
+    half: Float
+    symbol: NDArray[np.uint8]
+    magnitude: NDArray[np.float32]
+    messier: NDArray[np.int64]
+
+
+@cache
+def deep_sky() -> DeepSky:
+    """Return the deep-sky objects that a chart may show, at their catalogue positions."""
+    found = deepsky.catalogue()
+    v = found.vectors
+    pa = np.nan_to_num(found.position_angle, nan=0.0)
+    flat = np.maximum(np.hypot(v[:, 0], v[:, 1]), 1e-12)
+    east = np.stack([-v[:, 1] / flat, v[:, 0] / flat, np.zeros(len(v))])
+    north = np.cross(v, east.T).T
+    kinds = np.array([_SYMBOL_OF.get(code, 0) for code, _ in deepsky.TYPES], np.uint8)
+    return DeepSky(
+        ids=np.asarray(found.ids, np.int64),
+        columns=np.ascontiguousarray(v.T),
+        axis=north * np.cos(pa) + east * np.sin(pa),
+        half=np.nan_to_num(found.size_arcmin, nan=0.0) * (0.5 * 60.0 * ARCSEC),
+        symbol=kinds[found.kind],
+        magnitude=np.nan_to_num(np.asarray(found.magnitude, np.float32), nan=99.0),
+        messier=found.data["messier"].astype(np.int64),
+    )
+
+
+def points(ecliptic: str, moment: Moment) -> NamesSky:
+    """Return the equinoxes, solstices and poles of an ecliptic on the mean equator of date."""
+    plane = frame_named(ecliptic)
+    onto = frames.rotation(plane, moment).matrix if plane.is_rotation and plane.plane == "ecliptic" else None
+    if onto is None:
+        onto = frames.rotation("ecliptic/mean/date", moment).matrix
+    marks = belt.cardinal_points(onto, frames.rotation("equator/mean/date", moment).matrix)
+    rank = np.arange(len(marks.labels), dtype=np.float64)
+    return NamesSky(np.ascontiguousarray(marks.points.T), marks.labels, rank)
