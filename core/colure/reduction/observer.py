@@ -14,7 +14,7 @@ from colure.refraction import Atmosphere, standard_pressure
 from colure.sites import Site
 
 ORIGINS = ("earth", "site", "sun", "ssb", "emb")
-C_AU_DAY = 173.1446326846693
+C_AU_DAY = 299792.458 * 86400.0 / 149597870.7
 """Speed of light, au per day: 299792458 m/s × 86400 s / 149597870700 m."""
 EARTH_TURN_RAD_DAY = 2.0 * np.pi * 1.00273781191135448
 """Rate of the Earth rotation angle against UT1 (IAU 2000)."""
