@@ -106,8 +106,8 @@ class Objects:
     @property
     def labels(self) -> list[str]:
         """What to print beside each: "M 31", else "NGC 7293"."""
-        names = _names()[0]
-        return [f"M {m}" if m else names[k][0] for k, m in zip(self.ids, self.data["messier"], strict=True)]
+        table = _names()
+        return [f"M {m}" if m else table[k][0] for k, m in zip(self.ids, self.data["messier"], strict=True)]
 
 
 @cache
@@ -137,39 +137,50 @@ def brighter(magnitude: float, *, messier: bool = True) -> Objects:
 
 
 @cache
-def _names() -> tuple[list[tuple[str, tuple[str, ...], tuple[str, ...]]], dict[str, int], dict[str, str]]:
-    """Return for each row its name, common names and other names; rows by key; and spellings by key."""
-    data = everything().data
+def _names() -> list[tuple[str, tuple[str, ...], tuple[str, ...]]]:
+    """Return for each row its name, common names and other names."""
+    count = len(everything())
     try:
         lines = resources.path("deepsky/names.tsv").read_text(encoding="utf-8").splitlines()[1:]
         fields = [line.split("\t") for line in lines]
-        table = [(f[0], tuple(filter(None, f[1].split(";"))), tuple(filter(None, f[2].split(";")))) for f in fields]
+        table = [(f[0], tuple(f[1].split(";")) if f[1] else (), tuple(f[2].split(";")) if f[2] else ()) for f in fields]
     except (ValueError, IndexError) as fault:
         raise ResourceError(f"data file 'deepsky/names.tsv': {fault}; run 'colure selfcheck'") from fault
-    if len(table) != len(data):
+    if len(table) != count:
         raise ResourceError(
-            f"data file 'deepsky/names.tsv': {len(table)} names, expected {len(data)}; run 'colure selfcheck'"
+            f"data file 'deepsky/names.tsv': {len(table)} names, expected {count}; run 'colure selfcheck'"
         )
+    return table
+
+
+@cache
+def _index() -> tuple[dict[str, int], dict[str, str]]:
+    """Return rows by key, and spellings by key; a chart's labels do without."""
+    table = _names()
     index: dict[str, int] = {}
     spelling: dict[str, str] = {}
-    for k, messier in enumerate(data["messier"].tolist()):
+    for k, messier in enumerate(everything().data["messier"].tolist()):
         name, common, also = table[k]
         for text in (*([f"M {messier}"] if messier else []), name, *common, *also):
             index.setdefault(_key(text), k)
             spelling.setdefault(_key(text), text)
-    return table, index, spelling
+    return index, spelling
 
 
 def _key(text: str) -> str:
     """Return a name for comparison: simplified, numbers without leading zeros, catalogue and number run together."""
-    plain = re.sub(r"^messier\b", "m", re.sub(r"^the ", "", simplified(text)))
-    plain = re.sub(r"(?<!\d)0+(?=\d)", "", plain)
-    return re.sub(r"^([a-z]+) (?=\d)", r"\1", plain)
+    plain = _ARTICLE.sub("", simplified(text)).replace("messier", "m", 1)
+    return _CATALOGUE.sub(r"\1", _ZEROS.sub("", plain))
+
+
+_ARTICLE = re.compile(r"^the ")
+_ZEROS = re.compile(r"(?<!\d)0+(?=\d)")
+_CATALOGUE = re.compile(r"^([a-z]+) (?=\d)")
 
 
 def names(row: int) -> tuple[str, ...]:
     """Return all names of an object: Messier number, catalogue name, common names, other catalogue names."""
-    name, common, also = _names()[0][row]
+    name, common, also = _names()[row]
     messier = int(everything().data["messier"][row])
     return (*([f"M {messier}"] if messier else []), name, *common, *also)
 
@@ -181,11 +192,10 @@ def type_of(row: int) -> str:
 
 def find(text: str) -> int:
     """Return the row of an object by any of its names ("M31", "ngc 224", "Andromeda Galaxy"); raise TargetError."""
-    table, index, _ = _names()
-    row = index.get(_key(text)) if text.strip() else None
+    row = _index()[0].get(_key(text)) if text.strip() else None
     if row is None:
         asked = " ".join(text.split())
-        common = [name for entry in table for name in entry[1]]
+        common = [name for entry in _names() for name in entry[1]]
         # Near numbers are no help; near names are.
         near = near_names(asked, common) if re.search(r"[^\W\d]{4}", asked) else ""
         raise TargetError(f"object '{asked}': in no list; expected an M, NGC or IC number or a common name{near}")
@@ -195,7 +205,7 @@ def find(text: str) -> int:
 def search(text: str, most: int = 10) -> list[tuple[str, int]]:
     """Return up to `most` (name, row) whose name begins with the text, the brightest first; for completion."""
     wanted = _key(text)
-    _, index, spelling = _names()
+    index, spelling = _index()
     if not wanted:
         return []
     found = [(k, key) for key, k in index.items() if key.startswith(wanted)]

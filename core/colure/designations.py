@@ -35,6 +35,8 @@ GREEK = (
 """Each letter of the Greek alphabet, its English name, and the abbreviations in use in catalogues."""
 
 _LETTER = {spelling: row[0] for row in GREEK for spelling in row}
+_MARKS = re.compile("['’ʼ.]")
+_DASHES = str.maketrans("-_", "  ")
 _FORM = re.compile(r"(?P<head>\d{1,3}|[^\W\d_]+)[\s_.-]*(?P<index>\d{1,2})?[\s_.-]+(?P<rest>[^\W\d_][^\d]*)")
 
 
@@ -70,6 +72,7 @@ def parse(text: str) -> str | None:
 
 def simplified(text: str) -> str:
     """Return a name for comparison: no case, no accents, apostrophes or hyphens, single spaces."""
-    plain = unicodedata.normalize("NFKD", text).casefold()
-    plain = "".join(c for c in plain if not unicodedata.combining(c))
-    return " ".join(re.sub(r"[-_]", " ", re.sub(r"['’ʼ.]", "", plain)).split())
+    plain = text.casefold()
+    if not plain.isascii():
+        plain = "".join(c for c in unicodedata.normalize("NFKD", plain) if not unicodedata.combining(c))
+    return " ".join(_MARKS.sub("", plain).translate(_DASHES).split())

@@ -44,11 +44,11 @@ def outlines() -> tuple[Outline, ...]:
     if bounds[0] != 0 or np.any(np.diff(bounds) < 3):
         raise ResourceError("data file 'milkyway/rings.npy': a ring has fewer than 3 points; run 'colure selfcheck'")
     found = []
-    for level in np.unique(rings[:, 1]):
+    for level in sorted(set(rings[:, 1].tolist())):
         mine = np.flatnonzero(rings[:, 1] == level)
         first, last = bounds[mine[0]], bounds[mine[-1] + 1]
         starts = (np.append(bounds[mine], last) - first).astype(np.int32)
         part = points[first:last]
         part.flags.writeable = starts.flags.writeable = False
-        found.append(Outline(int(level), part, starts, OUTSIDE))
+        found.append(Outline(level, part, starts, OUTSIDE))
     return tuple(found)

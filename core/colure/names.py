@@ -56,8 +56,6 @@ class _Table:
     flamsteed: tuple[str, ...]
     also: tuple[tuple[str, ...], ...]
     at: dict[int, int]
-    index: dict[str, int]
-    spelling: dict[str, str]
 
 
 @cache
@@ -72,34 +70,39 @@ def _table() -> _Table:
     except (ValueError, IndexError) as fault:
         raise ResourceError(f"data file 'names/names.tsv': {fault}; run 'colure selfcheck'") from fault
     hip_rows, hip_numbers = catalogue.hip
-    order = np.argsort(hip_numbers)
-    place = np.searchsorted(hip_numbers, numbers, sorter=order)
-    place[place == len(order)] = 0
-    rows = hip_rows[order[place]].astype(np.int64)
-    lost = hip_numbers[order[place]] != numbers
+    row_of = np.full(_HIP_END + 1, -1, dtype=np.int64)
+    row_of[hip_numbers] = hip_rows
+    rows = row_of[np.clip(numbers, 0, _HIP_END)]
     for k in np.flatnonzero(numbers > _HIP_END).tolist():
         row = catalogue.by_gaia(int(numbers[k]))
-        rows[k], lost[k] = row or 0, row is None
-    if lost.any():
-        raise ResourceError(f"data file 'names/names.tsv': star {numbers[lost][0]} is not in the star catalogue")
+        rows[k] = -1 if row is None else row
+    if (rows < 0).any():
+        raise ResourceError(f"data file 'names/names.tsv': star {numbers[rows < 0][0]} is not in the star catalogue")
     bright = np.argsort(catalogue.rows(rows).vmag, kind="stable").tolist()
     proper, bayer, flamsteed, also = ([column[k] for k in bright] for column in columns)
+    more = tuple(tuple(text.split(";")) if text else () for text in also)
+    rows = rows[bright]
+    at = {int(row): k for k, row in enumerate(rows)}
+    return _Table(rows, tuple(proper), tuple(bayer), tuple(flamsteed), more, at)
+
+
+@cache
+def _index() -> tuple[dict[str, int], dict[str, str]]:
+    """Return places in the table by key, and spellings by key; a chart's labels do without."""
+    table = _table()
     index: dict[str, int] = {}
     spelling: dict[str, str] = {}
-    more = [tuple(text.split(";")) if text else () for text in also]
-    for k, _ in enumerate(bright):
-        for name in (proper[k], bayer[k], flamsteed[k], *more[k]):
+    for k, every in enumerate(zip(table.proper, table.bayer, table.flamsteed, strict=True)):
+        for name in (*every, *table.also[k]):
             if name:
                 index.setdefault(_key(name), k)
                 spelling.setdefault(_key(name), name)
-    for k, name in enumerate(bayer):
+    for k, name in enumerate(table.bayer):
         # "α Cap" means the brighter of α1 and α2, where no star is called α Cap itself.
         plain = re.sub(r"\d+ ", " ", name)
         if plain != name:
             index.setdefault(_key(plain), k)
-    rows = rows[bright]
-    at = {int(row): k for k, row in enumerate(rows)}
-    return _Table(rows, tuple(proper), tuple(bayer), tuple(flamsteed), tuple(more), at, index, spelling)
+    return index, spelling
 
 
 def _key(text: str) -> str:
@@ -147,7 +150,8 @@ def find(text: str) -> int:
     if number is not None:
         return number
     table = _table()
-    k = table.index.get(_key(asked)) if asked else None
+    index, spelling = _index()
+    k = index.get(_key(asked)) if asked else None
     if k is not None:
         return int(table.rows[k])
     designation = designations.parse(asked)
@@ -155,7 +159,7 @@ def find(text: str) -> int:
         carried = f"{sum(map(bool, table.bayer))} Bayer letters and {sum(map(bool, table.flamsteed))} Flamsteed numbers"
         raise TargetError(f"star '{designation}': not among the {carried} carried; give its HIP or TYC number")
     expected = "expected a proper name, a designation such as 'α Tau' or '61 Cyg', or a HIP, TYC or Gaia DR3 number"
-    raise TargetError(f"star '{asked}': in no list; {expected}{near_names(asked, table.spelling.values())}")
+    raise TargetError(f"star '{asked}': in no list; {expected}{near_names(asked, spelling.values())}")
 
 
 def _by_number(text: str) -> int | None:
@@ -185,11 +189,19 @@ def search(text: str, most: int = 10) -> list[tuple[str, int]]:
         except TargetError:
             return []
         return [(" ".join(text.split()), row)]
-    table = _table()
+    if not asked:
+        return []
     whole = designations.parse(text)
-    found = [
-        (table.spelling[key], int(table.rows[k]))
-        for key, k in sorted(table.index.items(), key=lambda item: item[1])
-        if key in table.spelling and asked and (key == whole or designations.simplified(key).startswith(asked))
-    ]
+    found = [(name, row) for plain, key, name, row in _completions() if plain.startswith(asked) or key == whole]
     return found[:most]
+
+
+@cache
+def _completions() -> tuple[tuple[str, str, str, int], ...]:
+    """Return every name as it is compared, keyed and printed, and its row, the brightest star first."""
+    table = _table()
+    index, spelling = _index()
+    listed = sorted(index.items(), key=lambda item: item[1])
+    return tuple(
+        (designations.simplified(key), key, spelling[key], int(table.rows[k])) for key, k in listed if key in spelling
+    )
