@@ -1,4 +1,4 @@
-"""The self-check: are the data files whole, which versions are at work, and how far do the tables reach?
+"""The self-check: whether the data files are whole, which versions are at work, and how far the tables reach.
 
 Nothing is imported to learn its version, so the report can be had where Qt is missing or broken.
 """

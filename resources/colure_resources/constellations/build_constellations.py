@@ -36,6 +36,9 @@ Tri Trianguli; Tuc Tucanae; UMa Ursae Majoris; UMi Ursae Minoris; Vel Velorum; V
 Vul Vulpeculae
 """
 
+# Misspelt in the source ("Chamaleon", "Ophiucus", "Pisces Austrinus"); the IAU's list has these.
+CORRECTED = {"Cha": "Chamaeleon", "Oph": "Ophiuchus", "PsA": "Piscis Austrinus"}
+
 
 def read_source(folder: Path) -> tuple[np.ndarray, list[str], dict[str, str]]:
     """Return the zones (n, 3) as whole seconds, seconds and minutes, their abbreviations, and the full names."""
@@ -66,6 +69,7 @@ def read_source(folder: Path) -> tuple[np.ndarray, list[str], dict[str, str]]:
         if not line.startswith("#") and line.strip():
             code, name = line.split(maxsplit=1)
             names[code] = name.strip()
+    names.update(CORRECTED)
     return np.array(zones), codes, names
 
 
@@ -264,8 +268,8 @@ def main() -> None:
             {
                 "path": "names.tsv",
                 **common,
-                "source": "abbreviations and names: constellation_names.dat as carried by astropy; genitives: common "
-                "Latin usage, written by hand in the build script",
+                "source": "abbreviations and names: constellation_names.dat as carried by astropy, three spellings "
+                "corrected; genitives: common Latin usage, written by hand in the build script",
                 "rows": len(codes),
                 "completeness": "the 88 constellations of the IAU",
             },
