@@ -13,17 +13,6 @@ import numpy as np
 from colure import precession
 from colure.arrays import ARCSEC, DEG, Float, dot, unit
 
-# Change of the FK4 position block per Julian century from J2000, arcseconds (Explanatory Supplement 1992, eq. 3.591-4).
-_RATE = (
-    np.array(
-        [
-            [-0.000551, -0.238565, 0.435739],
-            [0.238514, -0.002667, -0.008541],
-            [-0.435623, 0.012254, 0.002117],
-        ]
-    )
-    * ARCSEC
-)
 _E_B1950 = np.array([-1.62557e-6, -0.31919e-6, -0.13843e-6])
 _E_RATE = np.array([1.245e-3, -1.580e-3, -0.659e-3]) * ARCSEC
 """E-terms at B1950, rad, and their change per tropical century (Explanatory Supplement 1992, eq. 3.591-2, -3)."""
@@ -80,7 +69,7 @@ def _length(r: Float, a: Float) -> Float:
 def _to_fk5_matrix(epoch: Float | float) -> Float:
     """Return the matrix (*shape, 3, 3) from FK4 (no E-terms) B1950 at an epoch to FK5 J2000."""
     julian = np.asarray(erfa.epj(*erfa.epb2jd(np.asarray(epoch, dtype=np.float64))))
-    return np.asarray(precession.FK4_TO_FK5 + ((julian - 2000.0) / 100.0)[..., None, None] * _RATE)
+    return np.asarray(precession.FK4_TO_FK5 + ((julian - 2000.0) / 100.0)[..., None, None] * precession.FK4_TO_FK5_RATE)
 
 
 def to_fk5(

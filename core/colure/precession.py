@@ -174,13 +174,14 @@ def fk5_matrix() -> Float:
     return _FK5.copy()
 
 
-def fk4_axes() -> Float:
-    """Return the matrix (3, 3) from ICRS axes to the mean equator and equinox B1950 of FK4, as a pure rotation.
+def fk4_matrix(jd1: Float | float, jd2: Float | float) -> Float:
+    """Return the matrix (*shape, 3, 3) from ICRS axes to the FK4 mean equator and equinox B1950, as realised at a date.
 
-    The position block of the FK4–FK5 matrix (Explanatory Supplement 1992, eq. 3.591-4) is a rotation to 1e-9; what
-    is left is removed here. FK4 positions themselves need E-terms and an epoch: see `colure.fk4`.
+    The FK4–FK5 matrix for positions and its rate (Explanatory Supplement 1992, eq. 3.591-4), which are a rotation to
+    1e-9 and a turn of 1.2″ a century; the rest is removed here. FK4 places need E-terms besides: see `colure.fk4`.
     """
-    return _FK4.copy()
+    centuries = (julian_years((jd1, jd2)) - 2000.0) / 100.0
+    return np.asarray(erfa.rv2m(centuries[..., None] * _FK4_TURN) @ _FK4)
 
 
 def newcomb_matrix(from_year: Float | float, to_year: Float | float) -> Float:
@@ -232,7 +233,7 @@ def _ecliptic_1976(jd1: Float | float, jd2: Float | float) -> Float:
 
 
 def _equator_newcomb(jd1: Float | float, jd2: Float | float) -> Float:
-    return np.asarray(newcomb_matrix(1950.0, besselian_years(jd1, jd2)) @ _FK4)
+    return np.asarray(newcomb_matrix(1950.0, besselian_years(jd1, jd2)) @ fk4_matrix(jd1, jd2))
 
 
 def _ecliptic_newcomb(jd1: Float | float, jd2: Float | float) -> Float:
@@ -246,7 +247,20 @@ FK4_TO_FK5 = np.array(
         [0.0048579479, -0.0000271474, 0.9999881997],
     ]
 )
-"""Positions of FK4 B1950 (no E-terms) to FK5 J2000: Explanatory Supplement 1992, eq. 3.591-4, as in ERFA's `fk425`."""
+"""Positions of FK4 B1950 (no E-terms) to FK5 J2000 at epoch J2000, and below its change in rad per Julian century.
+
+Explanatory Supplement 1992, eq. 3.591-4, as in ERFA's `fk425`.
+"""
+FK4_TO_FK5_RATE = (
+    np.array(
+        [
+            [-0.000551, -0.238565, 0.435739],
+            [0.238514, -0.002667, -0.008541],
+            [-0.435623, 0.012254, 0.002117],
+        ]
+    )
+    * ARCSEC
+)
 
 
 def _nearest_rotation(matrix: Float) -> Float:
@@ -254,9 +268,16 @@ def _nearest_rotation(matrix: Float) -> Float:
     return np.asarray(u @ v)
 
 
-_FK5: Float = np.asarray(erfa.fk5hip()[0]).T
+def _turn_of_fk4() -> Float:
+    """Return the rotation vector (3,), rad per century, by which ICRS-fixed axes turn into FK4's."""
+    skew = FK4_TO_FK5.T @ FK4_TO_FK5_RATE
+    return np.array([skew[2, 1] - skew[1, 2], skew[0, 2] - skew[2, 0], skew[1, 0] - skew[0, 1]]) / 2.0
+
+
 # ERFA gives the rotation from FK5 to Hipparcos; the transpose leads from ICRS axes to FK5's.
+_FK5: Float = np.asarray(erfa.fk5hip()[0]).T
 _FK4: Float = _nearest_rotation(FK4_TO_FK5).T @ _FK5
+_FK4_TURN: Float = _turn_of_fk4()
 
 _EQUATORS = {
     "iau2006": _equator_2006,

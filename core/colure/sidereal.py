@@ -7,6 +7,7 @@ import numpy as np
 
 from colure import ofdate
 from colure.arrays import DEG, TWO_PI, Float
+from colure.errors import FrameError
 from colure.moment import Moment
 
 
@@ -29,8 +30,12 @@ def era(moment: Moment) -> Float:
     return np.asarray(erfa.era00(*moment.ut1))
 
 
-def gmst(moment: Moment) -> Float:
-    """Return Greenwich mean sidereal time (*shape), rad, 0 to 2π (IAU 2006)."""
+def gmst(moment: Moment, model: str = "iau2006") -> Float:
+    """Return Greenwich mean sidereal time (*shape), rad, 0 to 2π: IAU 2006, or `iau1982` as older almanacs have it."""
+    if model == "iau1982":
+        return np.asarray(erfa.gmst82(*moment.ut1))
+    if model != "iau2006":
+        raise FrameError(f"sidereal time '{model}': expected iau2006 or iau1982")
     return np.asarray(erfa.gmst06(*moment.ut1, *moment.tt))
 
 

@@ -1,0 +1,12 @@
+"""Published values: positions between equator and ecliptic, orbital elements between ecliptics."""
+
+import pytest
+from frame_rows import compute
+from harness import Row, runnable, verify
+
+UNRUN: dict[str, str] = {}
+
+
+@pytest.mark.parametrize("row", runnable("ecliptic_coordinates", UNRUN), ids=lambda row: row.id)
+def test_published_value(row: Row) -> None:
+    verify(row, compute)
