@@ -6,7 +6,7 @@ common colour vision. On a light or dark ground a colour is shifted in lightness
 """
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 PALETTE = {
@@ -253,6 +253,11 @@ LAMP = Theme(
     ("#FF0000",) * 7,
     mono=True,
 )
+
+PRINT = replace(
+    PAPER, name="print", title="Print", roles={**PAPER.roles, "paper": "#FFFFFF", "sky": "#FFFFFF", "belt": "#F2E6C4"}
+)
+"""Paper for a printer, which has its own."""
 
 THEMES = {theme.name: theme for theme in (PAPER, SLATE, LAMP)}
 """The themes by name; the first is the default."""

@@ -106,7 +106,10 @@ def _discs(mark: marks.Discs, theme: Theme, painter: QPainter) -> None:
     brushes = [QColor(c) for c in theme.tints] if stars else [QColor(theme.colour(mark.role))] * marks.TINTS
     radii = mark.radii.tolist()
     current = -1
-    for (x, y), size, tint in zip(mark.xy.tolist(), mark.size.tolist(), mark.tint.tolist(), strict=True):
+    # Still faintest first, but of one size all of one tint together: a file repeats the colour at each change.
+    order = np.lexsort((mark.tint, mark.size))
+    rows = zip(mark.xy[order].tolist(), mark.size[order].tolist(), mark.tint[order].tolist(), strict=True)
+    for (x, y), size, tint in rows:
         if tint != current:
             painter.setBrush(brushes[tint])
             current = tint
