@@ -11,10 +11,22 @@ from importlib import metadata
 from typing import Any
 
 import colure
-from colure import calendars, orientation, resources
+from colure import calendars, ephemeris, orientation, resources
 from colure.errors import ColureError
 
-FOLDERS = ("constellations", "deepsky", "ephemeris", "fonts", "milkyway", "sites", "stars", "time")
+FOLDERS = (
+    "constellations",
+    "deepsky",
+    "ephemeris",
+    "fonts",
+    "metrics",
+    "milkyway",
+    "names",
+    "nutation",
+    "sites",
+    "stars",
+    "time",
+)
 """Every folder of data that is shipped; one that is missing whole has no PROVENANCE.toml to say so."""
 FONTS = (
     "ColureSans-Regular.ttf",
@@ -143,9 +155,23 @@ def _fonts() -> Iterator[Item]:
 
 
 def _tables() -> Iterator[Item]:
+    unreadable = (ColureError, OSError, IndexError, KeyError, TypeError, ValueError)
     try:
-        year, month, day = calendars.calendar_date(orientation.utc_end() + 2400001)
-    except (ColureError, IndexError, TypeError, ValueError) as error:
+        end = _date(orientation.utc_end() + 2400001)
+    except unreadable as error:
         yield Item("table", "IERS", "unreadable", f"time/iers.npy: unreadable ({error})")
     else:
-        yield Item("table", "IERS", f"ΔUT1 and polar motion up to {int(year)}-{int(month):02d}-{int(day):02d}")
+        yield Item("table", "IERS", f"ΔUT1 and polar motion up to {end}")
+    try:
+        source = ephemeris.default()
+        first, last = (_date(int(jd + 0.5)) for jd in source.span)
+    except unreadable as error:
+        yield Item("table", "ephemeris", "unreadable", f"ephemeris: unreadable ({error})")
+    else:
+        yield Item("table", "ephemeris", f"{source.name}, {first} to {last} TDB")
+
+
+def _date(day_number: int) -> str:
+    """Return the date of a whole Julian day number in the mixed calendar."""
+    year, month, day = calendars.calendar_date(day_number)
+    return f"{calendars.year_text(int(year))}-{int(month):02d}-{int(day):02d}"

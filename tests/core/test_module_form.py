@@ -30,7 +30,7 @@ def test_module_is_short_and_says_what_it_is(path: Path) -> None:
     docstring = ast.get_docstring(ast.parse(text))
     assert docstring, "no docstring"
     first = docstring.splitlines()[0]
-    assert first.endswith("."), f"first line does not end a sentence: {first!r}"
+    assert first.endswith((".", "?")), f"first line does not end a sentence: {first!r}"
     # One sentence: no full stop, question or exclamation mark that another sentence follows.
     assert not re.search(r"[.!?]\s+[A-Z]", first), f"more than one sentence: {first!r}"
     assert first[0].isupper() or first[0] == "`"  # a command's own name may come first

@@ -44,6 +44,11 @@ def test_the_shipped_data_is_whole() -> None:
     assert report.text().splitlines()[0].endswith("all is well")
 
 
+def test_every_shipped_folder_is_asked_for() -> None:
+    shipped = {path.parent.name for path in resources.root().rglob("PROVENANCE.toml")}
+    assert shipped == set(selfcheck.FOLDERS)
+
+
 def test_a_whole_copy_passes(copy: Path) -> None:
     assert _faults() == {}
 
@@ -108,6 +113,9 @@ def test_records_are_plain(copy: Path) -> None:
     # The table's last day, as the module that reads it gives it.
     last = np.datetime64("1858-11-17") + np.timedelta64(orientation.utc_end(), "D")
     assert by_name["IERS"].endswith(str(last))
+    # DE422 begins at JD 625648.5: 1712 Julian years after JD −0.5 (−4712-01-01) is JD 625307.5, −3000-01-01, and 341
+    # days on is day 342 of a leap year, 7 December.
+    assert "-3000-12-07 to 3000-01-30" in by_name["ephemeris"]
 
 
 def test_versions_that_break_are_faults(copy: Path, monkeypatch: pytest.MonkeyPatch) -> None:
