@@ -6,10 +6,8 @@ from typing import Any
 import click
 
 from colure_viewer.cli.main import Command
-from colure_viewer.cli.output import Answer, moment_keys, output_options, table_bytes
+from colure_viewer.cli.output import Answer, moment_keys, output_options
 
-LONGITUDES = ("lon_deg", "lon", "ra_deg", "ra", "raj2000", "_raj2000", "alpha", "lambda", "l", "elon", "glon")
-LATITUDES = ("lat_deg", "lat", "dec_deg", "dec", "dej2000", "_dej2000", "delta", "beta", "b", "elat", "glat")
 ENDINGS = {".csv": "csv", ".ecsv": "ecsv", ".vot": "votable", ".xml": "votable", ".fits": "fits", ".fit": "fits"}
 
 
@@ -109,14 +107,13 @@ class _Job:
         import numpy as np
 
         from colure.angles import parse_position
-        from colure.arrays import DEG
 
         lon, lat = parse_position(position, equatorial=self.source.is_equatorial)
-        new_lon, new_lat = self.carry(np.asarray(lon / DEG), np.asarray(lat / DEG))
+        new_lon, new_lat = self.carry(np.asarray(lon), np.asarray(lat))
         return {
             **self.echo(),
-            "from_lon_deg": lon / DEG,
-            "from_lat_deg": lat / DEG,
+            "from_lon_deg": lon,
+            "from_lat_deg": lat,
             "lon_deg": float(new_lon),
             "lat_deg": float(new_lat),
         }
@@ -136,24 +133,22 @@ class _Job:
         self, path: Path, lon_name: str | None, lat_name: str | None, skip_bad: bool, form: str, output: Path | None
     ) -> None:
         from colure.files import atomic_write
-        from colure.tables import read_positions
+        from colure.tables import dumps, read_positions
 
         read = read_positions(
             path,
             lon=lon_name,
             lat=lat_name,
-            longitudes=LONGITUDES,
-            latitudes=LATITUDES,
             equatorial=self.source.is_equatorial,
             skip_bad=skip_bad,
         )
-        for line in read.rejected:
+        for line in (*read.notes, *read.rejected):
             click.echo(f"colure: {path}: {line}", err=True)
         lon, lat = self.carry(read.lon_deg, read.lat_deg)
         table = read.table.with_columns(
             {"lon_deg": (lon, "deg"), "lat_deg": (lat, "deg")}, meta={key: str(v) for key, v in self.echo().items()}
         )
-        body = table_bytes(table, form)
+        body = dumps(table, form)
         if output is None:
             click.get_binary_stream("stdout").write(body)
         else:
