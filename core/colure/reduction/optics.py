@@ -63,13 +63,13 @@ def aberrated(direction: Float, velocity: Float, sun_distance: Float) -> Float:
     return np.asarray(((inverse_gamma - potential * along) * scale) * direction + ((w1 + potential) * scale) * v)
 
 
-def refracted(direction: Float, zenith: Float, air: refraction.Atmosphere) -> Float:
+def refracted(direction: Float, zenith: Float, air: refraction.Atmosphere, *, exact: bool = True) -> Float:
     """Return unit directions (3, ...) lifted towards `zenith` (3, ...) by the standard refraction."""
     sine = np.clip(dot3(direction, zenith), -1.0, 1.0)
     flat = direction - sine * zenith
     cosine = np.sqrt(dot3(flat, flat))
     true = np.arctan2(sine, cosine)
-    apparent = refraction.apparent_altitude(true, air)
+    apparent = refraction.apparent_altitude(true, air, exact=exact)
     stretch = np.cos(apparent) / np.where(cosine > 0.0, cosine, 1.0)
     return np.asarray(flat * stretch + np.sin(apparent) * zenith)
 

@@ -5,6 +5,7 @@ number type of the stars is kept: float64 to the milliarcsecond and below, float
 """
 
 from dataclasses import dataclass
+from threading import local
 
 import numpy as np
 from numpy.typing import NDArray
@@ -113,6 +114,45 @@ def _lines(array: Stars, dtype: np.dtype[np.floating]) -> Stars:
     return np.asarray(array, dtype=dtype).T
 
 
+class _Workspace(local):
+    """Memory for one block, kept for each thread: fresh pages at every call would cost as much as the arithmetic."""
+
+    def __init__(self) -> None:
+        self.flat: dict[np.dtype[np.floating], Stars] = {}
+
+    def rows(self, dtype: np.dtype[np.floating], count: int) -> Stars:
+        """Return (13, count) of contiguous memory with what happens to be in it."""
+        if dtype not in self.flat:
+            self.flat[dtype] = np.empty(13 * BLOCK, dtype=dtype)
+        return self.flat[dtype][: 13 * count].reshape(13, count)
+
+
+_workspace = _Workspace()
+
+
+class _Constants:
+    """A context's numbers in the number type of the stars, with the rotation folded in."""
+
+    def __init__(self, context: StarContext, dtype: np.dtype[np.floating]) -> None:
+        kind = dtype.type
+        matrix = np.eye(3) if context.rotation is None else np.asarray(context.rotation)
+        e, v = context.towards_observer, context.velocity
+        inverse_gamma = float(np.sqrt(1.0 - v @ v))
+        self.moves = context.place != "geometric"
+        self.bends = context.place in ("apparent", "observed")
+        self.turns = context.rotation is not None
+        self.matrix = matrix.astype(dtype)
+        # One product gives p·e, p·v and the turned vector together.
+        self.rows = np.vstack([e, v, matrix]).astype(dtype)
+        self.e, self.v = (matrix @ e).astype(dtype), (matrix @ v).astype(dtype)
+        self.observer = context.observer_au.astype(dtype)[:, None]
+        self.roemer = (context.observer_au * context.roemer_years_per_au).astype(dtype)
+        self.years, self.weight, self.limit = kind(context.years), kind(context.weight), kind(context.limit)
+        self.ev, self.half = kind(e @ v), kind(1.0 / (1.0 + inverse_gamma))
+        self.potential, self.inverse_gamma = kind(context.potential), kind(inverse_gamma)
+        self.push = kind(1.0 + context.potential)
+
+
 def apply_context(context: StarContext, position: Stars, velocity: Stars | None, parallax: Stars | None) -> Stars:
     """Return unit directions (n, 3) of stars; see `reduce_stars` for the arguments.
 
@@ -123,57 +163,95 @@ def apply_context(context: StarContext, position: Stars, velocity: Stars | None,
     out = np.empty((3, count), dtype=dtype)
     p_all = _lines(position, dtype)
     v_all = None if velocity is None else _lines(velocity, dtype)
-    matrix = np.eye(3) if context.rotation is None else np.asarray(context.rotation)
-    turns = context.rotation is not None
-    bends = context.place in ("apparent", "observed")
-    e, v = context.towards_observer, context.velocity
-    inverse_gamma = float(np.sqrt(1.0 - v @ v))
-    ev = float(e @ v)
-    # One product gives p·e, p·v and the turned vector together.
-    rows = np.vstack([e, v, matrix]).astype(dtype)
-    turned_e, turned_v = (matrix @ e).astype(dtype), (matrix @ v).astype(dtype)
-    finish = None if context.zenith is None or context.air is None else (matrix @ context.zenith, context.air)
-    kind = dtype.type
-    half = kind(1.0 / (1.0 + inverse_gamma))
-    years, weight, limit = kind(context.years), kind(context.weight), kind(context.limit)
-    potential, gamma = kind(context.potential), kind(inverse_gamma)
-    observer = context.observer_au.astype(dtype)
-    roemer = (context.observer_au * context.roemer_years_per_au).astype(dtype)
+    plx_all = None if parallax is None else np.asarray(parallax, dtype=dtype)
+    use = _Constants(context, dtype)
     for start in range(0, count, BLOCK):
         cut = slice(start, min(start + BLOCK, count))
-        p = p_all[:, cut]
-        if v_all is not None:
-            # Light from the near side of the Earth's orbit left the star a little later (Rømer).
-            p = p + v_all[:, cut] * (years if context.place == "geometric" else years + roemer @ p)
-        if parallax is not None and context.place != "geometric":
-            p = p - observer[:, None] * np.asarray(parallax[cut], dtype=dtype)
-        length = np.reciprocal(np.sqrt(p[0] * p[0] + p[1] * p[1] + p[2] * p[2]))
-        if not bends:
-            np.multiply(rows[2:] @ p if turns else p, length, out=out[:, cut])
-            continue
-        products = rows @ p
-        pe = products[0] * length
-        pv = products[1] * length
-        w = weight / np.maximum(pe + kind(1.0), limit)
-        shrink = kind(1.0) - w * pe
-        along = pv * shrink + w * kind(ev)
-        scale = np.reciprocal(along + kind(1.0))
-        keep = (gamma - potential * along) * scale
-        push = (along * half + (kind(1.0) + potential)) * scale
-        bend = w * keep
-        keep *= shrink
-        keep *= length
-        for k in range(3):
-            line = out[k, cut]
-            np.multiply(products[2 + k], keep, out=line)
-            line += push * turned_v[k]
-            line += bend * turned_e[k]
-    if finish is not None:
-        zenith, air = finish
-        for start in range(0, count, BLOCK):
-            cut = slice(start, min(start + BLOCK, count))
-            out[:, cut] = refracted(out[:, cut].astype(np.float64), zenith[:, None], air)
+        work = _workspace.rows(dtype, cut.stop - start)
+        p = _moved(
+            use,
+            p_all[:, cut],
+            None if v_all is None else v_all[:, cut],
+            None if plx_all is None else plx_all[cut],
+            work,
+        )
+        if use.bends:
+            _bent(use, p, work, out[:, cut])
+        else:
+            turned = np.matmul(use.matrix, p, out=work[5:8]) if use.turns else p
+            np.multiply(turned, _inverse_length(p, work), out=out[:, cut])
+        if context.zenith is not None and context.air is not None:
+            zenith = (use.matrix @ context.zenith)[:, None]
+            exact = dtype == np.float64
+            out[:, cut] = refracted(out[:, cut].astype(np.float64), zenith, context.air, exact=exact)
     return out.T
+
+
+def _moved(use: _Constants, p: Stars, v: Stars | None, parallax: Stars | None, work: Stars) -> Stars:
+    """Return vectors (3, m) after space motion, from the observer, in units of the star's distance."""
+    if v is not None:
+        moved, when = work[0:3], work[3]
+        if use.moves:
+            # Light from the near side of the Earth's orbit left the star a little later (Rømer).
+            np.matmul(use.roemer, p, out=when)
+            when += use.years
+            np.multiply(v, when, out=moved)
+        else:
+            np.multiply(v, use.years, out=moved)
+        moved += p
+        p = moved
+    if parallax is not None and use.moves:
+        shift = np.multiply(use.observer, parallax, out=work[5:8])
+        p = np.subtract(p, shift, out=work[0:3])
+    return p
+
+
+def _inverse_length(p: Stars, work: Stars) -> Stars:
+    """Return 1 / |p| (m,)."""
+    length, square = work[3], work[4]
+    np.multiply(p[0], p[0], out=length)
+    length += np.multiply(p[1], p[1], out=square)
+    length += np.multiply(p[2], p[2], out=square)
+    np.sqrt(length, out=length)
+    np.reciprocal(length, out=length)
+    return length
+
+
+def _bent(use: _Constants, p: Stars, work: Stars, out: Stars) -> None:
+    """Write directions (3, m) after deflection and aberration, turned by the context's rotation.
+
+    Both only add multiples of the star's direction, of e (Sun to observer) and of v (the observer's motion), so the
+    three factors are found first and the vectors put together once. Formulas as in `optics`, for sources at infinity.
+    """
+    one = out.dtype.type(1.0)
+    length = _inverse_length(p, work)
+    products = np.matmul(use.rows, p, out=work[5:10])
+    pe, along, spare, bend, scale = products[0], products[1], work[4], work[10], work[11]
+    keep = work[12]
+    pe *= length
+    along *= length
+    np.add(pe, one, out=bend)
+    np.maximum(bend, use.limit, out=bend)
+    np.divide(use.weight, bend, out=bend)
+    shrink = np.multiply(bend, pe, out=pe)
+    np.subtract(one, shrink, out=shrink)
+    along *= shrink
+    along += np.multiply(bend, use.ev, out=spare)
+    np.add(along, one, out=scale)
+    np.reciprocal(scale, out=scale)
+    np.multiply(along, -use.potential, out=keep)
+    keep += use.inverse_gamma
+    keep *= scale
+    push = np.multiply(along, use.half, out=along)
+    push += use.push
+    push *= scale
+    bend *= keep
+    keep *= shrink
+    keep *= length
+    for axis in range(3):
+        line = np.multiply(products[2 + axis], keep, out=out[axis])
+        line += np.multiply(push, use.v[axis], out=spare)
+        line += np.multiply(bend, use.e[axis], out=spare)
 
 
 def reduce_stars(
