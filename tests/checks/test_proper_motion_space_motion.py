@@ -28,7 +28,6 @@ def compute(row: Row) -> object:
             when,
             place="astrometric",
             epoch_jd=row.number("epoch_jd"),
-            ephemeris=sky_rows.kernel(),
         )
         value = float(spherical(np.asarray(seen))[second][0]) / DEG
         return value / 15.0 if what.endswith("_h") else value

@@ -6,7 +6,7 @@ import numpy as np
 
 from colure import sidereal
 from colure.arrays import DEG, Float
-from colure.ephemeris import Ephemeris
+from colure.ephemeris import Ephemeris, default
 from colure.errors import SiteError
 from colure.horizon import geocentric_site
 from colure.moment import Moment
@@ -81,10 +81,10 @@ def _site_vectors(site: Site, matrix: Float) -> tuple[Float, Float, Float]:
     return vectors[..., 0, :], vectors[..., 1, :], vectors[..., 2, :]
 
 
-def observer_state(observer: Observer, moment: Moment, ephemeris: Ephemeris) -> ObserverState:
+def observer_state(observer: Observer, moment: Moment, ephemeris: Ephemeris | None = None) -> ObserverState:
     """Return the observer's barycentric state and the Sun's, ICRS axes, au and au/day, each (*shape, 3)."""
     names = ("sun",) if observer.origin in ("sun", "ssb") else ("sun", "earth" if observer.origin != "emb" else "emb")
-    pos, vel = ephemeris.posvel(names, *moment.tdb)
+    pos, vel = (ephemeris if ephemeris is not None else default()).posvel(names, *moment.tdb)
     centre = "ssb" if observer.origin == "ssb" else names[-1]
     states = {name: (pos[k], vel[k]) for k, name in enumerate(names)}
     if centre == "ssb":

@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from colure import refraction
 from colure.arrays import Float, unit
-from colure.ephemeris import Ephemeris, default
+from colure.ephemeris import Ephemeris
 from colure.moment import Moment
 from colure.reduction.bodypath import GEOCENTRE, check_place
 from colure.reduction.observer import C_AU_DAY, Observer, observer_state
@@ -88,7 +88,7 @@ def star_context(
     place a star has only its space motion.
     """
     check_place(place, observer)
-    state = observer_state(observer, moment, ephemeris if ephemeris is not None else default())
+    state = observer_state(observer, moment, ephemeris)
     jd1, jd2 = moment.tdb
     from_sun = state.pos - state.sun_pos
     distance = float(np.sqrt(from_sun @ from_sun))
@@ -214,7 +214,7 @@ def _inverse_length(p: Stars, work: Stars) -> Stars:
     length += np.multiply(p[2], p[2], out=square)
     np.sqrt(length, out=length)
     np.reciprocal(length, out=length)
-    return length
+    return np.asarray(length)
 
 
 def _bent(use: _Constants, p: Stars, work: Stars, out: Stars) -> None:
