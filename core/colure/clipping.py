@@ -6,6 +6,7 @@ is then dropped on the page. Filled areas are cut in `clipping_areas`.
 """
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,7 +20,7 @@ _PARTS = 48
 """Pieces that an arc is divided into where it swings over the page."""
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class Window:
     """What of the sky is to be laid on the page: a projector, the map rectangle, and the cap that just covers it.
 
@@ -45,7 +46,7 @@ class Window:
         reach = np.arccos(np.clip(camera[2], -1.0, 1.0))
         return cls(projector, rect, edge if np.isnan(reach).any() else float(min(edge, reach.max())))
 
-    @property
+    @cached_property
     def radius(self) -> float:
         """Angle from the centre of the page that covers the map, in radians; π where it may be anywhere."""
         if not self.projector.projection.unrolled:
@@ -58,7 +59,7 @@ class Window:
             return float(np.pi)
         return float(np.arccos(np.clip(sky @ self.centre, -1.0, 1.0)).max()) * 1.05
 
-    @property
+    @cached_property
     def centre(self) -> Float:
         """The direction at the middle of the page, (3,) on ICRS axes; the projection's own centre if that is no sky."""
         middle = np.array([0.5 * (self.rect[0] + self.rect[2]), 0.5 * (self.rect[1] + self.rect[3])])
@@ -81,26 +82,36 @@ class Trace:
     cut_xy: F32
     cut_of: NDArray[np.intp]
 
-    def between(self, first: int, last: int) -> tuple[F32, I32]:
-        """Return page polylines (points (M, 2), starts) of the points first … last − 1, which are whole polylines."""
-        whole = self.whole[first : last - 1]
-        n = last - first
-        before = np.zeros(n, dtype=bool)
-        before[1:] = whole
+    def polylines(self, bounds: I32) -> list[tuple[F32, I32]]:
+        """Return page polylines (points (M, 2), starts), in groups: group k is of the points bounds[k] … bounds[k + 1].
+
+        No segment joins two groups.
+        """
+        before = np.zeros(len(self.x), dtype=bool)
+        before[1:] = self.whole
         keep = before.copy()
-        keep[:-1] |= whole
+        keep[:-1] |= self.whole
         kept = np.flatnonzero(keep)
         points = np.empty((len(kept), 2), dtype=np.float32)
-        points[:, 0] = self.x[first:last][kept]
-        points[:, 1] = self.y[first:last][kept]
+        points[:, 0] = self.x[kept]
+        points[:, 1] = self.y[kept]
         firsts = np.flatnonzero(~before[kept])
-        if len(self.cut_of):
-            mine = (self.cut_of >= first) & (self.cut_of < last)
+        if len(bounds) == 2 and not len(self.cut_of):
+            return [(points, np.append(firsts, len(points)).astype(np.int32))]
+        point_at = np.searchsorted(kept, bounds)
+        first_at = np.searchsorted(firsts, point_at)
+        group = np.searchsorted(bounds, self.cut_of, side="right") - 1
+        out = []
+        for k in range(len(bounds) - 1):
+            own = points[point_at[k] : point_at[k + 1]]
+            begins = firsts[first_at[k] : first_at[k + 1]] - point_at[k]
+            mine = group == k
             if mine.any():
                 extra = self.cut_xy[np.repeat(mine, 2)]
-                firsts = np.concatenate([firsts, len(points) + np.arange(0, len(extra), 2)])
-                points = np.concatenate([points, extra])
-        return points, np.append(firsts, len(points)).astype(np.int32)
+                begins = np.concatenate([begins, len(own) + np.arange(0, len(extra), 2)])
+                own = np.concatenate([own, extra])
+            out.append((own, np.append(begins, len(own)).astype(np.int32)))
+        return out
 
 
 def trace(window: Window, camera: Real, starts: I32) -> Trace:
@@ -125,7 +136,7 @@ def lines(window: Window, camera: Real, starts: I32) -> tuple[F32, I32]:
     """Return page polylines (points (M, 2), starts) of polylines on the sphere; see `trace`."""
     if camera.shape[1] < 2:
         return np.empty((0, 2), np.float32), np.zeros(1, np.int32)
-    return trace(window, camera, starts).between(0, camera.shape[1])
+    return trace(window, camera, starts).polylines(np.array([0, camera.shape[1]], np.int32))[0]
 
 
 def _seen(rect: Rect, x1: Real, y1: Real, x2: Real, y2: Real) -> Bool:

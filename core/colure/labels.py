@@ -22,22 +22,41 @@ GAP = 3.0
 """Pixels between a mark and its text."""
 
 
+HIDDEN, UNKNOWN = -1, -2
+"""What a memory says of a text that found no room, and of one that it has never met."""
+
+PATIENCE = 4
+"""A text that found no room looks again in one frame of so many."""
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Placement:
-    """Which position each text had: `ids` (N,) sorted, `choice` (N,) the number of the position."""
+    """Which position each text had: `ids` (N,) sorted, `choice` (N,) the number of the position, or HIDDEN.
+
+    `turn` counts frames, so that texts without room take turns in looking for it.
+    """
 
     ids: I64
     choice: I8
+    turn: int = 0
 
     def recall(self, ids: I64) -> I8:
-        """Return the position of each text (N,), −1 for those that had none."""
+        """Return the position of each text (N,), HIDDEN for those that had none, UNKNOWN for new ones."""
         if not len(self.ids):
-            return np.full(len(ids), -1, np.int8)
+            return np.full(len(ids), UNKNOWN, np.int8)
         at = np.minimum(np.searchsorted(self.ids, ids), len(self.ids) - 1)
-        return np.where(self.ids[at] == ids, self.choice[at], np.int8(-1))
+        return np.where(self.ids[at] == ids, self.choice[at], np.int8(UNKNOWN))
 
 
 NOWHERE = Placement(np.empty(0, np.int64), np.empty(0, np.int8))
+
+
+def merged(parts: list[Placement]) -> Placement:
+    """Return one memory of texts that were placed in turn."""
+    ids = np.concatenate([part.ids for part in parts])
+    choice = np.concatenate([part.choice for part in parts])
+    order = np.argsort(ids)
+    return Placement(ids[order], choice[order], max(part.turn for part in parts))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -133,53 +152,68 @@ def place(
     n, k = request.centres.shape[:2]
     choice = np.full(n, -1, np.int8)
     if not n:
-        return choice, NOWHERE
+        return choice, Placement(NOWHERE.ids, NOWHERE.choice, previous.turn + 1)
     left, top, right, bottom = frame
     half = request.half
     fixed = np.empty((0, 4), np.float32) if boxes is None else boxes
     low = np.array([left, top], np.float32) + half
     high = np.array([right, bottom], np.float32) - half
-    # NaN compares false, so that a position that does not exist is not on the page either.
-    allowed = np.asarray(((request.centres >= low[:, None]) & (request.centres <= high[:, None])).all(axis=2))
+    recalled = previous.recall(request.ids)
 
     # Incumbents keep their positions unless one of higher rank, a mark or the edge of the map is in the way.
-    recalled = previous.recall(request.ids)
     old = np.flatnonzero((recalled >= 0) & (recalled < k))
-    old = old[allowed[old, recalled[old]]]
     at, size = request.centres[old, recalled[old]], half[old]
-    stands = ~_hits_discs(at, size, discs, 0.0)
+    # NaN compares false, so that a position that does not exist is not on the page either.
+    stands = ((at >= low[old]) & (at <= high[old])).all(axis=1)
+    stands &= ~_hits_discs(at, size, discs, 0.0)
     if len(fixed):
         stands &= ~_overlap(at, size, fixed[:, :2], fixed[:, 2:], 0.0).any(axis=1)
     old, at, size = old[stands], at[stands], size[stands]
     clash = _overlap(at, size, at, size, 0.0)
-    # Row i against the higher ranks, columns below i.
-    stays = ~np.tril(clash, -1).any(axis=1)
-    choice[old[stays]] = recalled[old[stays]]
+    # Each box overlaps itself; one that overlaps another of higher rank, in a column before its own, gives way.
+    if len(old):
+        stays = old[np.argmax(clash, axis=1) >= np.arange(len(old))]
+        choice[stays] = recalled[stays]
 
-    # Newcomers and the displaced: all positions against all that is fixed by now, in one go.
-    new = np.flatnonzero(choice < 0)
+    # Newcomers, the displaced, and of the hidden those whose turn it is: all positions against all that is fixed by
+    # now, in one go.
+    waits = (recalled == HIDDEN) & ((request.ids + previous.turn) % PATIENCE != 0)
+    new = np.flatnonzero((choice < 0) & ~waits)
     if len(new):
-        order = np.tile(np.arange(k), (len(new), 1)) if request.preference is None else request.preference[new]
-        again = recalled[new]
-        # What lost its place looks there first.
-        for i in np.flatnonzero((again >= 0) & (again < k)).tolist():
-            order[i] = [again[i], *(j for j in order[i].tolist() if j != again[i])]
-        flat_text, flat_position = np.repeat(np.arange(len(new)), k), order.reshape(-1)
-        usable = allowed[new[flat_text], flat_position]
-        flat_text, flat_position = flat_text[usable], flat_position[usable]
-        at = request.centres[new[flat_text], flat_position]
-        size = half[new[flat_text]]
-        taken = _hits_discs(at, size, discs, MARGIN)
-        kept = np.flatnonzero(choice >= 0)
-        taken |= _overlap(at, size, request.centres[kept, choice[kept]], half[kept], MARGIN).any(axis=1)
-        if len(fixed):
-            taken |= _overlap(at, size, fixed[:, :2], fixed[:, 2:], MARGIN).any(axis=1)
-        free = np.flatnonzero(~taken)
-        if len(free):
-            _settle(new, flat_text[free], flat_position[free], at[free], size[free], choice)
-    shown = np.flatnonzero(choice >= 0)
-    order_of_ids = np.argsort(request.ids[shown])
-    return choice, Placement(request.ids[shown][order_of_ids], choice[shown][order_of_ids])
+        _seek(request, new, recalled[new], choice, discs, fixed, low, high)
+    order_of_ids = np.argsort(request.ids)
+    return choice, Placement(request.ids[order_of_ids], choice[order_of_ids], previous.turn + 1)
+
+
+def _seek(
+    request: Request,
+    new: NDArray[np.intp],
+    recalled: I8,
+    choice: I8,
+    discs: F32,
+    fixed: F32,
+    low: F32,
+    high: F32,
+) -> None:
+    """Find room for the texts `new`, in order of rank, and write it into `choice`."""
+    k = request.centres.shape[1]
+    order = np.tile(np.arange(k), (len(new), 1)) if request.preference is None else request.preference[new]
+    # What lost its place looks there first.
+    for i in np.flatnonzero((recalled >= 0) & (recalled < k)).tolist():
+        order[i] = [recalled[i], *(j for j in order[i].tolist() if j != recalled[i])]
+    text, position = np.repeat(np.arange(len(new)), k), order.reshape(-1)
+    row = new[text]
+    at = request.centres[row, position]
+    usable = np.flatnonzero(((at >= low[row]) & (at <= high[row])).all(axis=1))
+    text, position, at, size = text[usable], position[usable], at[usable], request.half[row[usable]]
+    taken = _hits_discs(at, size, discs, MARGIN)
+    kept = np.flatnonzero(choice >= 0)
+    taken |= _overlap(at, size, request.centres[kept, choice[kept]], request.half[kept], MARGIN).any(axis=1)
+    if len(fixed):
+        taken |= _overlap(at, size, fixed[:, :2], fixed[:, 2:], MARGIN).any(axis=1)
+    free = np.flatnonzero(~taken)
+    if len(free):
+        _settle(new, text[free], position[free], at[free], size[free], choice)
 
 
 def _settle(

@@ -72,6 +72,12 @@ class FrameAxes:
     site: Site | None
     matrix: Float | None
 
+    @property
+    def left_handed(self) -> bool:
+        """Whether longitudes run the other way round the pole, as azimuths do."""
+        m = self.matrix
+        return m is not None and bool(np.cross(m[:, 0], m[:, 1]) @ m[:, 2] < 0.0)
+
     def columns(self, lon: Float, lat: Float | float) -> Float:
         """Return directions (3, N) on ICRS axes for longitudes and latitudes (N,) in radians."""
         v = cartesian(lon, lat)
@@ -158,7 +164,8 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         kinds = sky_layers.names_wanted(session.view.width_deg)
         if session.layers.star_names:
             layer("star names", (limit, cell, kinds), lambda: sky_layers.star_names(base, kinds))
-    # MILKY WAY
+    if session.layers.milky_way:
+        layer("milky way", (), sky_layers.milky_way)
     if session.layers.deep_sky:
         layer("deep sky", (), sky_layers.deep_sky)
     step = sky_layers.edge_step(session.view.width_deg)

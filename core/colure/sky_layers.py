@@ -6,9 +6,10 @@ from functools import cache, lru_cache
 import numpy as np
 from numpy.typing import NDArray
 
-from colure import appearance, belt, constellations, deepsky, frames, names, phases
+from colure import appearance, belt, constellations, deepsky, frames, milkyway, names, phases
 from colure.arrays import ARCSEC, DEG, TWO_PI, Float, unit
 from colure.errors import SpanError
+from colure.fontmetrics import face_of, width_em
 from colure.frames import Frame
 from colure.moment import Moment
 from colure.reduction import Observer, apply_context, reduce_bodies, star_context
@@ -28,6 +29,12 @@ FAINTEST = 13.0
 
 _TINT_LIMITS = np.array([-0.12, 0.12, 0.42, 0.80, 1.10, 1.45], np.float32)
 """B−V between the seven tint classes, roughly between the spectral types O-B, A, F, G, K, K-M, M."""
+
+
+def widths_em(texts: tuple[str, ...], role: str, *, italic: bool = False) -> NDArray[np.float32]:
+    """Return the advance widths (N,) of texts in em, set as a role is."""
+    face = face_of(role, italic=italic)
+    return np.array([width_em(text, face) for text in texts], np.float32)
 
 
 @lru_cache(maxsize=512)
@@ -53,6 +60,10 @@ class StarRows:
     tint: NDArray[np.uint8]
     state: NDArray[np.floating]
     parallax: Float | None
+
+    def first_brighter(self, limit: float) -> int:
+        """Return the place of the first star of the list that is not fainter than a limit."""
+        return len(self.vmag) - int(np.searchsorted(self.vmag[::-1], np.float32(limit), side="right"))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -144,6 +155,7 @@ class StarNames:
     at: NDArray[np.intp]
     vmag: NDArray[np.float32]
     texts: tuple[str, ...]
+    width_em: NDArray[np.float32]
 
 
 def names_wanted(width_deg: float) -> tuple[names.Kind, ...]:
@@ -164,7 +176,8 @@ def star_names(base: StarRows, kinds: tuple[names.Kind, ...]) -> StarNames:
             found.setdefault(row, text)
     ids = np.array(list(found), np.int64)
     if not len(listed) or not len(ids):
-        return StarNames(np.empty(0, np.int64), np.empty(0, np.intp), np.empty(0, np.float32), ())
+        none = np.empty(0, np.float32)
+        return StarNames(np.empty(0, np.int64), np.empty(0, np.intp), none, (), none)
     place = np.minimum(np.searchsorted(listed, ids), len(listed) - 1)
     mine = np.flatnonzero(listed[place] == ids)
     at = order[place[mine]]
@@ -172,7 +185,7 @@ def star_names(base: StarRows, kinds: tuple[names.Kind, ...]) -> StarNames:
     bright = np.argsort(-at)
     every = list(found.values())
     texts_of = tuple(every[i] for i in mine[bright].tolist())
-    return StarNames(ids[mine[bright]], at[bright], base.vmag[at[bright]], texts_of)
+    return StarNames(ids[mine[bright]], at[bright], base.vmag[at[bright]], texts_of, widths_em(texts_of, "label.star"))
 
 
 # Bodies
@@ -262,11 +275,12 @@ def edges(step_deg: float) -> LinesSky:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class NamesSky:
-    """Texts at directions: columns (3, N), one text each, and a rank (smaller is more important)."""
+    """Texts at directions: columns (3, N), one text each, a rank (smaller first), and the texts' widths in em."""
 
     columns: Float
     texts: tuple[str, ...]
     rank: Float
+    width_em: NDArray[np.float32]
 
 
 @cache
@@ -276,7 +290,31 @@ def constellation_names() -> NamesSky:
     names = {entry.code: entry.name for entry in constellations.constellations()}
     order = np.argsort(-found.radius)
     texts = tuple(names[str(code)] for code in found.codes[order])
-    return NamesSky(np.ascontiguousarray(found.points[order].T), texts, -found.radius[order])
+    return NamesSky(
+        np.ascontiguousarray(found.points[order].T),
+        texts,
+        -found.radius[order],
+        widths_em(texts, "label.constellation", italic=True),
+    )
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Outline:
+    """One level of the Milky Way: rings, columns (3, N) with starts, and a direction (3,) that lies in none."""
+
+    level: int
+    columns: NDArray[np.float32]
+    starts: NDArray[np.int32]
+    outside: Float
+
+
+@cache
+def milky_way() -> tuple[Outline, ...]:
+    """Return the levels of the Milky Way, the faintest and widest first."""
+    return tuple(
+        Outline(o.level, np.ascontiguousarray(o.points.T.astype(np.float32)), o.starts, o.outside)
+        for o in milkyway.outlines()
+    )
 
 
 SYMBOLS = ("galaxy", "open_cluster", "globular", "nebula", "planetary", "dark")
@@ -332,4 +370,4 @@ def points(ecliptic: str, moment: Moment) -> NamesSky:
         onto = frames.rotation("ecliptic/mean/date", moment).matrix
     marks = belt.cardinal_points(onto, frames.rotation("equator/mean/date", moment).matrix)
     rank = np.arange(len(marks.labels), dtype=np.float64)
-    return NamesSky(np.ascontiguousarray(marks.points.T), marks.labels, rank)
+    return NamesSky(np.ascontiguousarray(marks.points.T), marks.labels, rank, widths_em(marks.labels, "label.point"))

@@ -42,7 +42,7 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
     kept: dict[str, tuple[Layer, Any]] = previous.memo if previous is not None and previous.memo is not None else {}
     ctx = context(sky, size, kept)
     has = sky.layers
-    ctx.layer("sky", ctx.view_key, lambda: (zones.sky_disc(ctx), None))
+    ctx.layer("sky", ctx.page_key, lambda: (zones.sky_disc(ctx), None))
     if "milky way" in has:
         ctx.layer("milky way", (sky.key("milky way"), ctx.view_key), lambda: (zones.milky_way(ctx), None))
     if "belt" in has:

@@ -6,7 +6,7 @@ from functools import lru_cache
 import numpy as np
 
 from colure.arrays import ARCSEC, DEG, TWO_PI, Bool, Float, Int, cartesian
-from colure.clipping import Trace, trace
+from colure.clipping import Trace, lines, trace
 from colure.graduation import Steps, grid_step, multiples, steps, visible_longitudes
 from colure.marks import CIRCLE, DIVISION, F32, GRID, Layer, Lines, Mark, Segments
 from colure.scene.context import Context, in_page
@@ -15,6 +15,7 @@ from colure.sky import FrameAxes
 
 TICKS = (3.0, 5.5, 8.5)
 """Lengths in pixels of the smallest tick, the middle tick and the tick with a figure."""
+_TICKS = np.array(TICKS, np.float32)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -87,26 +88,28 @@ def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
     tangent, valid = _tangents(drawn)
     valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
     xy = np.stack([drawn.x, drawn.y], axis=1).astype(np.float32)
+    arcsec = np.concatenate([part[3] for part in parts])
     # North is to the left of growing longitude seen from outside the sphere; a sky chart is seen from inside, and the
     # horizon counts its azimuths the other way round.
     side = 1.0 if ctx.view.east_left else -1.0
+    hands = [-side if part[2].left_handed else side for part in parts]
+    hand = np.repeat(np.array(hands, np.float32), np.diff(starts))
+    north = np.empty_like(tangent)
+    north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
+    major, middle = arcsec % chosen.major == 0, arcsec % chosen.middle == 0
+    ticks = np.empty((len(xy), 4), np.float32)
+    ticks[:, :2] = xy
+    ticks[:, 2:] = xy + north * _TICKS[major.astype(np.intp) + middle][:, None]
     marks: list[Mark] = []
     curves: list[Curve] = []
-    for k, (number, circle, axes, arcsec, _) in enumerate(parts):
-        a, b = int(starts[k]), int(starts[k + 1])
-        points, ends = drawn.between(a, b)
+    for k, ((points, ends), (number, circle, *_)) in enumerate(zip(drawn.polylines(starts), parts, strict=True)):
         if len(ends) < 2:
             continue
+        own = slice(int(starts[k]), int(starts[k + 1]))
         marks.append(Lines("circle", points, ends, CIRCLE, circle.colour))
-        left_handed = axes.matrix is not None and np.linalg.det(axes.matrix) < 0.0
-        hand = np.float32(-side if left_handed else side)
-        t = tangent[a:b]
-        north = np.empty_like(t)
-        north[:, 0], north[:, 1] = -t[:, 1] * hand, t[:, 0] * hand
-        curve = Curve(number, circle, chosen, arcsec, xy[a:b], t, north, valid[a:b])
-        curves.append(curve)
+        curves.append(Curve(number, circle, chosen, arcsec[own], xy[own], tangent[own], north[own], valid[own]))
         if circle.graduated:
-            marks.append(_ticks(curve))
+            marks.append(Segments("circle", ticks[own][valid[own]], GRID, circle.colour))
     return Layer("circles", tuple(marks), key(ctx)), tuple(curves)
 
 
@@ -129,15 +132,6 @@ def _tangents(drawn: Trace) -> tuple[F32, Bool]:
     valid = length > 0.0
     length = np.where(valid, length, 1.0)
     return np.stack([dx / length, dy / length], axis=1).astype(np.float32), valid
-
-
-def _ticks(curve: Curve) -> Segments:
-    """Return the ticks of a curve, on its north side."""
-    major, middle = curve.arcsec % curve.steps.major == 0, curve.arcsec % curve.steps.middle == 0
-    length = np.where(major, TICKS[2], np.where(middle, TICKS[1], TICKS[0])).astype(np.float32)[curve.shown, None]
-    xy = curve.xy[curve.shown]
-    ends = xy + curve.north[curve.shown] * length
-    return Segments("circle", np.concatenate([xy, ends], axis=1), GRID, curve.circle.colour)
 
 
 def grid(ctx: Context) -> Layer:
@@ -178,7 +172,7 @@ def grid(ctx: Context) -> Layer:
         return Layer("grid", (), grid_key(ctx))
     starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
     camera = ctx.projector.to_camera(np.concatenate(pieces, axis=1))
-    xy, ends = trace(ctx.window, camera, starts).between(0, int(starts[-1]))
+    xy, ends = lines(ctx.window, camera, starts)
     return Layer("grid", (Lines("grid", xy, ends, GRID),), grid_key(ctx))
 
 

@@ -21,7 +21,11 @@ PAGE_MARGIN = 10.0
 
 @dataclass(slots=True)
 class Context:
-    """The inputs of one build. `view_key` changes whenever any direction would fall on another pixel."""
+    """The inputs of one build.
+
+    `view_key` changes whenever any direction would fall on another pixel, `page_key` only when the shape of the whole
+    sky on the page does.
+    """
 
     sky: Sky
     view: View
@@ -29,6 +33,7 @@ class Context:
     projector: Projector
     window: Window
     view_key: object
+    page_key: object
     limit: float
     previous: dict[str, tuple[Layer, Any]]
     made: dict[str, tuple[Layer, Any]] = field(default_factory=dict)
@@ -64,8 +69,9 @@ def context(sky: Sky, size: tuple[int, int], previous: dict[str, tuple[Layer, An
         rotation=view.rotation_deg * DEG,
         frame=page.frame,
     )
-    key = (view.projection, size, p.camera.tobytes(), p.plane.tobytes(), p.shift.tobytes())
-    return Context(sky, view, page, p, Window.of(p, page.frame), key, limit_of(view), previous)
+    page_key = (view.projection, size, p.plane.tobytes(), p.shift.tobytes())
+    view_key = (page_key, p.camera.tobytes())
+    return Context(sky, view, page, p, Window.of(p, page.frame), view_key, page_key, limit_of(view), previous)
 
 
 def in_page(ctx: Context, x: Any, y: Any, margin: float = PAGE_MARGIN) -> Any:

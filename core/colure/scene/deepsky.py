@@ -9,7 +9,7 @@ from colure import deepsky as objects
 from colure.arrays import Float
 from colure.marks import Layer, Symbols
 from colure.scene.context import Context, in_page, on_page
-from colure.sky_layers import SYMBOLS, DeepSky
+from colure.sky_layers import SYMBOLS, DeepSky, widths_em
 
 LEAST = 3.6
 """Least half-axis of a symbol in pixels."""
@@ -23,6 +23,7 @@ class Spots:
     rows: NDArray[np.int64]
     radius: NDArray[np.float32]
     texts: tuple[str, ...]
+    width_em: NDArray[np.float32]
 
 
 def limit_of(ctx: Context) -> float:
@@ -68,18 +69,24 @@ def build(ctx: Context) -> tuple[Layer, Spots | None]:
         angle.astype(np.float32),
         sky.ids[at],
     )
+    # Messier's objects are named on every chart, the rest where the field is small.
+    inside &= (sky.messier[at] > 0) | (ctx.view.width_deg < 30.0)
     named = at[inside]
+    texts = _texts(sky, named)
     spots = Spots(
-        sky.columns[:, named], sky.ids[named], shape[inside].max(axis=1).astype(np.float32), _texts(sky, named, ctx)
+        sky.columns[:, named],
+        sky.ids[named],
+        shape[inside].max(axis=1).astype(np.float32),
+        texts,
+        widths_em(texts, "label.deepsky"),
     )
     return Layer("deep sky", (mark,), key(ctx), shown=len(at), total=len(at)), spots
 
 
-def _texts(sky: DeepSky, at: NDArray[np.intp], ctx: Context) -> tuple[str, ...]:
-    """Return short names; those past Messier's only where the field is small, as their list is read for it."""
-    small = ctx.view.width_deg < 30.0
+def _texts(sky: DeepSky, at: NDArray[np.intp]) -> tuple[str, ...]:
+    """Return short names; the list of names is read only for what is not Messier's."""
     return tuple(
-        f"M {messier}" if messier else objects.names(int(row))[0] if small else ""
+        f"M {messier}" if messier else objects.names(int(row))[0]
         for messier, row in zip(sky.messier[at].tolist(), sky.ids[at].tolist(), strict=True)
     )
 

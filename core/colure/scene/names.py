@@ -1,14 +1,14 @@
 """Which texts the map asks for, in order of rank, and the marks made of those that found room."""
 
 from dataclasses import dataclass, field
+from functools import lru_cache
 from typing import Any
 
 import numpy as np
 
-from colure.arrays import Float
 from colure.fontmetrics import CAP_HEIGHT, PX_PER_PT, width_px
 from colure.graduation import TURN, figure
-from colure.labels import NOWHERE, Placement, Request, around, join, place
+from colure.labels import NOWHERE, Placement, Request, around, join, merged, place
 from colure.marks import F32, I32, Labels, Layer
 from colure.scene import bodies as body_marks
 from colure.scene import stars as star_marks
@@ -20,9 +20,6 @@ _BODY, _CIRCLE, _FIGURE, _STAR, _DEEP, _CONSTELLATION, _POINT = (k << 56 for k i
 
 MOST_STARS = 60
 MOST_DEEP_SKY = 30
-BRIGHT_RADIUS = 2.3
-"""Stars with at least this radius in pixels are never covered by a text."""
-MOST_BRIGHT = 400
 NAME_SPOTS = 24
 """Places along a circle where its name may stand."""
 
@@ -102,10 +99,7 @@ def build(
     boxes, first_memory = _settle(ctx, first, discs, previous, None, marks)
     second = [w for w in (_figures(curves), _stars(ctx, shown), _deep_sky(ctx), _constellations(ctx)) if w is not None]
     _, second_memory = _settle(ctx, second, discs, previous, boxes, marks)
-    ids = np.concatenate([first_memory.ids, second_memory.ids])
-    choice = np.concatenate([first_memory.choice, second_memory.choice])
-    order = np.argsort(ids)
-    return Layer("labels", tuple(marks), key), Placement(ids[order], choice[order])
+    return Layer("labels", tuple(marks), key), merged([first_memory, second_memory])
 
 
 def _settle(
@@ -131,9 +125,7 @@ def _discs(shown: star_marks.Shown | None, listed: body_marks.Shown) -> F32:
     """Return the marks (M, 3) that no text may cover: bodies and bright stars."""
     parts = [np.concatenate([listed.xy, listed.radius[:, None]], axis=1)]
     if shown is not None:
-        # Rows are faintest first.
-        bright = np.flatnonzero(shown.radius >= BRIGHT_RADIUS)[-MOST_BRIGHT:]
-        parts.append(np.concatenate([shown.xy[bright], shown.radius[bright, None]], axis=1))
+        parts.append(np.concatenate([shown.xy, shown.radius[:, None]], axis=1))
     return np.concatenate(parts).astype(np.float32)
 
 
@@ -159,51 +151,50 @@ def _stable(name: str) -> int:
 
 def _circle_names(ctx: Context, curves: tuple[Curve, ...]) -> Wanted | None:
     """Return the circles' names, to stand along their curves between two figures, on the north side."""
-    rows = []
     size = 10.0
     tall = height(size)
-    for curve in curves:
-        text = curve.circle.name
-        wide = width_px(text, size, "label.circle", italic=True)
-        # Spots are fixed longitudes, so that a name stays at its longitude while the view moves over it.
-        step = max(curve.steps.major, 1)
-        spots = np.flatnonzero(((curve.arcsec - step // 2) % step < curve.steps.minor) & curve.shown)
-        spots = spots[: len(spots) // 1]
-        if not len(spots):
-            spots = np.flatnonzero(curve.shown)[:: max(int(curve.shown.sum() // NAME_SPOTS), 1)]
-        if not len(spots):
-            continue
-        number = (curve.arcsec[spots] // step) % NAME_SPOTS
-        angle = upright(curve.tangent[spots])
-        lift = (TICKS[2] if curve.circle.graduated else 0.0) + 4.0 + 0.5 * tall
-        xy = curve.xy[spots] + curve.north[spots] * np.float32(lift)
-        half = turned_half(wide, tall, angle)
-        centres = np.full((NAME_SPOTS, 2), np.nan, np.float32)
-        angles = np.zeros(NAME_SPOTS, np.float32)
-        halves = np.zeros((NAME_SPOTS, 2), np.float32)
-        centres[number], angles[number], halves[number] = xy, angle, half
-        rows.append((_CIRCLE + curve.number, centres, angles, halves, text, curve.circle.colour))
-    if not rows:
+    spots = [_spots(curve) for curve in curves]
+    used = [(curve, at) for curve, at in zip(curves, spots, strict=True) if len(at)]
+    if not used:
         return None
-    ids = np.array([row[0] for row in rows], np.int64)
-    centres = np.stack([row[1] for row in rows])
+    row = np.repeat(np.arange(len(used)), [len(at) for _, at in used])
+    widths = np.array([width_px(curve.circle.name, size, "label.circle", italic=True) for curve, _ in used])
+    lift = np.array([(TICKS[2] if c.circle.graduated else 0.0) + 4.0 + 0.5 * tall for c, _ in used], np.float32)
+    angle = upright(np.concatenate([curve.tangent[at] for curve, at in used]))
+    north = np.concatenate([curve.north[at] for curve, at in used])
+    xy = np.concatenate([curve.xy[at] for curve, at in used]) + north * lift[row, None]
+    # A spot's number belongs to its longitude, so that a name stays there while the view moves over it.
+    arcsec = np.concatenate([curve.arcsec[at] for curve, at in used])
+    number = (arcsec // used[0][0].steps.major) % NAME_SPOTS
+    centres = np.full((len(used), NAME_SPOTS, 2), np.nan, np.float32)
+    angles = np.zeros((len(used), NAME_SPOTS), np.float32)
+    halves = np.zeros((len(used), NAME_SPOTS, 2), np.float32)
+    centres[row, number], angles[row, number] = xy, angle
+    halves[row, number] = turned_half(widths[row], tall, angle)
+    # Best left of the middle and above it, where nothing else begins.
+    left, top, right, bottom = ctx.frame
+    away = np.nan_to_num(centres, nan=1e6) - np.array([0.6 * left + 0.4 * right, 0.6 * top + 0.4 * bottom], np.float32)
+    preference = np.argsort((away * away).sum(axis=2), axis=1)
+    ids = np.array([_CIRCLE + curve.number for curve, _ in used], np.int64)
     # One box for all spots of a name: the largest that any of its angles needs.
-    half = np.stack([row[3].max(axis=0) for row in rows])
-    middle = np.array([0.5 * (ctx.frame[0] + ctx.frame[2]), 0.5 * (ctx.frame[1] + ctx.frame[3])], np.float32)
-    distance = np.linalg.norm(centres - (middle - np.float32(0.22) * middle), axis=2)
-    preference = np.argsort(np.nan_to_num(distance, nan=1e9), axis=1)
-    request = Request(ids, centres, half, preference)
-    texts = tuple(row[4] for row in rows)
+    request = Request(ids, centres, halves.max(axis=1), preference)
     return Wanted(
         "label.circle",
         request,
-        texts,
-        np.arange(len(rows), dtype=np.int32),
-        np.stack([row[2] for row in rows]),
+        tuple(curve.circle.name for curve, _ in used),
+        np.arange(len(used), dtype=np.int32),
+        angles,
         size,
         italic=True,
-        colours=tuple(row[5] for row in rows),
+        colours=tuple(curve.circle.colour for curve, _ in used),
     )
+
+
+def _spots(curve: Curve) -> Any:
+    """Return the points of a curve where its name may stand: on the map, midway between two figures."""
+    step = curve.steps.major
+    at = np.flatnonzero(((curve.arcsec - step // 2) % step < curve.steps.minor) & curve.shown)
+    return at if len(at) else np.flatnonzero(curve.shown)[::5]
 
 
 def _figures(curves: tuple[Curve, ...]) -> Wanted | None:
@@ -225,10 +216,9 @@ def _figures(curves: tuple[Curve, ...]) -> Wanted | None:
         colours += [curve.circle.colour] * len(at)
     if not arcs or not sum(map(len, arcs)):
         return None
-    every = np.concatenate(arcs)
-    values, index = np.unique(every, return_inverse=True)
-    texts = tuple(figure(value) for value in values.tolist())
-    widths = np.array([width_px(text, size, "figure.circle") for text in texts], np.float32)[index]
+    values, index = np.unique(np.concatenate(arcs), return_inverse=True)
+    texts, wide = _figure_texts(tuple(values.tolist()), size)
+    widths = wide[index]
     angle = upright(np.concatenate(tangent))
     half = turned_half(widths, tall, angle)
     at_xy, up = np.concatenate(xy), np.concatenate(north)
@@ -239,57 +229,74 @@ def _figures(curves: tuple[Curve, ...]) -> Wanted | None:
     return Wanted("figure.circle", request, texts, index.astype(np.int32), angle, size, colours=tuple(colours))
 
 
+@lru_cache(maxsize=64)
+def _figure_texts(arcsec: tuple[int, ...], size_pt: float) -> tuple[tuple[str, ...], F32]:
+    """Return the figures of longitudes and their widths in pixels."""
+    texts = tuple(figure(value) for value in arcsec)
+    return texts, np.array([width_px(text, size_pt, "figure.circle") for text in texts], np.float32)
+
+
 def _about(
     ctx: Context,
     role: str,
     code: int,
-    columns: Float,
+    columns: Any,
     texts: tuple[str, ...],
+    width_em: F32,
     rows: Any,
     radius: Any,
     most: int,
-    **style: Any,
+    *,
+    centred: bool = False,
+    italic: bool = False,
+    size: float = 9.0,
 ) -> Wanted | None:
-    """Return texts about points of the sky, the first `most` that are on the map."""
-    if not len(texts):
-        return None
+    """Return texts about points of the sky (3, N), the first `most` that are on the map."""
     xy, on = on_page(ctx, columns, 0.0)
     at = np.flatnonzero(on)[:most]
     if not len(at):
         return None
-    size = style.get("size_pt", 9.0)
-    italic = style.get("italic", False)
-    wide = np.array([width_px(texts[i], size, role, italic=italic) for i in at.tolist()], np.float32)
-    half = np.stack([0.5 * wide, np.full(len(at), 0.5 * height(size), np.float32)], axis=1)
-    r = np.broadcast_to(np.asarray(radius, np.float32), (len(texts),))[at]
-    centres = around(xy[at], r, half)
-    if style.pop("centred", False):
-        centres = np.concatenate([xy[at][:, None, :], centres], axis=1)
-    request = Request(code + np.asarray(rows, np.int64)[at], centres, half)
+    half = np.empty((len(at), 2), np.float32)
+    half[:, 0] = width_em[at] * np.float32(0.5 * size * PX_PER_PT)
+    half[:, 1] = 0.5 * height(size)
+    here = xy[at]
+    r = radius[at] if isinstance(radius, np.ndarray) else np.full(len(at), radius, np.float32)
+    centres = around(here, r, half)
+    if centred:
+        centres = np.concatenate([here[:, None, :], centres], axis=1)
+    request = Request(code + rows[at], centres, half)
     listed = tuple(texts[i] for i in at.tolist())
-    return Wanted(role, request, listed, np.arange(len(at), dtype=np.int32), np.zeros(len(at), np.float32), **style)
+    return Wanted(
+        role, request, listed, np.arange(len(at), dtype=np.int32), np.zeros(len(at), np.float32), size, italic=italic
+    )
 
 
 def _stars(ctx: Context, shown: star_marks.Shown | None) -> Wanted | None:
     """Return the names of the brightest named stars on the map."""
-    if shown is None or not ctx.sky.session.layers.star_names:
+    if shown is None or "star names" not in ctx.sky.layers:
         return None
     named = ctx.sky["star names"]
-    radius = star_marks.RADII[star_marks.size_class(named.vmag, ctx.limit)]
-    bright = int(np.searchsorted(named.vmag, ctx.limit))
+    bright = int(np.searchsorted(named.vmag, ctx.limit, side="right"))
+    radius = star_marks.RADII[star_marks.size_class(named.vmag[:bright], ctx.limit)]
     directions = ctx.sky["stars"].directions[:, named.at[:bright]]
-    return _about(
-        ctx, "label.star", _STAR, directions, named.texts[:bright], named.ids[:bright], radius[:bright], MOST_STARS
-    )
+    return _about(ctx, "label.star", _STAR, directions, named.texts, named.width_em, named.ids, radius, MOST_STARS)
 
 
 def _deep_sky(ctx: Context) -> Wanted | None:
-    if "deep sky" not in ctx.made:
-        return None
-    spots = ctx.made["deep sky"][1]
+    spots = ctx.made["deep sky"][1] if "deep sky" in ctx.made else None
     if spots is None:
         return None
-    return _about(ctx, "label.deepsky", _DEEP, spots.columns, spots.texts, spots.rows, spots.radius, MOST_DEEP_SKY)
+    return _about(
+        ctx,
+        "label.deepsky",
+        _DEEP,
+        spots.columns,
+        spots.texts,
+        spots.width_em,
+        spots.rows,
+        spots.radius,
+        MOST_DEEP_SKY,
+    )
 
 
 def _constellations(ctx: Context) -> Wanted | None:
@@ -298,5 +305,15 @@ def _constellations(ctx: Context) -> Wanted | None:
     names = ctx.sky["constellations"]
     rows = np.arange(len(names.texts))
     return _about(
-        ctx, "label.constellation", _CONSTELLATION, names.columns, names.texts, rows, 4.0, 88, italic=True, centred=True
+        ctx,
+        "label.constellation",
+        _CONSTELLATION,
+        names.columns,
+        names.texts,
+        names.width_em,
+        rows,
+        4.0,
+        88,
+        italic=True,
+        centred=True,
     )

@@ -1,12 +1,14 @@
 """Stars on the page: discs whose areas fall with magnitude on one scale, at most one in each 3-pixel cell."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from colure.marks import F32, U8, Discs, Layer
 from colure.scene.context import Context, in_page
+from colure.sky_layers import StarRows
 
 SIZES = 24
 """Number of size classes between the faintest star shown and the brightest."""
@@ -14,6 +16,10 @@ SMALLEST, LARGEST = 0.62, 6.6
 """Radii in pixels of a star at the limit and of one of magnitude −1.5."""
 BRIGHTEST = -1.5
 CELL = 3.0
+BRIGHT_RADIUS = 2.3
+"""Stars with at least this radius in pixels are never covered by a text."""
+MOST_BRIGHT = 320
+"""Nor are more than the brightest so many."""
 
 
 def radii() -> F32:
@@ -36,22 +42,27 @@ def area_ratio(limit: float) -> float:
     return float((LARGEST / SMALLEST) ** (2.0 / (limit - BRIGHTEST)))
 
 
+@lru_cache(maxsize=4)
+def _sizes(base: StarRows, limit: float) -> U8:
+    """Return the size classes of a list of stars; kept, as neither changes from frame to frame."""
+    return size_class(base.vmag, limit)
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Shown:
-    """The stars on the page: places in the sky's rows (faintest first), their positions and radii."""
+    """The stars on the page that no text may cover: positions (N, 2) and radii (N,), faintest first."""
 
-    at: NDArray[np.intp]
     xy: F32
     radius: F32
 
 
 def build(ctx: Context) -> tuple[Layer, Shown]:
-    """Return the layer of stars and which are shown."""
+    """Return the layer of stars, and the bright ones for the labels."""
     stars = ctx.sky["stars"]
-    base, directions = stars.base, stars.directions
+    base: StarRows = stars.base
     # Rows are sorted faintest first: what is brighter than the limit is the end of the list.
-    first = int(np.searchsorted(-base.vmag, np.float32(-ctx.limit), side="left"))
-    camera = ctx.projector.to_camera(directions[:, first:])
+    first = base.first_brighter(ctx.limit)
+    camera = ctx.projector.to_camera(stars.directions[:, first:])
     numbers: NDArray[np.intp] | None = None
     if not ctx.projector.projection.unrolled and ctx.window.cap < 3.1:
         numbers = np.flatnonzero(camera[2] >= np.cos(ctx.window.cap))
@@ -63,27 +74,24 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
         shown &= ctx.projector.on_sky(camera)
     inside = np.flatnonzero(shown)
     x, y = x[inside], y[inside]
-    total = len(inside)
     keep = _thin(x - (ctx.frame[0] - 16.0), y - (ctx.frame[1] - 16.0), ctx.page.width + 32, ctx.page.height + 32)
-    inside = inside[keep]
     xy = np.empty((len(keep), 2), dtype=np.float32)
     xy[:, 0] = x[keep]
     xy[:, 1] = y[keep]
-    at = inside if numbers is None else numbers[inside]
-    at = at + first
-    size = size_class(base.vmag[at], ctx.limit)
+    at = inside[keep] if numbers is None else numbers[inside[keep]]
+    at += first
+    size = _sizes(base, ctx.limit)[at]
     mark = Discs("star", xy, size, base.tint[at], RADII, base.ids[at])
-    layer = Layer("stars", (mark,), _key(ctx), shown=len(at), total=total)
-    return layer, Shown(at, xy, RADII[size])
-
-
-def _key(ctx: Context) -> object:
-    return (ctx.sky.key("stars"), ctx.view_key, ctx.limit)
+    layer = Layer("stars", (mark,), key(ctx), shown=len(at), total=len(inside))
+    bright = slice(max(len(at) - MOST_BRIGHT, 0), len(at))
+    radius = RADII[size[bright]]
+    large = radius >= BRIGHT_RADIUS
+    return layer, Shown(xy[bright][large], radius[large])
 
 
 def key(ctx: Context) -> object:
     """Return what the layer of stars depends on."""
-    return _key(ctx)
+    return (ctx.sky.key("stars"), ctx.view_key, ctx.limit)
 
 
 def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: int) -> NDArray[np.intp]:

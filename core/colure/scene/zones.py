@@ -26,18 +26,18 @@ def sky_disc(ctx: Context) -> Layer:
         marks.append(Areas("sky", ring, np.array([0, len(ring)], np.int32)))
         closed = np.concatenate([ring, ring[:1]])
         marks.append(Lines("rim", closed, np.array([0, len(closed)], np.int32), GRID))
-    return Layer("sky", tuple(marks), ctx.view_key)
+    return Layer("sky", tuple(marks), ctx.page_key)
 
 
 def milky_way(ctx: Context) -> Layer:
     """Return the layer of the Milky Way's levels, fainter ones first."""
     marks: list[Mark] = []
-    for level, outline in ctx.sky["milky way"]:
+    for outline in ctx.sky["milky way"]:
         camera = ctx.projector.to_camera(outline.columns)
         outside = ctx.projector.camera @ outline.outside
         points, starts = areas(ctx.window, camera, outline.starts, outside)
         if len(points):
-            marks.append(Areas(f"milkyway.{level}", points, starts))
+            marks.append(Areas(f"milkyway.{outline.level}", points, starts))
     return Layer("milky way", tuple(marks), (ctx.sky.key("milky way"), ctx.view_key))
 
 
