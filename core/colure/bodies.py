@@ -11,7 +11,7 @@ import erfa
 import numpy as np
 
 from colure import appearance, constellations, frames, horizon, phases, photometry, refraction, sidereal
-from colure.arrays import ARCSEC, DEG, TWO_PI, Float, Int, norm, position_angle, spherical
+from colure.arrays import ARCSEC, DEG, TWO_PI, Float, Int, norm, position_angle, rotate, spherical
 from colure.ephemeris import SYSTEM_BARYCENTRES, Ephemeris, default
 from colure.errors import SiteError
 from colure.frames import Frame
@@ -142,7 +142,7 @@ def facts(
     vectors = seen.vectors[:count]
     distance = seen.distance_au[:count]
 
-    local = frames.from_icrs(vectors, frame, moment, site)
+    local = _local(vectors, frame, moment, seen.observer, site)
     lon, lat = spherical(local)
     out: dict[str, Any] = {
         "body": bodies,
@@ -257,7 +257,7 @@ def _rates(
     """Return the motion in the frame: longitude's times the cosine of the latitude, and its position angle."""
     around = _around(moment)
     seen = reduce_bodies(bodies, around, observer=observer, place=place, ephemeris=source)
-    ends = frames.from_icrs(seen.vectors, frame, around, observer.site)
+    ends = _local(seen.vectors, frame, around, seen.observer, observer.site)
     change = ends[:, 1] - ends[:, 0]
     east, north = _tangent(change, lon, lat)
     scale = 1.0 / (2.0 * RATE_STEP_DAYS * 24.0) / ARCSEC
@@ -287,15 +287,26 @@ def _altitudes(
     }
 
 
-def horizontal(vectors: Float, state: ObserverState, site: Site) -> tuple[Float, Float]:
-    """Return azimuth (north through east) and altitude, rad, of directions (bodies, *shape, 3) on ICRS axes."""
+def _horizon_matrix(state: ObserverState, site: Site) -> Float:
+    """Return the matrices (*shape, 3, 3) from ICRS axes to north, east, up: left-handed, so that longitude is azimuth."""
     if state.to_itrs is None:
         raise SiteError("altitude and azimuth: the observer is not at a site")
     lon, lat = site.lon_deg * DEG, site.lat_deg * DEG
     sl, cl, sb, cb = np.sin(lon), np.cos(lon), np.sin(lat), np.cos(lat)
-    # Rows north, east, up: a left-handed triad, in which longitude is azimuth.
     triad = np.array([[-sb * cl, -sb * sl, cb], [-sl, cl, 0.0], [cb * cl, cb * sl, sb]])
-    return turned(vectors, triad @ state.to_itrs)
+    return np.asarray(triad @ state.to_itrs)
+
+
+def horizontal(vectors: Float, state: ObserverState, site: Site) -> tuple[Float, Float]:
+    """Return azimuth (north through east) and altitude, rad, of directions (bodies, *shape, 3) on ICRS axes."""
+    return turned(vectors, _horizon_matrix(state, site))
+
+
+def _local(vectors: Float, frame: Frame, moment: Moment, state: ObserverState, site: Site | None) -> Float:
+    """Return vectors (bodies, *shape, 3) turned into a frame; the horizon is the observer's own, its pole included."""
+    if frame.plane == "horizon" and site is not None and state.to_itrs is not None:
+        return rotate(_horizon_matrix(state, site), vectors)
+    return frames.from_icrs(vectors, frame, moment, site)
 
 
 def _uncertainty(

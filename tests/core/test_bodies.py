@@ -365,3 +365,15 @@ def test_frames_that_are_no_rotation_work_too() -> None:
     plain = bodies.facts(("mars",), now, frame="icrs", ephemeris=kernel())
     icrs = frames.to_icrs(cartesian(found["lon_deg"] * DEG, found["lat_deg"] * DEG), "equator/fk4/B1950", now)
     assert separation(icrs, cartesian(plain["lon_deg"] * DEG, plain["lat_deg"] * DEG)).max() < 1e-9
+
+
+def test_polar_motion_can_be_switched_off() -> None:
+    # The pole was 0.44″ off in 2021; the horizon frame and the altitude keys must follow the switch together.
+    now = Moment.parse("2021-06-01T12:00 UTC")
+    on, off = (
+        bodies.facts(("mars",), now, site=QUERN_HILL, frame="horizon", polar_motion=switch) for switch in (True, False)
+    )
+    xp, yp = now.polar_motion
+    moved = separation(*(cartesian(one["lon_deg"] * DEG, one["lat_deg"] * DEG) for one in (on, off)))
+    assert 0.1 * np.hypot(xp, yp) < moved[0] < 1.1 * np.hypot(xp, yp)
+    assert abs(off["lat_deg"][0] - off["altitude_deg"][0]) < 1e-9
