@@ -8,6 +8,7 @@ import erfa
 
 from colure import precession
 from colure.errors import FrameError, near_names
+from colure.wording import one_line
 
 PLANES = ("icrs", "gcrs", "cirs", "equator", "ecliptic", "galactic", "supergalactic", "invariable", "horizon")
 KINDS = {
@@ -36,8 +37,9 @@ class Frame:
     def parse(cls, text: str) -> "Frame":
         """Return the frame that a name stands for; raise FrameError with what was expected and near names."""
         if not isinstance(text, str) or len(text) > 100:
-            raise FrameError(f"frame {str(text)[:40]!r}: expected a name such as 'ecliptic/mean/J2000'")
-        body, at, model_text = text.strip().replace("\u2212", "-").partition("@")
+            raise FrameError(f"frame '{one_line(str(text), 40)}': expected a name such as 'ecliptic/mean/J2000'")
+        text = one_line(text, 100)
+        body, at, model_text = text.replace("\u2212", "-").partition("@")
         parts = [part.strip() for part in body.split("/")]
         plane = parts[0].casefold()
         if plane not in PLANES:
