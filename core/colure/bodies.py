@@ -288,7 +288,7 @@ def _altitudes(
 
 
 def _horizon_matrix(state: ObserverState, site: Site) -> Float:
-    """Return the matrices (*shape, 3, 3) from ICRS axes to north, east, up: left-handed, so that longitude is azimuth."""
+    """Return the matrices (*shape, 3, 3) from ICRS axes to north, east and up: left-handed, longitude is azimuth."""
     if state.to_itrs is None:
         raise SiteError("altitude and azimuth: the observer is not at a site")
     lon, lat = site.lon_deg * DEG, site.lat_deg * DEG
