@@ -11,7 +11,7 @@ import erfa
 import numpy as np
 
 from colure import precession
-from colure.arrays import ARCSEC, DEG, Float, dot, unit
+from colure.arrays import ARCSEC, DEG, Float, dot, rotate, unit
 
 _E_B1950 = np.array([-1.62557e-6, -0.31919e-6, -0.13843e-6])
 _E_RATE = np.array([1.245e-3, -1.580e-3, -0.659e-3]) * ARCSEC
@@ -83,7 +83,7 @@ def to_fk5(
     p = remove_e_terms(vectors, equinox, at) if e_terms else unit(vectors)
     if equinox != 1950.0:
         p = p @ precession.newcomb_matrix(1950.0, equinox)
-    return unit(_rotate(_to_fk5_matrix(at), p))
+    return unit(rotate(_to_fk5_matrix(at), p))
 
 
 def from_fk5(
@@ -91,7 +91,7 @@ def from_fk5(
 ) -> Float:
     """Return unit vectors (..., 3) of FK4 for ones on the axes of FK5 J2000: the exact inverse of `to_fk5`."""
     at = equinox if epoch is None else epoch
-    p = unit(_rotate(np.asarray(np.linalg.inv(_to_fk5_matrix(at)), dtype=np.float64), vectors))
+    p = unit(rotate(np.asarray(np.linalg.inv(_to_fk5_matrix(at)), dtype=np.float64), vectors))
     if equinox != 1950.0:
         p = p @ precession.newcomb_matrix(1950.0, equinox).T
     return add_e_terms(p, equinox, at) if e_terms else p
@@ -105,10 +105,6 @@ def to_icrs(vectors: Float, equinox: float, epoch: Float | float | None = None, 
 def from_icrs(vectors: Float, equinox: float, epoch: Float | float | None = None, *, e_terms: bool = True) -> Float:
     """Return unit vectors (..., 3) of FK4 for ones on ICRS axes."""
     return from_fk5(vectors @ precession.fk5_matrix().T, equinox, epoch, e_terms=e_terms)
-
-
-def _rotate(matrix: Float, vectors: Float) -> Float:
-    return np.asarray(np.einsum("...ij,...j->...i", matrix, vectors))
 
 
 def galactic_1958() -> Float:

@@ -12,7 +12,7 @@ import erfa
 import numpy as np
 
 from colure import fk4, ofdate, precession, sidereal
-from colure.arrays import ARCSEC, DEG, Float, rotation_x, rotation_z
+from colure.arrays import ARCSEC, DEG, Float, rotate, rotation_x, rotation_z
 from colure.errors import FrameError, FrameMismatch
 from colure.framenames import Frame
 from colure.moment import Moment
@@ -51,9 +51,7 @@ class Rotation:
 
     def apply(self, vectors: Float) -> Float:
         """Return vectors (..., 3) on the target's axes; leading dimensions broadcast with the matrix's."""
-        if self.matrix.ndim == 2:
-            return np.asarray(vectors @ self.matrix.T)
-        return np.asarray(np.einsum("...ij,...j->...i", self.matrix, vectors))
+        return rotate(self.matrix, vectors)
 
     def inverse(self) -> "Rotation":
         """Return the rotation back."""
