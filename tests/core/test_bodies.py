@@ -377,3 +377,17 @@ def test_polar_motion_can_be_switched_off() -> None:
     moved = separation(*(cartesian(one["lon_deg"] * DEG, one["lat_deg"] * DEG) for one in (on, off)))
     assert 0.1 * np.hypot(xp, yp) < moved[0] < 1.1 * np.hypot(xp, yp)
     assert abs(off["lat_deg"][0] - off["altitude_deg"][0]) < 1e-9
+
+
+def test_moments_of_any_shape() -> None:
+    flat = span(6, seed=3)
+    grid = Moment(np.reshape(flat.tt1, (2, 3)), np.reshape(flat.tt2, (2, 3)), "TT")
+    for site in (None, QUERN_HILL):
+        one = bodies.facts(("moon", "mars"), flat, site=site, frame="ecliptic/true/date")
+        two = bodies.facts(("moon", "mars"), grid, site=site, frame="ecliptic/true/date")
+        for key in ("lon_deg", "rate_lat_arcsec_h", "elongation_deg", "magnitude", "uncertainty_arcsec", "xyz_au"):
+            assert np.allclose(two[key].reshape(one[key].shape), one[key], rtol=1e-12, atol=1e-7, equal_nan=True), key
+    assert len(bodies.records(two)) == 12
+    empty = bodies.facts(("moon",), flat[:0])
+    assert empty["lon_deg"].shape == (1, 0)
+    assert bodies.records(empty) == []

@@ -22,7 +22,7 @@ FAR_AU = 1e-3
 
 def dot3(a: Float, b: Float) -> Float:
     """Return the scalar product over the first dimension."""
-    return np.asarray(a[0] * b[0] + a[1] * b[1] + a[2] * b[2])
+    return np.asarray(np.einsum("i...,i...->...", a, b))
 
 
 def deflected(direction: Float, source_from_sun: Float, observer_from_sun: Float) -> Float:
