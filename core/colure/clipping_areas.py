@@ -8,6 +8,8 @@ the whole rim, cross the seam, or be a belt round the sky with two outlines: the
 """
 
 from dataclasses import dataclass
+from functools import lru_cache
+from itertools import pairwise
 
 import numpy as np
 
@@ -55,7 +57,7 @@ def rim_ring(window: Window) -> F32 | None:
     if not projection.unrolled and window.cap < projection.edge:
         return None
     rim = _Rim(window)
-    x, y = window.projector.to_page(rim.along(0.0, rim.length)[:, :-1])
+    x, y = window.projector.to_page(rim.between(-1.0, rim.length))
     left, top, right, bottom = window.rect
     points = np.stack([x, y], axis=1)
     if max(np.abs(points[:, 0]).max(), np.abs(points[:, 1]).max()) > _FAR + max(right, bottom):
@@ -143,24 +145,41 @@ class _Rim:
         lon = float(np.arctan2(x, z))
         return self.side + np.pi - lon if lat > 0.0 else 2.0 * self.side + 3.0 * np.pi + lon
 
-    def along(self, first: float, last: float) -> Float:
-        """Return directions (3, K) from one parameter on to another, both included, going forwards."""
-        span = last - first
-        n = max(int(np.ceil(span / RIM_STEP)), 1) + 1
-        s = first + np.linspace(0.0, 1.0, n) * span
-        if not self.unrolled:
-            sine = np.sin(self.cap)
-            return np.stack([sine * np.cos(s), sine * np.sin(s), np.full(n, np.cos(self.cap))])
-        corners = np.array([self.side, self.side + 2.0 * np.pi, 2.0 * self.side + 2.0 * np.pi, 0.0])
-        corners = np.concatenate([corners, corners + self.length])
-        s = np.sort(np.concatenate([s, corners[(corners > first) & (corners < last)]])) % self.length
-        ends = np.array([0.0, self.side, self.side + 2.0 * np.pi, 2.0 * self.side + 2.0 * np.pi])
-        which = np.searchsorted(ends, s, side="right") - 1
-        way = s - ends[which]
-        # The right side and the left side are the same meridian: π just short of the seam, on either hand.
-        lon = np.choose(which, [np.full(len(s), np.pi), np.pi - way, np.full(len(s), -np.pi), way - np.pi])
-        lat = np.choose(which, [way - self.cap, np.full(len(s), self.cap), self.cap - way, np.full(len(s), -self.cap)])
-        return np.stack([np.cos(lat) * np.sin(lon), np.sin(lat), np.cos(lat) * np.cos(lon)])
+    def between(self, first: float, last: float) -> Float:
+        """Return directions (3, K) strictly between two parameters, going forwards, the corners of a sheet included."""
+        parameters, points = _lattice(self.unrolled, self.cap)
+        a, b = np.searchsorted(parameters, (first, last))
+        return points[:, a + (parameters[a] <= first) : b] if a < len(parameters) else points[:, :0]
+
+    def at(self, parameter: float) -> Float:
+        """Return the direction (3,) at a parameter."""
+        return np.asarray(_on_rim(np.array([parameter % self.length]), self.unrolled, self.cap)[:, 0])
+
+
+@lru_cache(maxsize=16)
+def _lattice(unrolled: bool, cap: float) -> tuple[Float, Float]:
+    """Return points about RIM_STEP apart along a rim, twice round it: parameters (N,) and directions (3, N)."""
+    sides = (2.0 * cap, 2.0 * np.pi, 2.0 * cap, 2.0 * np.pi) if unrolled else (2.0 * np.pi,)
+    starts = np.concatenate([[0.0], np.cumsum(sides)])
+    once = np.concatenate(
+        [np.linspace(a, b, max(int(np.ceil((b - a) / RIM_STEP)), 1), endpoint=False) for a, b in pairwise(starts)]
+    )
+    points = _on_rim(once, unrolled, cap)
+    return np.concatenate([once, once + starts[-1]]), np.concatenate([points, points], axis=1)
+
+
+def _on_rim(s: Float, unrolled: bool, cap: float) -> Float:
+    """Return directions (3, N) at parameters (N,) within one turn of a rim."""
+    if not unrolled:
+        sine = np.sin(cap)
+        return np.stack([sine * np.cos(s), sine * np.sin(s), np.full(len(s), np.cos(cap))])
+    ends = np.array([0.0, 2.0 * cap, 2.0 * cap + 2.0 * np.pi, 4.0 * cap + 2.0 * np.pi])
+    which = np.searchsorted(ends, s, side="right") - 1
+    way = s - ends[which]
+    # The right side and the left side are the same meridian: π just short of the seam, on either hand.
+    lon = np.choose(which, [np.full(len(s), np.pi), np.pi - way, np.full(len(s), -np.pi), way - np.pi])
+    lat = np.choose(which, [way - cap, np.full(len(s), cap), cap - way, np.full(len(s), -cap)])
+    return np.stack([np.cos(lat) * np.sin(lon), np.sin(lat), np.cos(lat) * np.cos(lon)])
 
 
 @dataclass(frozen=True, slots=True)
@@ -179,12 +198,14 @@ def _trace(rim: _Rim, camera: Float, starts: I32) -> tuple[list[Float], list[_St
     shown = rim.shown(camera)
     rings: list[Float] = []
     stretches: list[_Stretch] = []
-    bounds = np.searchsorted(suspects, starts)
-    for k in range(len(starts) - 1):
-        first, last = int(starts[k]), int(starts[k + 1])
-        pieces = _pieces(rim.window, camera, suspects[bounds[k] : bounds[k + 1]], after)
-        if pieces:
-            stretches += _walk(rim, camera, first, last, pieces)
+    pieces = _pieces(rim.window, camera, suspects, after)
+    at = 0
+    for first, last in zip(starts[:-1].tolist(), starts[1:].tolist(), strict=True):
+        begin = at
+        while at < len(pieces) and pieces[at][0] < last:
+            at += 1
+        if at > begin:
+            stretches += _walk(rim, camera, first, last, pieces[begin:at])
         elif shown[first]:
             rings.append(camera[:, first:last])
     return rings, stretches
@@ -196,19 +217,19 @@ _Piece = tuple[int, Float, Float, bool, bool]
 
 def _pieces(window: Window, camera: Float, edges: Int, after: Int) -> list[_Piece]:
     """Return the shown parts of those edges that are really cut, in the order of travel."""
-    pieces: list[_Piece] = []
-    for edge in edges.tolist():
-        a, b = camera[:, edge], camera[:, after[edge]]
-        firsts, lasts, _ = cut_segments(window, a[:, None], b[:, None])
-        parts: list[tuple[float, _Piece]] = []
-        for j in range(firsts.shape[1]):
-            p, q = firsts[:, j], lasts[:, j]
-            cut_p, cut_q = bool(np.abs(p - a).max() > 1e-13), bool(np.abs(q - b).max() > 1e-13)
-            parts.append((float((p - a) @ (b - a)), (edge, p, q, cut_p, cut_q)))
-        if len(parts) == 1 and not (parts[0][1][3] or parts[0][1][4]):
-            continue
-        pieces += [piece for _, piece in sorted(parts, key=lambda part: part[0])]
-    return pieces
+    if not len(edges):
+        return []
+    a, b = camera[:, edges], camera[:, after[edges]]
+    firsts, lasts, which = cut_segments(window, a, b)
+    begin, way = a[:, which], (b - a)[:, which]
+    cut_first = np.abs(firsts - begin).max(axis=0) > 1e-13
+    cut_last = np.abs(lasts - b[:, which]).max(axis=0) > 1e-13
+    # Along the ring, and where an edge has two parts, along the edge.
+    order = np.lexsort((((firsts - begin) * way).sum(axis=0), which))
+    kept = order[(cut_first | cut_last)[order]]
+    return [
+        (int(edges[which[j]]), firsts[:, j], lasts[:, j], bool(cut_first[j]), bool(cut_last[j])) for j in kept.tolist()
+    ]
 
 
 def _walk(rim: _Rim, camera: Float, first: int, last: int, pieces: list[_Piece]) -> list[_Stretch]:
@@ -242,18 +263,17 @@ def _close(rim: _Rim, stretches: list[_Stretch], camera: Float, starts: I32, out
         [(s.first, i, 0) for i, s in enumerate(stretches)] + [(s.last, i, 1) for i, s in enumerate(stretches)]
     )
     if not ends:
-        whole = rim.along(0.0, rim.length)[:, :-1]
+        whole = rim.between(-1.0, rim.length)
         return [whole] if inside(whole[:, 1], camera, starts, outside) else []
     parameters = np.array([end[0] for end in ends])
     gaps = np.diff(np.append(parameters, parameters[0] + rim.length))
     widest = int(np.argmax(gaps))
-    probe = rim.along(parameters[widest] + 0.382 * gaps[widest], parameters[widest] + 0.5 * gaps[widest])[:, 0]
-    filled = inside(probe, camera, starts, outside)
+    filled = inside(rim.at(float(parameters[widest] + 0.382 * gaps[widest])), camera, starts, outside)
     first = widest if filled else widest + 1
     partner: dict[tuple[int, int], tuple[tuple[int, int], Float]] = {}
     for j in range(first, first + len(ends), 2):
         here, there = j % len(ends), (j + 1) % len(ends)
-        path = rim.along(parameters[here], parameters[here] + gaps[here])
+        path = rim.between(float(parameters[here]), float(parameters[here] + gaps[here]))
         a, b = (ends[here][1], ends[here][2]), (ends[there][1], ends[there][2])
         partner[a], partner[b] = (b, path), (a, path[:, ::-1])
     rings: list[Float] = []
@@ -284,17 +304,22 @@ def inside(point: Float, camera: Float, starts: I32, outside: Float) -> bool:
 
 
 def _odd(p: Float, q: Float, camera: Float, starts: I32) -> bool:
-    a, b = camera, camera[:, following(camera.shape[1], starts)]
     normal = np.cross(p, q)
-    side_a, side_b = normal @ a >= 0.0, normal @ b >= 0.0
-    at = np.flatnonzero(side_a != side_b)
-    a, b = a[:, at], b[:, at]
-    edge = np.cross(a, b, axis=0)
+    side = normal @ camera >= 0.0
+    after = following(camera.shape[1], starts)
+    at = np.flatnonzero(side != side[after])
+    a, b = camera[:, at], camera[:, after[at]]
+    edge = _cross(a, b)
     between = (p @ edge >= 0.0) != (q @ edge >= 0.0)
     # Both great circles meet in two opposite points; the arcs must share the same one.
-    meet = np.cross(normal[:, None], edge, axis=0)
+    meet = _cross(normal[:, None], edge)
     same = ((p + q) @ meet > 0.0) == (((a + b) * meet).sum(axis=0) > 0.0)
     return bool(np.count_nonzero(between & same) % 2)
+
+
+def _cross(a: Float, b: Float) -> Float:
+    """Return the vector product of columns (3, N)."""
+    return np.stack([a[1] * b[2] - a[2] * b[1], a[2] * b[0] - a[0] * b[2], a[0] * b[1] - a[1] * b[0]])
 
 
 def _boxed(points: Float, ends: Int, rect: Rect) -> tuple[Float, Int]:

@@ -308,10 +308,11 @@ class Projector:
     def project(self, vectors: Any) -> Float:
         """Return pixels (..., 2) for vectors (..., 3) on ICRS axes; NaN beyond the projection's edge."""
         v = np.asarray(vectors, dtype=np.float64)
-        camera = np.moveaxis(v @ self.camera.T, -1, 0)
+        camera = self.camera @ v.reshape(-1, 3).T
         x, y = self.to_page(camera)
         off = ~self.on_sky(camera)
-        return np.stack([np.where(off, np.nan, x), np.where(off, np.nan, y)], axis=-1)
+        page = np.stack([np.where(off, np.nan, x), np.where(off, np.nan, y)], axis=-1)
+        return page.reshape(*v.shape[:-1], 2)
 
     def unproject(self, xy: Any) -> Float:
         """Return unit vectors (..., 3) on ICRS axes for pixels (..., 2); NaN off the sky."""
