@@ -14,7 +14,10 @@ from colure.sidereal import Ground
 
 @dataclass(frozen=True, slots=True)
 class Converted:
-    """Positions in the target frame, degrees; longitude 0 to 360. Rows that were no position are NaN and not `ok`."""
+    """Positions in the target frame, degrees; longitude 0 to 360. Rows that were no position are NaN and not `ok`.
+
+    `model` names the precession that took part, `epoch` the Besselian year of an FK4 observation (None without FK4).
+    """
 
     lon_deg: Float
     lat_deg: Float
@@ -22,6 +25,7 @@ class Converted:
     source: Frame
     target: Frame
     model: str | None
+    epoch: Float | float | None = None
 
     def faults(self) -> tuple[int, ...]:
         """Return the row numbers, counted from 1, that were refused."""
@@ -78,7 +82,16 @@ def columns(
         source,
         target,
         model_used(source, target, moment),
+        fk4_epoch(source, target, epoch),
     )
+
+
+def fk4_epoch(source: Frame, target: Frame, epoch: Float | float | None) -> Float | float | None:
+    """Return the epoch of observation at which FK4 is entered or left, as given or by default; None without FK4."""
+    fk4 = [frame for frame in (source, target) if not frame.is_rotation]
+    if not fk4:
+        return None
+    return fk4[0].besselian_year() if epoch is None else epoch
 
 
 def check_columns(lon_deg: Float, lat_deg: Float, moment: Moment | None) -> None:

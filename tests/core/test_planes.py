@@ -115,6 +115,14 @@ def test_a_column_of_moments_belongs_to_the_rows() -> None:
     assert len(convert.columns(np.empty(0), np.empty(0), "icrs", "galactic").ok) == 0
 
 
+def test_the_epoch_of_an_fk4_observation_is_shown() -> None:
+    one = np.array([10.0]), np.array([20.0])
+    assert convert.columns(*one, "icrs", "galactic").epoch is None
+    assert convert.columns(*one, "icrs", "equator/fk4/B1950").epoch == 1950.0
+    assert convert.columns(*one, "equator/fk4/B1900", "equator/fk4/B1950").epoch == 1900.0
+    assert convert.columns(*one, "equator/fk4/B1950", "icrs", epoch=1978.3).epoch == 1978.3
+
+
 def test_a_typed_position_is_read_in_the_manner_of_its_frame() -> None:
     got = convert.text("12h 30m 00s +10° 00′ 00″", "equator/mean/J2000", "ecliptic/mean/J2000")
     back = convert.columns(got.lon_deg, got.lat_deg, "ecliptic/mean/J2000", "equator/mean/J2000")
