@@ -1,5 +1,6 @@
 """`colure convert`: one position, or a table of them, carried from one frame to another."""
 
+import sys
 from pathlib import Path
 from typing import Any
 
@@ -150,7 +151,7 @@ class _Job:
         )
         body = dumps(table, form)
         if output is None:
-            click.get_binary_stream("stdout").write(body)
+            sys.stdout.buffer.write(body)
         else:
             atomic_write(output, body)
 
