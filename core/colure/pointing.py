@@ -130,6 +130,19 @@ def body(sky: Sky, name: str) -> Pointed | None:
     return Pointed(BODIES, -1, name.capitalize(), _plain(vector), detail, max(sigma, 1e-3))
 
 
+def nearest_body(sky: Sky, scene: Scene) -> Pointed | None:
+    """Return the shown body nearest to the middle of the map, or None where none is on it."""
+    left, top, right, bottom = scene.frame
+    known = sky["bodies"]
+    best: tuple[float, str] | None = None
+    for name, (x, y) in zip(known.names, scene.projector.project(known.vectors), strict=True):
+        inside = left <= x <= right and top <= y <= bottom and name in sky.session.bodies
+        off = float(np.hypot(x - 0.5 * (left + right), y - 0.5 * (top + bottom)))
+        if inside and (best is None or off < best[0]):
+            best = off, name
+    return body(sky, best[1]) if best is not None and sky.session.layers.bodies else None
+
+
 def star(sky: Sky, row: int) -> Pointed:
     """Return a star of the catalogue as it stands in a sky."""
     every = names.identify(row)

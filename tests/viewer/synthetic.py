@@ -37,13 +37,7 @@ def chart(width=1920, height=1080, ratio=1.0, stars=46099, circles=8, labels=100
     layers = [
         Layer(
             "sky",
-            (
-                Areas(
-                    "sky",
-                    np.array([[left, top], [right, top], [right, bottom], [left, bottom]], dtype=np.float32),
-                    starts(4),
-                ),
-            ),
+            (Areas("sky", corners.astype(np.float32), starts(4)),),
             0,
         )
     ]

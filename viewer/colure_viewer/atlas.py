@@ -5,7 +5,7 @@ from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF
+from PySide6.QtCore import QPointF, Qt
 from PySide6.QtGui import QColor, QFontMetricsF, QImage, QPainter, QPixmap
 
 from colure_viewer.fonts import CAP_MIDDLE, font
@@ -27,8 +27,17 @@ def blank(width: int, height: int) -> QImage:
     return image
 
 
+def _clear_pixmap(width: int, height: int) -> QPixmap:
+    pixmap = QPixmap(width, height)
+    pixmap.fill(Qt.GlobalColor.transparent)
+    return pixmap
+
+
 def pixels(image: QImage) -> NDArray[np.uint8]:
-    """Return the bytes (height, width, 4) of a picture, blue green red alpha, as a writable view."""
+    """Return the bytes (height, width, 4) of a picture, blue green red alpha, as a writable view.
+
+    The view does not keep the picture alive: hold on to the picture while it is used.
+    """
     view = np.frombuffer(image.bits(), dtype=np.uint8)
     return view.reshape(image.height(), image.bytesPerLine() // 4, 4)[:, : image.width()]
 
@@ -80,18 +89,14 @@ class StarAtlas:
         self.tints = len(tints)
         self.pixmap = QPixmap.fromImage(image)
 
-    def fill(
-        self,
-        rows: F64,
-        xy: NDArray[np.float32],
-        size: NDArray[np.uint8],
-        tint: NDArray[np.uint8],
-        ratio: float,
-    ) -> None:
-        """Write the fragments (N, 10) of stars at logical pixels `xy`."""
+    def fine(self, xy: NDArray[np.float32], ratio: float) -> NDArray[np.int32]:
+        """Return logical pixels (N, 2) as whole numbers of phases of a device pixel."""
+        return np.asarray(np.rint(xy * np.float32(self.phases * ratio)).astype(np.int32))
+
+    def fill(self, rows: F64, fine: NDArray[np.int32], size: NDArray[np.uint8], tint: NDArray[np.uint8]) -> None:
+        """Write the fragments (N, 10) of stars at `fine` (N, 2)."""
         p = self.phases
-        fine = np.rint(xy * np.float32(p * ratio)).astype(np.int32)
-        bits = p.bit_length() - 1
+        bits = self.bits
         code = size.astype(np.intp)
         code *= self.tints
         code += tint
@@ -102,6 +107,11 @@ class StarAtlas:
         np.take(self.table, code, axis=0, out=rows, mode="clip")
         rows[:, :2] += fine >> bits
 
+    @property
+    def bits(self) -> int:
+        """Binary digits of a phase."""
+        return self.phases.bit_length() - 1
+
 
 def _disc(radius: float, side: int, middle: int, fraction: F64) -> F64:
     """Return coverages (phases², side, side) of a disc; row-major over the y and then the x fraction."""
@@ -110,9 +120,16 @@ def _disc(radius: float, side: int, middle: int, fraction: F64) -> F64:
     d = cells[None, :] + 0.5 - (middle + fraction[:, None])
     distance = np.sqrt(d[:, None, :, None] ** 2 + d[None, :, None, :] ** 2)
     cover = np.clip(radius + 0.5 - distance, 0.0, 1.0).reshape(len(fraction) ** 2, side, side)
+    # The rim's pixels make up the area that the whole ones inside leave.
     area = math.pi * radius * radius
-    total = cover.sum(axis=(1, 2), keepdims=True)
-    return np.asarray(np.minimum(cover * (area / np.maximum(total, 1e-9)), 1.0))
+    whole = (cover == 1.0).sum(axis=(1, 2), keepdims=True)
+    rim = cover.sum(axis=(1, 2), keepdims=True) - whole
+    scaled = np.minimum(cover * ((area - whole) / np.maximum(rim, 1e-9)), 1.0)
+    return np.where(cover == 1.0, 1.0, scaled)
+
+
+_METRIC = blank(1, 1)
+"""What text is measured on: it has the 96 dots to the inch of every picture."""
 
 
 class TextAtlas:
@@ -124,35 +141,21 @@ class TextAtlas:
 
     WIDTH = 1024
     LIMIT = 8192
+    RUNS = 256
 
     def __init__(self) -> None:
         """Start with an empty picture."""
-        self._image = blank(self.WIDTH, 256)
-        self._pixmap: QPixmap | None = None
-        self._tiles: dict[tuple[object, ...], int] = {}
-        self._table: list[tuple[float, ...]] = []
-        self._array: F64 | None = None
+        self.pixmap = _clear_pixmap(self.WIDTH, 256)
+        self._tiles: dict[tuple[object, ...], dict[str, int]] = {}
+        self._runs: dict[tuple[object, ...], NDArray[np.intp]] = {}
+        # Left, top, width, height, anchor x, anchor y in pixels of the picture; a row per tile.
+        self.table = np.zeros((256, 6))
+        self._count = 0
         self._x = self._y = self._tall = 0
-        self.generation = 0
-
-    @property
-    def pixmap(self) -> QPixmap:
-        """The picture of all tiles."""
-        if self._pixmap is None:
-            self._pixmap = QPixmap.fromImage(self._image)
-        return self._pixmap
-
-    @property
-    def table(self) -> F64:
-        """Rows left, top, width, height, anchor x, anchor y in pixels of the picture; a row per tile."""
-        if self._array is None:
-            self._array = np.array(self._table, dtype=np.float64).reshape(-1, 6)
-        return self._array
 
     def clear(self) -> None:
         """Forget every tile."""
         self.__init__()  # type: ignore[misc]
-        self.generation += 1
 
     def tiles(
         self,
@@ -161,15 +164,22 @@ class TextAtlas:
         colour: str,
         halo: str | None,
         scale: float,
-    ) -> NDArray[np.int32]:
+    ) -> NDArray[np.intp]:
         """Return the tile numbers of texts set in `face` (family, logical pixels to the em, italic, bold)."""
         style = (*face, colour, halo, scale)
-        wanted = [(text, style) for text in texts]
-        missing = [text for text, key in zip(texts, wanted, strict=True) if key not in self._tiles]
-        if missing:
-            self._render(list(dict.fromkeys(missing)), style, face, colour, halo, scale)
-        tiles = self._tiles
-        return np.fromiter((tiles[key] for key in wanted), dtype=np.int32, count=len(wanted))
+        # A steady picture asks for the same texts at every frame: their numbers are remembered as one array.
+        run = (style, tuple(texts))
+        found = self._runs.get(run)
+        if found is None:
+            known = self._tiles.setdefault(style, {})
+            missing = [text for text in texts if text not in known]
+            if missing:
+                self._render(list(dict.fromkeys(missing)), known, face, colour, halo, scale)
+            found = np.array([known[text] for text in texts], dtype=np.intp)
+            if len(self._runs) >= self.RUNS:
+                del self._runs[next(iter(self._runs))]
+            self._runs[run] = found
+        return found
 
     def _room(self, width: int, height: int) -> tuple[int, int]:
         if self._x + width > self.WIDTH:
@@ -181,7 +191,7 @@ class TextAtlas:
     def _render(
         self,
         texts: list[str],
-        style: tuple[object, ...],
+        known: dict[str, int],
         face: tuple[str, float, bool, bool],
         colour: str,
         halo: str | None,
@@ -190,7 +200,7 @@ class TextAtlas:
         """Draw texts into the picture in one batch, then grow the halos of them all at once."""
         family, em, italic, bold = face
         pen_font = font(family, em * scale, italic, bold)
-        metrics = QFontMetricsF(pen_font, self._image)
+        metrics = QFontMetricsF(pen_font, _METRIC)
         spread = 1.7 * scale if halo else 0.0
         pad = math.ceil(spread) + 2
         rise, fall = math.ceil(metrics.ascent()), math.ceil(metrics.descent())
@@ -223,22 +233,27 @@ class TextAtlas:
             spots.append((left, top, x, y + over, width, height))
             # The anchor is the middle of the advance width, half the capitals above the baseline.
             anchor = (pad + advance / 2.0, pad + rise - over - CAP_MIDDLE * em * scale)
-            self._tiles[(text, style)] = len(self._table)
-            self._table.append((left, top, width, height, *anchor))
-        bottom = self._y + self._tall
-        if bottom > self._image.height():
-            taller = blank(self.WIDTH, max(bottom, 2 * self._image.height()))
-            pixels(taller)[: self._image.height()] = pixels(self._image)
-            self._image = taller
-        source, target = pixels(sheet), pixels(self._image)
+            known[text] = self._count
+            if self._count == len(self.table):
+                self.table = np.concatenate([self.table, np.zeros_like(self.table)])
+            self.table[self._count] = (left, top, width, height, *anchor)
+            self._count += 1
+        # Painting on the pixmap itself copies only the new tiles; a new pixmap would copy the whole picture.
+        bottom, old = self._y + self._tall, self.pixmap
+        if bottom > old.height():
+            self.pixmap = _clear_pixmap(self.WIDTH, max(bottom, 2 * old.height()))
+        painter = QPainter(self.pixmap)
+        painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)
+        if self.pixmap is not old:
+            painter.drawPixmap(0, 0, old)
         for left, top, x, y, width, height in spots:
-            target[top : top + height, left : left + width] = source[y : y + height, x : x + width]
-        self._pixmap = self._array = None
+            painter.drawImage(left, top, sheet, x, y, width, height)
+        painter.end()
 
     @property
     def full(self) -> bool:
         """Whether the picture has grown so far that it should be started afresh before the next frame."""
-        return self._image.height() > self.LIMIT // 2
+        return self.pixmap.height() > self.LIMIT // 2
 
 
 def _add_halo(sheet: NDArray[np.uint8], colour: tuple[int, int, int], spread: float) -> None:

@@ -137,7 +137,7 @@ def _png(image: QImage, scene: Scene) -> bytes:
     if remarks(scene):
         image.setText("Comment", remarks(scene))
     buffer, store = _buffer()
-    if not image.save(buffer, b"PNG"):
+    if not image.save(buffer, "PNG"):  # type: ignore[call-overload]  # the stub asks for bytes, Qt for text
         raise ExportError("picture: Qt could not encode it as PNG")
     buffer.close()
     return bytes(store.data())

@@ -46,6 +46,11 @@ class Batch(Generic[P]):
             self._first = cast("P", shiboken6.wrapInstance(self._block.ctypes.data, self._kind))
         return self._first
 
+    def at(self, row: int) -> P:
+        """Return a Qt object that lies at a row of the block; valid until the block grows."""
+        address = self._block.ctypes.data + row * self._block.strides[0]
+        return cast("P", shiboken6.wrapInstance(address, self._kind))
+
 
 def lines() -> Batch[QLineF]:
     """Return an empty block of QLineF."""

@@ -5,7 +5,7 @@ from numpy.typing import NDArray
 
 F64 = NDArray[np.float64]
 
-THICKNESS = {1: 0.8, 2: 1.4, 3: 2.0}
+THICKNESS = {1: 0.8, 2: 1.3, 3: 1.8}
 """Thickness of the three weights in logical pixels."""
 
 DASH, DOT = (5.0, 3.5), (1.2, 2.6)
@@ -46,6 +46,14 @@ def normals(points: F64, starts: NDArray[np.int32]) -> F64:
     out[:, 0] = -along[:, 1] / length
     out[:, 1] = along[:, 0] / length
     return out
+
+
+def is_level(points: F64, starts: NDArray[np.int32]) -> bool:
+    """Return whether every piece of some polylines runs along a row or a column of pixels."""
+    step = points[1:] - points[:-1]
+    along = (step == 0.0).any(axis=1)
+    along[starts[1:-1] - 1] = True
+    return bool(along.all())
 
 
 def dashes(points: F64, starts: NDArray[np.int32], stroke: float, gap: float) -> F64:

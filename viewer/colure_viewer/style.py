@@ -46,8 +46,9 @@ def sheet(theme: Theme) -> str:
     """Return the style sheet of a theme: thin rules, no shadows, one grid."""
     c = theme.colour
     return f"""
-    QWidget#heading, QLabel#heading {{ font-family: "{fonts.SERIF}"; font-weight: bold; color: {c("ink")};
-        padding: 6px 0 2px 0; }}
+    QLabel#heading, QLabel#bar {{ font-family: "{fonts.SERIF}"; font-weight: bold; color: {c("ink")};
+        qproperty-indent: 0; }}
+    QLabel#heading {{ padding: 7px 0 2px 0; }}
     QLabel#muted {{ color: {c("muted")}; }}
     QLabel#fault {{ background: {c("field")}; color: {c("fault")}; border: 1px solid {c("fault")}; padding: 5px 8px; }}
     QLabel#notice {{ color: {c("fault")}; }}
@@ -72,6 +73,12 @@ def sheet(theme: Theme) -> str:
     QHeaderView::section {{ background: {c("panel")}; color: {c("muted")}; border: 0;
         border-bottom: 1px solid {c("rule")}; padding: 2px 4px; }}
     QHeaderView {{ background: {c("panel")}; border: 0; }}
+    QTableView {{ selection-background-color: {mix(c("accent"), c("field"), 0.82)};
+        selection-color: {c("ink")}; outline: 0; }}
+    QScrollBar:vertical {{ background: {c("window")}; width: 9px; margin: 0; border: 0; }}
+    QScrollBar::handle:vertical {{ background: {c("rule")}; min-height: 30px; }}
+    QScrollBar::add-line:vertical, QScrollBar::sub-line:vertical {{ height: 0; }}
+    QScrollBar::add-page:vertical, QScrollBar::sub-page:vertical {{ background: none; }}
     QScrollArea, QScrollArea > QWidget > QWidget#column {{ background: {c("window")}; border: 0; }}
     QMenuBar {{ background: {c("window")}; color: {c("ink")}; }}
     QMenuBar::item:selected, QMenu::item:selected {{ background: {c("accent")}; color: {c("on.accent")}; }}
@@ -80,6 +87,11 @@ def sheet(theme: Theme) -> str:
     QStatusBar::item {{ border: 0; }}
     QToolTip {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")}; padding: 3px; }}
     QCheckBox {{ spacing: 6px; }}
+    QCheckBox::indicator, QTableView::indicator {{ width: 7px; height: 7px; padding: 2px;
+        border: 1px solid {c("muted")}; background: {c("field")}; background-clip: content; }}
+    QCheckBox::indicator:checked, QTableView::indicator:checked {{ background: {c("ink")};
+        background-clip: content; }}
+    QCheckBox::indicator:focus {{ border-color: {c("accent")}; }}
     QCheckBox:focus {{ color: {c("accent")}; }}
     """
 

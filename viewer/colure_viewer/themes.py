@@ -95,7 +95,7 @@ class Theme:
         ground = self.roles["sky"]
         if self.mono:
             # Eight colours become reds between the faintest readable one and full red.
-            colour = mix("#B40000", "#FF0000", luminance(colour) ** 0.5)
+            colour = mix("#BC0000", "#FF0000", luminance(colour) ** 0.5)
             if least < TEXT:
                 return colour
             return colour if contrast(colour, ground) >= TEXT else "#F40000"

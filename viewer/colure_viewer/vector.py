@@ -63,7 +63,7 @@ def _draw_mark(mark: marks.Mark, theme: Theme, painter: QPainter) -> None:
 
 
 def _pen(colour: str, weight: int) -> QPen:
-    pen = QPen(QColor(colour), strokes.THICKNESS[weight] * 0.9)
+    pen = QPen(QColor(colour), strokes.THICKNESS[weight])
     pen.setCapStyle(Qt.PenCapStyle.FlatCap)
     pen.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
     return pen

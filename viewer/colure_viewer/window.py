@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     from colure.targets import Target
     from colure_viewer.panels.sides import LeftSide, RightSide, TopBar
 
-LEFT, RIGHT, TOP = 252, 308, 72
+LEFT, RIGHT, TOP = 256, 318, 68
 """Room kept for the panels before they are there, in logical pixels."""
 RECENT = 8
 NOTICE_MS = 8000
@@ -64,7 +64,7 @@ class Window(QMainWindow):
         self._hover.setAccessibleName("Under the pointer")
         self.statusBar().addWidget(self._hover, 1)
         self.statusBar().setSizeGripEnabled(False)
-        self.setMinimumSize(QSize(960, 640))
+        self.setMinimumSize(QSize(1000, 660))
         self.actions_by_name: dict[str, QAction | QMenu] = {}
         desk.checker = self.chart.check
         desk.changed.connect(self._changed)
@@ -105,6 +105,15 @@ class Window(QMainWindow):
         for name in ("toggle_left", "toggle_right"):
             self._check(name, True)
         self._changed(False)
+        self._select_nearest_body()
+
+    def _select_nearest_body(self) -> None:
+        """Begin with the body nearest to the middle of the chart, so that the panels have something to show."""
+        from colure import pointing
+
+        found = pointing.nearest_body(self.chart.sky, self.chart.scene)
+        if self.desk.selection is None and found is not None:
+            self.desk.select(found)
 
     def _check(self, name: str, on: bool) -> None:
         action = self.actions_by_name.get(name)

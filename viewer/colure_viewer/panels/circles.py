@@ -77,7 +77,7 @@ class CirclesPanel(QWidget):
         self.table.itemSelectionChanged.connect(self._chosen)
         self.add_button = self._button("Add", "Add a circle", self.add)
         self.remove_button = self._button("Remove", "Remove the chosen circle", self.remove)
-        self.colour_button = self._button("Colour…", "Change the colour of the chosen circle", self.recolour)
+        self.colour_button = self._button("Colour", "Change the colour of the chosen circle", self.recolour)
         self.plane = self._combo("Plane", PLANES)
         self.kind = self._combo("Kind", ())
         self.model = self._combo("Precession model", MODELS)
@@ -134,6 +134,8 @@ class CirclesPanel(QWidget):
         combo.addItems(list(items))
         combo.setAccessibleName(name)
         combo.setToolTip(name)
+        combo.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
+        combo.setMinimumContentsLength(6)
         combo.activated.connect(self._parts)
         return combo
 

@@ -1,5 +1,7 @@
 """The selected direction in every frame, with copy; and what was measured."""
 
+import re
+
 import numpy as np
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QGuiApplication
@@ -20,6 +22,11 @@ from colure import everyframe
 from colure_viewer.desk import Desk
 
 EMPTY = "Click a star, a body or any point of the chart, or search for a name, to see its direction in every frame."
+
+
+def frame_words(name: str) -> str:
+    """Return a frame's name as words, years before 0 with a true minus."""
+    return re.sub(r" -(?=\d)", " −", name.replace("/", " "))
 
 
 class DirectionPanel(QWidget):
@@ -96,16 +103,11 @@ class DirectionPanel(QWidget):
         self.detail.setText("\n".join(part for part in (selection.detail, f"{session.place} place") if part))
         self.table.setRowCount(len(self.rows))
         for number, row in enumerate(self.rows):
-            cells = (
-                row.frame.replace("/", " ").replace("-", "−")
-                if "fk4" not in row.frame
-                else row.frame.replace("/", " "),
-                f"{row.lon_name} {row.lon_text}",
-                f"{row.lat_name} {row.lat_text}",
-            )
+            cells = (frame_words(row.frame), row.lon_text, row.lat_text)
             for column, text in enumerate(cells):
                 item = QTableWidgetItem(text)
-                item.setToolTip(row.fault or row.label)
+                position = f"{row.lon_name} {row.lon_text}  {row.lat_name} {row.lat_text}"
+                item.setToolTip(row.fault or f"{row.label}\n{position}")
                 if column:
                     item.setTextAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
                 self.table.setItem(number, column, item)

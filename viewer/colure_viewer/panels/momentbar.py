@@ -63,7 +63,7 @@ class MomentBar(QWidget):
         row.setSpacing(4)
         label = QLabel("&Moment", self)
         label.setBuddy(self.field)
-        label.setObjectName("heading")
+        label.setObjectName("bar")
         for part in (label, self.field, self.scale, self.back, self.step, self.forth):
             row.addWidget(part, 1 if part is self.field else 0)
         row.addSpacing(6)
@@ -186,7 +186,7 @@ class SiteBar(QWidget):
         row.setSpacing(4)
         label = QLabel("&Site", self)
         label.setBuddy(self.field)
-        label.setObjectName("heading")
+        label.setObjectName("bar")
         row.addWidget(label)
         row.addWidget(self.field, 1)
         desk.changed.connect(self._show)

@@ -38,7 +38,7 @@ class SearchBar(QWidget):
         row.setSpacing(4)
         label = QLabel("F&ind", self)
         label.setBuddy(self.field)
-        label.setObjectName("heading")
+        label.setObjectName("bar")
         row.addWidget(label)
         row.addWidget(self.field, 1)
 

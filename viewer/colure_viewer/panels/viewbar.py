@@ -55,9 +55,7 @@ class ViewBar(QWidget):
         self.centre.setMinimumWidth(150)
         self.up = self._combo("Which way is up", list(UPS), self._turn_up)
         self.east = QToolButton(self)
-        self.east.setCheckable(True)
         self.east.setToolTip("East to the left, as on the sky, or to the right, as on a map")
-        self.east.setAccessibleName("East to the left")
         self.east.clicked.connect(self._flip)
         self.width_field = Entry("Width of the map in degrees", self._typed_width, self)
         self.width_field.setFixedWidth(66)
@@ -80,7 +78,7 @@ class ViewBar(QWidget):
                 label = QLabel(text, self)
                 label.setBuddy(part)
                 if text == "&View":
-                    label.setObjectName("heading")
+                    label.setObjectName("bar")
                 row.addWidget(label)
             row.addWidget(part, stretch)
         desk.changed.connect(self._show)
@@ -107,8 +105,8 @@ class ViewBar(QWidget):
             self.up.addItem(view.up, view.up)
             at = self.up.count() - 1
         self.up.setCurrentIndex(at)
-        self.east.setChecked(view.east_left)
-        self.east.setText("E left" if view.east_left else "E right")
+        self.east.setText("east left" if view.east_left else "east right")
+        self.east.setAccessibleName(f"Mirror the chart: now {self.east.text()}")
         self.centre.show_value(centre_text(view.centre))
         self.width_field.show_value(width_text(view.width_deg))
         self.limit.show_value(AUTO if view.limit_mag is None else angles.format_number(view.limit_mag, 1))
@@ -132,7 +130,7 @@ class ViewBar(QWidget):
         self._say(self._view("turn the chart", up=self.up.currentData()))
 
     def _flip(self) -> None:
-        self._say(self._view("mirror the chart", east_left=self.east.isChecked()))
+        self._say(self._view("mirror the chart", east_left=not self._desk.session.view.east_left))
 
     def _set_place(self) -> None:
         place = self.place.currentData()

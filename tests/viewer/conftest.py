@@ -1,0 +1,6 @@
+"""Lets the viewer's tests import the made-up chart beside them."""
+
+import sys
+from pathlib import Path
+
+sys.path.insert(0, str(Path(__file__).parent))
