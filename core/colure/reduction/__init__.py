@@ -9,12 +9,15 @@ from colure.reduction.observer import (
     observer_state,
 )
 from colure.reduction.starpath import (
+    STAR_STEPS,
     StarContext,
     apply_context,
+    context_of,
     reduce_stars,
     space_motion,
     space_velocity,
     star_context,
+    unapply,
     unreduce,
 )
 from colure.reduction.steps import GEOMETRY, OPTICS, PLACES
@@ -26,17 +29,20 @@ __all__ = [
     "OPTICS",
     "ORIGINS",
     "PLACES",
+    "STAR_STEPS",
     "Directions",
     "Observer",
     "ObserverState",
     "StarContext",
     "TraceEntry",
     "apply_context",
+    "context_of",
     "observer_state",
     "reduce_bodies",
     "reduce_stars",
     "space_motion",
     "space_velocity",
     "star_context",
+    "unapply",
     "unreduce",
 ]

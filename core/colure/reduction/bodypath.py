@@ -8,11 +8,12 @@ import numpy as np
 
 from colure.arrays import Float, norm
 from colure.ephemeris import Ephemeris, default
-from colure.errors import BodyError, ColureError, FrameError, near_names
+from colure.errors import BodyError, FrameError, near_names
 from colure.moment import Moment
-from colure.reduction.observer import C_AU_DAY, Observer, ObserverState, is_centre, place_observer
+from colure.reduction.observer import C_AU_DAY, Observer, ObserverState, eye, is_centre, place_observer
 from colure.reduction.optics import dot3
-from colure.reduction.steps import PLACES, State, Step, path
+from colure.reduction.steps import PLACES, State, Step, check_omitted, path
+from colure.reduction.steps import names as names_on_the_way
 
 BLOCK = 1024
 """Moments worked on at a time: with ten bodies every array of the steps then stays in the processor's cache."""
@@ -81,8 +82,8 @@ def reduce_bodies(
     """Return the directions of bodies at moments of any shape.
 
     `place`: "geometric" (where the body is now), "astrometric" (where its light left it), "apparent" (bent by the Sun
-    and turned by aberration) or "observed" (lifted by the air, needs a site). `omit` names steps to leave out;
-    `trace`, a list, receives the direction after every step and part of a step.
+    and turned by aberration) or "observed" (lifted by the air, needs a site). `omit` names steps to leave out, or
+    the annual or diurnal part of one; `trace`, a list, receives the direction after every step and part of a step.
     """
     check_place(place, observer)
     source = ephemeris if ephemeris is not None else default()
@@ -95,12 +96,7 @@ def reduce_bodies(
                 f"body '{body}' has no direction from origin '{observer.origin}': it is where the observer is"
             )
     geometry, optics = path(place)
-    known = {step.name for step in geometry + optics}
-    if not set(omit) <= known:
-        unknown = sorted(set(omit) - known)
-        raise ColureError(
-            f"reduction: no step '{unknown[0]}' on the way to the {place} place; known: {', '.join(known)}"
-        )
+    check_omitted(omit, names_on_the_way(place), place)
 
     shape = moment.shape
     centre = "earth" if observer.origin == "site" else observer.origin
@@ -113,6 +109,7 @@ def reduce_bodies(
     else:
         middle = (pos[names.index(centre)], vel[names.index(centre)])
     observed_from = place_observer(observer, moment, middle, sun)
+    eye_pos, eye_vel = eye(observed_from, omit)
 
     count = math.prod(shape)
     nb = len(bodies)
@@ -124,7 +121,8 @@ def reduce_bodies(
         "centre_pos": observed_from.centre_pos.reshape(1, count, 3),
         "centre_vel": observed_from.centre_vel.reshape(1, count, 3),
         "observer_pos": observed_from.pos.reshape(1, count, 3),
-        "observer_vel": observed_from.vel.reshape(1, count, 3),
+        "eye_pos": eye_pos.reshape(1, count, 3),
+        "eye_vel": eye_vel.reshape(1, count, 3),
     }
     zenith = None if observed_from.zenith is None else observed_from.zenith.reshape(1, count, 3)
     is_sun = tuple(body == "sun" for body in bodies)

@@ -1,5 +1,6 @@
 """Who looks: the observer's barycentric place and velocity, and the Sun's, at each moment."""
 
+from collections.abc import Collection
 from dataclasses import dataclass
 
 import numpy as np
@@ -101,6 +102,27 @@ def place_observer(
     matrix = sidereal.terrestrial_matrix(moment, polar_motion=observer.polar_motion, model=observer.model)
     offset, motion, zenith = _site_vectors(observer.site, matrix)
     return ObserverState(centre[0] + offset, centre[1] + motion, centre[0], centre[1], sun[0], sun[1], zenith, matrix)
+
+
+def eye(state: ObserverState, omit: Collection[str] = ()) -> tuple[Float, Float]:
+    """Return the position and the velocity (*shape, 3) with which an observer sees, less the parts that `omit` names.
+
+    Parallax and aberration each have an annual part, that of the centre, and a diurnal one, that of the site about it.
+    """
+    return (
+        _less(state.pos, state.centre_pos, "parallax", omit),
+        _less(state.vel, state.centre_vel, "aberration", omit),
+    )
+
+
+def _less(whole: Float, centre: Float, name: str, omit: Collection[str]) -> Float:
+    if not omit:
+        return whole
+    annual = name in omit or f"annual {name}" in omit
+    diurnal = name in omit or f"diurnal {name}" in omit
+    if annual and diurnal:
+        return np.zeros_like(whole)
+    return whole - centre if annual else centre if diurnal else whole
 
 
 def is_centre(observer: Observer, body: str) -> bool:

@@ -4,6 +4,7 @@ The context holds everything that does not depend on the star, so that a star co
 number type of the stars is kept: float64 to the milliarcsecond and below, float32 (0.07″) for charts.
 """
 
+from collections.abc import Collection
 from dataclasses import dataclass
 from threading import local
 
@@ -15,8 +16,9 @@ from colure.arrays import Float, unit
 from colure.ephemeris import Ephemeris
 from colure.moment import Moment
 from colure.reduction.bodypath import GEOCENTRE, check_place
-from colure.reduction.observer import C_AU_DAY, Observer, observer_state
+from colure.reduction.observer import C_AU_DAY, Observer, ObserverState, eye, observer_state
 from colure.reduction.optics import DEFLECTION_LIMIT, FAR_AU, SCHWARZSCHILD_AU, refracted
+from colure.reduction.steps import PARTED, check_omitted
 
 J2000 = 2451545.0
 YEAR = 365.25
@@ -24,6 +26,18 @@ KM_S_AU_YR = 86400.0 * YEAR / 149597870.700
 """km/s in au per Julian year."""
 BLOCK = 16384
 """Stars worked on at a time: every array of the arithmetic then stays in the cache."""
+
+STAR_STEPS = (
+    "space motion",
+    "annual parallax",
+    "diurnal parallax",
+    "light time",
+    "deflection",
+    "annual aberration",
+    "diurnal aberration",
+    "refraction",
+)
+"""What happens to the direction of a star, in order: the names that `omit` may hold."""
 
 Stars = NDArray[np.floating]
 
@@ -34,7 +48,7 @@ class StarContext:
 
     place: str
     years: float
-    roemer_years_per_au: float
+    roemer_years: Float
     observer_au: Float
     velocity: Float
     towards_observer: Float
@@ -81,31 +95,48 @@ def star_context(
     epoch_jd: float = J2000,
     rotation: Float | None = None,
     ephemeris: Ephemeris | None = None,
+    omit: Collection[str] = (),
 ) -> StarContext:
     """Return the context of one moment; `epoch_jd` (TDB) is that of the stars' positions.
 
     `rotation` (3, 3), from ICRS axes to a frame, is applied in the same pass. From the geocentre at the geometric
-    place a star has only its space motion.
+    place a star has only its space motion. `omit` names steps of STAR_STEPS to leave out: a context without the last
+    steps gives the direction before them, which is how the ledger traces this path. A star's light time is Rømer's:
+    light reaches the near side of the Earth's orbit earlier.
     """
     check_place(place, observer)
-    state = observer_state(observer, moment, ephemeris)
+    check_omitted(omit, (*STAR_STEPS, *PARTED), place)
+    return context_of(observer_state(observer, moment, ephemeris), moment, observer, place, epoch_jd, rotation, omit)
+
+
+def context_of(
+    state: ObserverState,
+    moment: Moment,
+    observer: Observer,
+    place: str,
+    epoch_jd: float = J2000,
+    rotation: Float | None = None,
+    omit: Collection[str] = (),
+) -> StarContext:
+    """Return the context of an observer whose state is already known; see `star_context`."""
     jd1, jd2 = moment.tdb
     from_sun = state.pos - state.sun_pos
     distance = float(np.sqrt(from_sun @ from_sun))
     near = distance <= FAR_AU
+    eye_pos, eye_vel = eye(state, omit)
     return StarContext(
         place=place,
-        years=(float(jd1) - epoch_jd + float(jd2)) / YEAR,
-        roemer_years_per_au=1.0 / (C_AU_DAY * YEAR),
-        observer_au=state.pos,
-        velocity=state.vel / C_AU_DAY,
+        years=0.0 if "space motion" in omit else (float(jd1) - epoch_jd + float(jd2)) / YEAR,
+        roemer_years=state.pos * (0.0 if {"light time", "space motion"} & set(omit) else 1.0 / (C_AU_DAY * YEAR)),
+        observer_au=eye_pos,
+        velocity=eye_vel / C_AU_DAY,
         towards_observer=np.zeros(3) if near else from_sun / distance,
-        weight=0.0 if near else SCHWARZSCHILD_AU / distance,
+        weight=0.0 if near or "deflection" in omit else SCHWARZSCHILD_AU / distance,
         limit=DEFLECTION_LIMIT / max(distance * distance, 1.0),
         potential=0.0 if near else SCHWARZSCHILD_AU / distance,
         rotation=rotation,
         zenith=state.zenith,
-        air=observer.atmosphere if place == "observed" else None,
+        air=observer.atmosphere if place == "observed" and "refraction" not in omit else None,
     )
 
 
@@ -146,7 +177,7 @@ class _Constants:
         self.rows = np.vstack([e, v, matrix]).astype(dtype)
         self.e, self.v = (matrix @ e).astype(dtype), (matrix @ v).astype(dtype)
         self.observer = context.observer_au.astype(dtype)[:, None]
-        self.roemer = (context.observer_au * context.roemer_years_per_au).astype(dtype)
+        self.roemer = context.roemer_years.astype(dtype)
         self.years, self.weight, self.limit = kind(context.years), kind(context.weight), kind(context.limit)
         self.ev, self.half = kind(e @ v), kind(1.0 / (1.0 + inverse_gamma))
         self.potential, self.inverse_gamma = kind(context.potential), kind(inverse_gamma)
@@ -291,7 +322,11 @@ def unreduce(
     The inverse of `reduce_stars` without motion and parallax, by iteration to 1e-13 rad; close to the Sun's disc,
     where deflection is not one-to-one, to 1″.
     """
-    context = star_context(moment, observer=observer, place=place, ephemeris=ephemeris)
+    return unapply(star_context(moment, observer=observer, place=place, ephemeris=ephemeris), directions)
+
+
+def unapply(context: StarContext, directions: Float) -> Float:
+    """Return the directions (n, 3) that a context turns into `directions`; see `unreduce`."""
     wanted = unit(np.atleast_2d(np.asarray(directions, dtype=np.float64)))
     guess = wanted
     for _ in range(50):  # three or four without refraction; near the horizon each gains but a factor of three

@@ -4,13 +4,14 @@ The one path of `reduce_bodies` runs these and nothing else; a trace of it is th
 are component first, (3, bodies, moments).
 """
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection, Sequence
 from dataclasses import dataclass
 from functools import cache
 
 import numpy as np
 
 from colure.arrays import Float
+from colure.errors import ColureError
 from colure.reduction.observer import C_AU_DAY
 from colure.reduction.optics import aberrated, deflected, dot3, refracted
 from colure.refraction import Atmosphere
@@ -24,7 +25,8 @@ class State:
     """What the steps work on. All vectors (3, bodies, moments) or (3, 1, moments), ICRS axes, au and au/day.
 
     `vector` is the direction so far: from the observer to the body, in au during the geometric steps and of unit
-    length during the optical ones. Steps replace it, never change it in place.
+    length during the optical ones. Steps replace it, never change it in place. `eye_pos` and `eye_vel` are the
+    observer's own place and motion as parallax and aberration take them, less what is left out.
     """
 
     body_pos: Float
@@ -34,7 +36,8 @@ class State:
     centre_pos: Float
     centre_vel: Float
     observer_pos: Float
-    observer_vel: Float
+    eye_pos: Float
+    eye_vel: Float
     is_sun: tuple[bool, ...]
     has_site: bool
     zenith: Float | None
@@ -61,7 +64,7 @@ def barycentric(state: State) -> None:
 
 def parallax(state: State) -> None:
     """Move the origin to the observer: annual and diurnal parallax in one."""
-    state.vector = state.body_pos - state.observer_pos
+    state.vector = state.body_pos - state.eye_pos
 
 
 def parallax_parts(state: State) -> tuple[tuple[str, Float], ...]:
@@ -69,7 +72,7 @@ def parallax_parts(state: State) -> tuple[tuple[str, Float], ...]:
     centre = state.body_pos - state.centre_pos
     if not state.has_site:
         return (("parallax", centre),)
-    return (("annual parallax", centre), ("diurnal parallax", state.body_pos - state.observer_pos))
+    return (("annual parallax", centre), ("diurnal parallax", state.body_pos - state.eye_pos))
 
 
 def light_time(state: State) -> None:
@@ -112,16 +115,16 @@ def _sun_distance(state: State) -> Float:
 
 def aberration(state: State) -> None:
     """Turn the direction towards the observer's barycentric motion: annual and diurnal aberration in one."""
-    state.vector = aberrated(state.vector, state.observer_vel, _sun_distance(state))
+    state.vector = aberrated(state.vector, state.eye_vel, _sun_distance(state))
 
 
 def aberration_parts(state: State) -> tuple[tuple[str, Float], ...]:
     """Return the direction with the motion of the Earth's centre alone, then with the site's."""
     if not state.has_site:
-        return (("aberration", aberrated(state.vector, state.observer_vel, _sun_distance(state))),)
+        return (("aberration", aberrated(state.vector, state.eye_vel, _sun_distance(state))),)
     return (
         ("annual aberration", aberrated(state.vector, state.centre_vel, _sun_distance(state))),
-        ("diurnal aberration", aberrated(state.vector, state.observer_vel, _sun_distance(state))),
+        ("diurnal aberration", aberrated(state.vector, state.eye_vel, _sun_distance(state))),
     )
 
 
@@ -146,6 +149,8 @@ OPTICS = (
 """Steps on unit directions."""
 
 PLACES = ("geometric", "astrometric", "apparent", "observed")
+PARTED = ("parallax", "aberration")
+"""Steps with an annual and a diurnal part, each of which can be left out alone."""
 _LAST = {"geometric": "parallax", "astrometric": "light time", "apparent": "aberration", "observed": "refraction"}
 
 
@@ -156,3 +161,19 @@ def path(place: str) -> tuple[tuple[Step, ...], tuple[Step, ...]]:
     names = [step.name for step in steps]
     used = steps[: names.index(_LAST[place]) + 1]
     return tuple(s for s in used if s in GEOMETRY), tuple(s for s in used if s in OPTICS)
+
+
+@cache
+def names(place: str) -> tuple[str, ...]:
+    """Return every name that `omit` may hold on the way to a place: the steps and their parts."""
+    steps = [step.name for group in path(place) for step in group]
+    return (*steps, *(f"{part} {name}" for name in steps if name in PARTED for part in ("annual", "diurnal")))
+
+
+def check_omitted(omit: Collection[str], known: Sequence[str], place: str) -> None:
+    """Raise ColureError for a name in `omit` that no step has on the way to a place."""
+    unknown = sorted(set(omit) - set(known))
+    if unknown:
+        raise ColureError(
+            f"reduction: no step '{unknown[0]}' on the way to the {place} place; known: {', '.join(known)}"
+        )
