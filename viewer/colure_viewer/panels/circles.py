@@ -234,13 +234,15 @@ class CirclesPanel(QWidget):
             return
         old, plane = Frame.parse(circle.frame), self.plane.currentText()
         model = self.model.currentText()
-        if plane != old.plane:
-            kinds = KINDS.get(plane, ())
-            text = frame_text(plane, kinds[0] if kinds else NONE, "", MODELS[0])
-        elif self.kind.currentText() != (old.kind or NONE):
-            text = frame_text(plane, self.kind.currentText(), "", MODELS[0])
+        kinds = KINDS.get(plane, ())
+        kind = self.kind.currentText() if plane == old.plane else (kinds[0] if kinds else NONE)
+        if (plane, kind) == (old.plane, old.kind or NONE):
+            text = frame_text(plane, kind, old.equinox or NONE, model)
         else:
-            text = frame_text(plane, old.kind or NONE, old.equinox or NONE, model)
+            # An equinox goes over from kind to kind where both take any; the others have their own by default.
+            free = kind in ("mean", "true")
+            kept = old.equinox if old.kind in ("mean", "true") and old.equinox else "date"
+            text = frame_text(plane, kind, kept if free else NONE, MODELS[0])
         reason = self._change("change a circle", frame=text)
         if reason is not None:
             self._desk.faulted.emit(reason)

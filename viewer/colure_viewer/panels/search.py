@@ -1,8 +1,9 @@
 """Search by name: a field that completes, and selects and shows what was found."""
 
 from collections.abc import Callable
+from threading import Thread
 
-from PySide6.QtCore import QStringListModel, Qt
+from PySide6.QtCore import QEvent, QObject, QStringListModel, Qt
 from PySide6.QtWidgets import QCompleter, QHBoxLayout, QLabel, QWidget
 
 from colure import lookup
@@ -33,6 +34,8 @@ class SearchBar(QWidget):
         self.field.setCompleter(completer)
         completer.activated.connect(self._picked)
         self.field.textEdited.connect(self._complete)
+        self._reading: Thread | None = None
+        self.field.installEventFilter(self)
         row = QHBoxLayout(self)
         row.setContentsMargins(0, 0, 0, 0)
         row.setSpacing(4)
@@ -42,7 +45,16 @@ class SearchBar(QWidget):
         row.addWidget(label)
         row.addWidget(self.field, 1)
 
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        """Read the tables of names beside the window as soon as the field is entered, before the first letter."""
+        if event.type() == QEvent.Type.FocusIn and self._reading is None:
+            self._reading = Thread(target=lookup.prepare, daemon=True)
+            self._reading.start()
+        return False
+
     def _complete(self, text: str) -> None:
+        if self._reading is not None and self._reading.is_alive():
+            return
         self._names.setStringList([target.name for target in lookup.search(text, most=MOST)] if text.strip() else [])
 
     def _picked(self, text: str) -> None:

@@ -28,7 +28,7 @@ LAYERS = (
     ("milky_way", "Milky Way"),
     ("constellation_names", "constellations"),
     ("edges", "their edges"),
-    ("bodies", "Sun, Moon, planets"),
+    ("bodies", "bodies"),
     ("points", "equinoxes, poles"),
 )
 

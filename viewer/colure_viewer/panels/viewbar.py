@@ -37,10 +37,12 @@ def parse_centre(text: str, now: Centre) -> Centre:
     words = text.split()
     if len(words) == 1 and words[0].casefold() in BODIES:
         return replace(now, body=words[0].casefold())
-    if len(words) > 2 and words[-1].partition("/")[0] in PLANES:
+    name = now.frame
+    if len(words) > 2 and ("/" in words[-1] or words[-1] in PLANES):
         # The frame may stand last, as the field itself shows it, or first, as everywhere.
-        text = " ".join([words[-1], *words[:-1]])
-    frame, lon, lat = lookup.position(text, now.frame)
+        name = str(Frame.parse(words[-1]))
+        text = " ".join(words[:-1])
+    frame, lon, lat = lookup.position(text, name)
     return Centre(str(frame), lon, lat)
 
 
