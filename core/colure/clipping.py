@@ -16,6 +16,8 @@ from colure.marks import F32, I32
 from colure.projections import Projector, Real
 
 Rect = tuple[float, float, float, float]
+FAR = 4096.0
+"""Pixels outside the map beyond which lines and areas are cut on the page too, because painters lose large numbers."""
 _PARTS = 48
 """Pieces that an arc is divided into where it swings over the page."""
 
@@ -51,13 +53,16 @@ class Window:
         """Angle from the centre of the page that covers the map, in radians; π where it may be anywhere."""
         if not self.projector.projection.unrolled:
             return self.cap
-        xs = np.linspace(self.rect[0], self.rect[2], 9)
-        ys = np.linspace(self.rect[1], self.rect[3], 9)
-        grid = np.stack(np.meshgrid(xs, ys), axis=-1).reshape(-1, 2)
-        sky = self.projector.unproject(grid)
-        if np.isnan(sky).any():
+        xs = np.linspace(self.rect[0], self.rect[2], 13)
+        ys = np.linspace(self.rect[1], self.rect[3], 13)
+        sky = self.projector.unproject(np.stack(np.meshgrid(xs, ys), axis=-1).reshape(-1, 2))
+        on = np.isfinite(sky[:, 0])
+        if not on.any():
             return float(np.pi)
-        return float(np.arccos(np.clip(sky @ self.centre, -1.0, 1.0)).max()) * 1.05
+        chord = float(np.linalg.norm(sky[on] - self.centre, axis=1).max())
+        # The farthest point may lie between the samples, and where the sky ends on the page, well between.
+        margin = 1.05 if on.all() else 1.4
+        return min(2.0 * float(np.arcsin(min(0.5 * chord, 1.0))) * margin, float(np.pi))
 
     @cached_property
     def centre(self) -> Float:
@@ -124,12 +129,44 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
     whole, pieces, owner = _segments(window, camera, joined)
     x, y = window.projector.to_page(camera)
     whole &= _seen(window.rect, x[:-1], y[:-1], x[1:], y[1:])
-    if not len(owner):
-        return Trace(x, y, whole, np.empty((0, 2), np.float32), owner)
-    cx, cy = window.projector.to_page(pieces)
-    seen = _seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2])
-    both = np.repeat(seen, 2)
-    return Trace(x, y, whole, np.stack([cx[both], cy[both]], axis=1).astype(np.float32), owner[seen])
+    ends = np.empty((0, 4))
+    if len(owner):
+        cx, cy = window.projector.to_page(pieces)
+        seen = _seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2])
+        ends = np.stack([cx[::2], cy[::2], cx[1::2], cy[1::2]], axis=1)[seen]
+        owner = owner[seen]
+    # Painters lose large coordinates: the few segments that reach far out are cut at the rectangle.
+    far = np.flatnonzero(whole)
+    far = far[_far(window.rect, x[far], y[far]) | _far(window.rect, x[far + 1], y[far + 1])] if len(far) else far
+    if len(far):
+        whole[far] = False
+        more = np.stack([x[far], y[far], x[far + 1], y[far + 1]], axis=1).astype(np.float64)
+        ends, owner = np.concatenate([ends, more]), np.concatenate([owner, far])
+    if len(owner):
+        ends, kept = _boxed(ends, window.rect)
+        owner = owner[kept]
+    return Trace(x, y, whole, ends.reshape(-1, 2).astype(np.float32), owner)
+
+
+def _far(rect: Rect, x: Real, y: Real) -> Bool:
+    left, top, right, bottom = rect
+    return np.asarray((x < left - FAR) | (x > right + FAR) | (y < top - FAR) | (y > bottom + FAR))
+
+
+def _boxed(ends: Float, rect: Rect) -> tuple[Float, NDArray[np.intp]]:
+    """Return the parts of page segments (N, 4) within a rectangle, and the numbers of those that have one."""
+    start, way = ends[:, :2], ends[:, 2:] - ends[:, :2]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        near = (np.array(rect[:2]) - start) / way
+        beyond = (np.array(rect[2:]) - start) / way
+    # A segment along an axis stays on one side of the other's two limits; it has been seen, so it is within them.
+    still = way == 0.0
+    enter = np.where(still, 0.0, np.minimum(near, beyond)).max(axis=1)
+    leave = np.where(still, 1.0, np.maximum(near, beyond)).min(axis=1)
+    t0, t1 = np.maximum(enter, 0.0), np.minimum(leave, 1.0)
+    kept = np.flatnonzero(t1 > t0)
+    start, way = start[kept], way[kept]
+    return np.concatenate([start + t0[kept, None] * way, start + t1[kept, None] * way], axis=1), kept
 
 
 def lines(window: Window, camera: Real, starts: I32) -> tuple[F32, I32]:

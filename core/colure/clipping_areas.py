@@ -14,14 +14,13 @@ from itertools import pairwise
 import numpy as np
 
 from colure.arrays import Bool, Float, Int
-from colure.clipping import Rect, Window, cut_segments
+from colure.clipping import FAR, Rect, Window, cut_segments
 from colure.marks import F32, I32
 
 RIM_STEP = np.radians(1.0)
-"""Spacing of the points put along the rim of an area that is cut there."""
-
-_FAR = 4096.0
-"""Pixels outside the map beyond which rings are cut on the page too, because painters lose large coordinates."""
+"""Widest spacing of the points put along the rim of an area that is cut there."""
+_FINEST = 6
+"""How often that spacing is halved at most, for small fields."""
 
 
 def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F32, I32]:
@@ -46,7 +45,7 @@ def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F
     points = np.stack([x, y], axis=1)
     ends = np.concatenate([[0], np.cumsum([ring.shape[1] for ring in rings])])
     left, top, right, bottom = window.rect
-    if points.min() < min(left, top) - _FAR or points.max() > max(right, bottom) + _FAR:
+    if points.min() < min(left, top) - FAR or points.max() > max(right, bottom) + FAR:
         points, ends = _boxed(points, ends, window.rect)
     return points.astype(np.float32), ends.astype(np.int32)
 
@@ -60,7 +59,7 @@ def rim_ring(window: Window) -> F32 | None:
     x, y = window.projector.to_page(rim.between(-1.0, rim.length))
     left, top, right, bottom = window.rect
     points = np.stack([x, y], axis=1)
-    if max(np.abs(points[:, 0]).max(), np.abs(points[:, 1]).max()) > _FAR + max(right, bottom):
+    if max(np.abs(points[:, 0]).max(), np.abs(points[:, 1]).max()) > FAR + max(right, bottom):
         points, ends = _boxed(points, np.array([0, len(points)]), window.rect)
         if not len(points):
             return None
@@ -111,6 +110,9 @@ class _Rim:
         self.window = window
         self.unrolled = window.projector.projection.unrolled
         self.cap = window.cap
+        # About 16 pixels at the centre's scale. A cap's rim is out of sight when the field is small.
+        fine = np.log2(max(RIM_STEP * window.projector.scale / 16.0, 1.0)) if self.unrolled else 0.0
+        self.halvings = min(int(np.ceil(fine)), _FINEST)
         self.side = 2.0 * window.cap if self.unrolled else 0.0
         self.length = 2.0 * self.side + 4.0 * np.pi if self.unrolled else 2.0 * np.pi
 
@@ -147,7 +149,7 @@ class _Rim:
 
     def between(self, first: float, last: float) -> Float:
         """Return directions (3, K) strictly between two parameters, going forwards, the corners of a sheet included."""
-        parameters, points = _lattice(self.unrolled, self.cap)
+        parameters, points = _lattice(self.unrolled, self.cap, self.halvings)
         a, b = np.searchsorted(parameters, (first, last))
         return points[:, a + (parameters[a] <= first) : b] if a < len(parameters) else points[:, :0]
 
@@ -157,12 +159,13 @@ class _Rim:
 
 
 @lru_cache(maxsize=16)
-def _lattice(unrolled: bool, cap: float) -> tuple[Float, Float]:
-    """Return points about RIM_STEP apart along a rim, twice round it: parameters (N,) and directions (3, N)."""
+def _lattice(unrolled: bool, cap: float, halvings: int) -> tuple[Float, Float]:
+    """Return evenly spaced points along a rim, twice round it: parameters (N,) and directions (3, N)."""
+    step = RIM_STEP / 2.0**halvings
     sides = (2.0 * cap, 2.0 * np.pi, 2.0 * cap, 2.0 * np.pi) if unrolled else (2.0 * np.pi,)
     starts = np.concatenate([[0.0], np.cumsum(sides)])
     once = np.concatenate(
-        [np.linspace(a, b, max(int(np.ceil((b - a) / RIM_STEP)), 1), endpoint=False) for a, b in pairwise(starts)]
+        [np.linspace(a, b, max(int(np.ceil((b - a) / step)), 1), endpoint=False) for a, b in pairwise(starts)]
     )
     points = _on_rim(once, unrolled, cap)
     return np.concatenate([once, once + starts[-1]]), np.concatenate([points, points], axis=1)

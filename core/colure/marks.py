@@ -176,6 +176,10 @@ class Layer:
 class Projector(Protocol):
     """What a Scene asks of its projection."""
 
+    @property
+    def centre(self) -> NDArray[np.float64]:
+        """The direction (3,) on ICRS axes that the view is centred on."""
+
     def unproject(self, xy: Any) -> NDArray[np.float64]:
         """Return unit vectors (..., 3) on ICRS axes for pixels (..., 2); NaN off the sky."""
 

@@ -265,7 +265,8 @@ class Projector:
     """A view laid on a page: directions on ICRS axes to logical pixels, and back.
 
     `camera` (3, 3) takes ICRS axes to camera axes. `plane` (2, 2) and `shift` (2,) take the projection's plane to
-    pixels: `pixel = plane @ (x, y) + shift`. `scale` is pixels per radian at the centre.
+    pixels: `pixel = plane @ (x, y) + shift`. `scale` is pixels per radian at the centre, and `centre` (3,) the
+    direction asked for, on ICRS axes.
     """
 
     projection: Projection
@@ -273,6 +274,7 @@ class Projector:
     plane: Float
     shift: Float
     scale: float
+    centre: Float
     _back: Float = field(init=False)
     _camera32: NDArray[np.float32] = field(init=False)
 
@@ -324,7 +326,8 @@ class Projector:
 
     def with_camera(self, matrix: Float) -> "Projector":
         """Return the same page for directions on other axes: `matrix` (3, 3) takes those axes to ICRS."""
-        return Projector(self.projection, self.camera @ matrix, self.plane, self.shift, self.scale)
+        centre = matrix.T @ self.centre
+        return Projector(self.projection, self.camera @ matrix, self.plane, self.shift, self.scale, centre)
 
 
 def scale_of(projection: Projection, width: float, across: float, down: float) -> float:
@@ -372,4 +375,4 @@ def projector(
         at = np.array([0.0, up, np.sqrt(1.0 - up * up)])
         x, y = projection.forward(at[:, None])
         middle = middle - plane @ np.array([x[0], y[0]])
-    return Projector(projection, camera, plane, middle, scale)
+    return Projector(projection, camera, plane, middle, scale, centre)

@@ -72,6 +72,11 @@ def _canonical(text: str) -> str:
     return str(Frame.parse(text))
 
 
+@cache
+def _frame_label(text: str) -> str:
+    return Frame.parse(text).label()
+
+
 def _frame(where: str, text: str) -> str:
     """Return the canonical spelling of a frame."""
     if not isinstance(text, str):
@@ -167,7 +172,7 @@ class Circle:
         """The label drawn along the curve: the user's own, or the frame's, with the latitude of a small circle."""
         if self.label:
             return self.label
-        text = Frame.parse(self.frame).label()
+        text = _frame_label(self.frame)
         return text if self.lat_deg == 0.0 else f"{text}, {self.lat_deg:+g}°".replace("-", "\N{MINUS SIGN}")
 
 

@@ -66,7 +66,7 @@ def dumps(session: Session) -> str:
             "scale": session.moment.scale,
             "calendar": session.moment.calendar,
         },
-        "site": _plain(session.site),
+        "site": _site(session.site),
         "view": {
             **{k: v for k, v in _plain(session.view).items() if k != "centre"},
             "centre": _plain(session.view.centre),
@@ -79,6 +79,14 @@ def dumps(session: Session) -> str:
         document["layers"]["grid"] = ""
     _merge(document, session.extras)
     return tomli_w.dumps(document)
+
+
+def _site(site: Site) -> dict[str, Any]:
+    """Return a site's fields, its horizon as a list of pairs."""
+    table = _plain(site)
+    if site.horizon is not None:
+        table["horizon"] = [list(pair) for pair in site.horizon]
+    return table
 
 
 def _plain(value: Any) -> dict[str, Any]:
@@ -242,7 +250,19 @@ class _Reader:
         return self._made("layers", lambda: Layers(**values))
 
     def _site(self) -> Site:
-        return self._table("site", Site)
+        table = self._section("site")
+        values = self._fields("site", table, Site)
+        if "horizon" in table:
+            pairs = self._typed("site.horizon", table["horizon"], list, "a list of pairs")
+            values["horizon"] = tuple(self._pair(f"site.horizon[{i}]", pair) for i, pair in enumerate(pairs))
+        return self._made("site", lambda: Site(**values))
+
+    def _pair(self, where: str, value: Any) -> tuple[float, float]:
+        pair = self._typed(where, value, list, "two numbers")
+        if len(pair) != 2:
+            raise SessionError(f"{where}: {_shown(pair)}; expected two numbers")
+        a, b = (float(self._typed(where, part, (int, float), "two numbers")) for part in pair)
+        return a, b
 
     def _moment(self) -> Moment:
         table = self._section("moment")
@@ -250,10 +270,8 @@ class _Reader:
         scale = self._typed("moment.scale", table.get("scale", "UTC"), str, "text")
         calendar = self._typed("moment.calendar", table.get("calendar", "mixed"), str, "text")
         if "tt_jd" in table:
-            pair = self._typed("moment.tt_jd", table["tt_jd"], list, "two numbers")
-            if len(pair) != 2:
-                raise SessionError(f"moment.tt_jd: {_shown(pair)}; expected two numbers")
-            a, b = (float(self._typed("moment.tt_jd", value, (int, float), "two numbers")) for value in pair)
+            pair = table["tt_jd"]
+            a, b = self._pair("moment.tt_jd", pair)
             return self._made("moment", lambda: Moment(a, b, scale, calendar))
         text = self._typed("moment.text", table.get("text"), str, "a date or a pair tt_jd")
         return self._made("moment", lambda: Moment.parse(text))

@@ -170,7 +170,12 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         layer("deep sky", (), sky_layers.deep_sky)
     step = sky_layers.edge_step(session.view.width_deg)
     if session.layers.edges:
-        layer("edges", step, lambda: sky_layers.edges(step))
+        at_place = place_key(session) if sky_layers.moved(session.place) else None
+        layer(
+            "edges",
+            (step, at_place),
+            lambda: sky_layers.edges(step, session.moment, observer, session.place),
+        )
     if session.layers.constellation_names:
         layer("constellations", (), sky_layers.constellation_names)
     if session.layers.grid is not None:

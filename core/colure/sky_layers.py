@@ -1,13 +1,14 @@
 """What each layer of the sky is made of: plain functions of moment, place and observer to directions on ICRS axes."""
 
 from dataclasses import dataclass
-from functools import cache, lru_cache
+from functools import cache, cached_property, lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from colure import appearance, belt, constellations, deepsky, frames, milkyway, names, phases
 from colure.arrays import ARCSEC, DEG, TWO_PI, Float, unit
+from colure.ephemeris import KM_PER_AU
 from colure.errors import SpanError
 from colure.fontmetrics import face_of, width_em
 from colure.frames import Frame
@@ -191,63 +192,68 @@ def star_names(base: StarRows, kinds: tuple[names.Kind, ...]) -> StarNames:
 # Bodies
 
 
-@dataclass(frozen=True, slots=True, eq=False)
+@dataclass(frozen=True, eq=False)
 class BodiesSky:
     """Sun, Moon and planets as the observer sees them.
 
-    `vectors` (B, 3) on ICRS axes, `towards_sun` (B, 3) unit tangents from each body towards the Sun, `distance_au`,
-    `magnitude` (NaN where no formula reaches), `radius` (rad), `lit` the illuminated fraction; all (B,).
+    `vectors` (B, 3) on ICRS axes, `distance_au` (B,) when the light left, `sight_au` and `from_sun_au` (B, 3) the body
+    from the observer and from the Sun then. What follows from them is worked out when it is asked for.
     """
 
     names: tuple[str, ...]
+    jd_tdb: float
     vectors: Float
-    towards_sun: Float
     distance_au: Float
-    magnitude: Float
-    radius: Float
-    lit: Float
+    sight_au: Float
+    from_sun_au: Float
     note: str = ""
 
     def vector(self, name: str) -> Float | None:
         """Return a body's direction (3,), or None."""
         return self.vectors[self.names.index(name)] if name in self.names else None
 
+    @cached_property
+    def radius(self) -> Float:
+        """Angular radius (B,) in radians, 0 for a point that is no body."""
+        au = np.array([appearance.RADIUS_KM.get(name, 0.0) for name in self.names]) / KM_PER_AU
+        return np.asarray(np.arcsin(np.minimum(au / self.distance_au, 1.0)))
+
+    @cached_property
+    def lit(self) -> Float:
+        """Illuminated fraction (B,) of the disc; 1 for the Sun."""
+        lit = np.clip(phases.illuminated(phases.phase_angle(self.from_sun_au, self.sight_au)), 0.0, 1.0)
+        return np.where([name == "sun" for name in self.names], 1.0, lit)
+
+    @cached_property
+    def towards_sun(self) -> Float:
+        """Unit tangents (B, 3) from each body towards the Sun."""
+        sun = self.vector("sun")
+        away = self.sight_au - self.from_sun_au
+        aim = unit(away) if sun is None else np.broadcast_to(sun, self.vectors.shape)
+        tangent = aim - (aim * self.vectors).sum(axis=1)[:, None] * self.vectors
+        length = np.sqrt((tangent * tangent).sum(axis=1))[:, None]
+        return np.asarray(tangent / np.where(length > 1e-12, length, 1.0))
+
+    @cached_property
+    def magnitude(self) -> Float:
+        """Apparent V magnitude (B,), NaN where no formula reaches."""
+        rows = zip(self.names, self.from_sun_au, self.sight_au, strict=True)
+        jd = np.asarray(self.jd_tdb)
+        return np.array([float(appearance.magnitude(name, r, d, jd)) for name, r, d in rows])
+
 
 def bodies(names: tuple[str, ...], moment: Moment, observer: Observer, place: str) -> BodiesSky:
-    """Return directions, sizes, magnitudes and phases of bodies at a moment and place."""
+    """Return the directions of bodies at a moment and place; none, and a note, outside the ephemeris."""
+    jd = float(moment.tdb[0]) + float(moment.tdb[1])
     try:
         seen = reduce_bodies(names, moment, observer=observer, place=place)
     except SpanError as fault:
-        none = np.empty(0)
-        return BodiesSky((), np.empty((0, 3)), np.empty((0, 3)), none, none, none, none, f"no bodies: {fault}")
+        none = np.empty((0, 3))
+        return BodiesSky((), jd, none, np.empty(0), none, none, f"no bodies: {fault}")
     state = seen.observer
     # As in the reduction: from the observer to where the body was when its light left.
     sight = seen.heliocentric + (state.sun_pos - state.pos) - (seen.light_time_s / 86400.0)[:, None] * state.sun_vel
-    phase = phases.phase_angle(seen.heliocentric, sight)
-    jd = float(moment.tdb[0]) + float(moment.tdb[1])
-    magnitude = np.array(
-        [
-            float(appearance.magnitude(name, seen.heliocentric[i], sight[i], np.asarray(jd)))
-            for i, name in enumerate(names)
-        ]
-    )
-    radius = np.array([appearance.RADIUS_KM.get(name, 0.0) for name in names]) / 149597870.7 / seen.distance_au
-    lit = np.asarray(phases.illuminated(phase))
-    sun = seen.vectors[names.index("sun")] if "sun" in names else -unit(seen.heliocentric[0])
-    tangent = sun - (seen.vectors @ sun)[:, None] * seen.vectors
-    length = np.sqrt((tangent * tangent).sum(axis=1))[:, None]
-    tangent = tangent / np.where(length > 1e-12, length, 1.0)
-    if "sun" in names:
-        lit[names.index("sun")] = 1.0
-    return BodiesSky(
-        names,
-        seen.vectors,
-        tangent,
-        seen.distance_au,
-        magnitude,
-        np.arcsin(np.minimum(radius, 1.0)),
-        np.clip(lit, 0, 1),
-    )
+    return BodiesSky(names, jd, seen.vectors, seen.distance_au, sight, seen.heliocentric)
 
 
 # Constellations, deep sky, Milky Way
@@ -267,10 +273,26 @@ def edge_step(width_deg: float) -> float:
 
 
 @lru_cache(maxsize=4)
-def edges(step_deg: float) -> LinesSky:
-    """Return the edges of the constellations, at their catalogue positions."""
+def _edges(step_deg: float) -> LinesSky:
     found = constellations.edges(step_deg)
     return LinesSky(np.ascontiguousarray(found.points.T.astype(np.float32)), found.starts)
+
+
+def moved(place: str) -> bool:
+    """Return whether a place turns catalogue directions, so that lines drawn among the stars go with them."""
+    return place in ("apparent", "observed")
+
+
+def edges(step_deg: float, moment: Moment, observer: Observer, place: str) -> LinesSky:
+    """Return the edges of the constellations at a place: a star stays on its side of them."""
+    found = _edges(step_deg)
+    if not moved(place):
+        return found
+    try:
+        context = star_context(moment, observer=observer, place=place, epoch_jd=EPOCH_JD)
+    except SpanError:
+        return found
+    return LinesSky(np.ascontiguousarray(apply_context(context, found.columns.T, None, None).T), found.starts)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+
 from colure.arrays import cartesian, separation
 from colure.projections import PROJECTIONS, orientation, projector
 

@@ -63,10 +63,10 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
     placement = ctx.layer("labels", labels_key, lambda: names.build(ctx, curves, shown, listed, memory, labels_key))
     ctx.layer("rim", rim.key(ctx), lambda: (rim.build(ctx), None))
     ctx.layer("title", furniture.title_key(ctx), lambda: (furniture.title(ctx), None))
-    warning, cautions = furniture.caution(ctx)
-    ctx.made["caution"] = (warning, None)
+    warning = furniture.warning(ctx)
+    ctx.layer("caution", (warning, ctx.page), lambda: (furniture.caution(ctx, warning, (warning, ctx.page)), None))
     layers = tuple(ctx.made[name][0] for name in _ORDER if name in ctx.made)
-    notes = (*sky.notes, *cautions, *_counts(layers))
+    notes = (*sky.notes, *((warning,) if warning else ()), *_counts(layers))
     return Scene(size[0], size[1], ratio, ctx.frame, layers, ctx.projector, placement, notes, ctx.made)
 
 

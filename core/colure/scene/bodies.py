@@ -1,4 +1,4 @@
-"""Sun, Moon and planets on the page: at true size where that can be seen, else by magnitude, with their phases."""
+"""Sun, Moon and planets on the page: at true size where that can be seen, else as marks, with their phases."""
 
 from dataclasses import dataclass
 
@@ -7,19 +7,18 @@ import numpy as np
 from colure.arrays import Float
 from colure.marks import F32, Bodies, Layer
 from colure.scene.context import Context, in_page
-from colure.scene.stars import RADII, size_class
 
-SUN_MOON = 7.5
-"""Least radius in pixels of the Sun's and the Moon's mark."""
-LEAST, MOST = 2.6, 6.0
-"""Radii between which a planet's mark follows its magnitude."""
+MARKS = {"sun": 7.5, "moon": 7.5, "venus": 5.2, "jupiter": 5.2, "mars": 4.4, "saturn": 4.6, "mercury": 3.8}
+"""Least radius in pixels of a body's mark: its rank on a map, where its own size would not show."""
+SMALL = 3.2
+"""The same for every other body."""
 PHASE_FROM = 4.0
 """A planet shows its phase from this true radius on, in pixels."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Shown:
-    """The bodies on the page, brightest first: names, positions and radii in pixels."""
+    """The bodies on the page, the largest marks first: names, positions and radii in pixels."""
 
     names: tuple[str, ...]
     xy: F32
@@ -39,18 +38,14 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
     xy, limb, scale = _laid(ctx, sky.vectors[at], sky.towards_sun[at])
     true = sky.radius[at] * scale
     names = [sky.names[i] for i in at]
-    magnitude = np.nan_to_num(sky.magnitude[at], nan=8.0)
-    by_magnitude = np.clip(RADII[size_class(magnitude, max(ctx.limit, 6.0))] + 0.8, LEAST, MOST)
-    great = np.array([name in ("sun", "moon") for name in names])
-    mark = np.where(great, SUN_MOON, by_magnitude)
+    mark = np.array([MARKS.get(name, SMALL) for name in names])
     radius = np.maximum(true, mark)
     true_size = true >= mark
     phased = np.array([name == "moon" for name in names]) | (true_size & (true >= PHASE_FROM))
-    lit = np.where(phased & ~np.array([name == "sun" for name in names]), sky.lit[at], 1.0)
+    lit = np.where(phased, sky.lit[at], 1.0)
     camera = ctx.projector.to_camera(np.ascontiguousarray(sky.vectors[at].T))
     shown = ctx.projector.on_sky(camera)
-    for i in np.flatnonzero(shown):
-        shown[i] = bool(in_page(ctx, xy[i, 0], xy[i, 1], float(radius[i])))
+    shown &= in_page(ctx, xy[:, 0], xy[:, 1], radius)
     keep = np.flatnonzero(shown)
     bodies = Bodies(
         tuple(names[i] for i in keep),
@@ -61,7 +56,7 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
         true_size[keep],
         at[keep].astype(np.int64),
     )
-    order = keep[np.argsort(magnitude[keep], kind="stable")]
+    order = keep[np.argsort(-mark[keep], kind="stable")]
     listed = Shown(tuple(names[i] for i in order), xy[order].astype(np.float32), radius[order].astype(np.float32))
     return Layer("bodies", (bodies,), key(ctx), shown=len(keep), total=len(at)), listed
 
@@ -82,4 +77,4 @@ def _laid(ctx: Context, vectors: Float, towards_sun: Float) -> tuple[Float, Floa
 
 def key(ctx: Context) -> object:
     """Return what the layer of bodies depends on."""
-    return (ctx.sky.key("bodies"), ctx.sky.session.bodies, ctx.view_key, ctx.limit)
+    return (ctx.sky.key("bodies"), ctx.sky.session.bodies, ctx.view_key)

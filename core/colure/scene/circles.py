@@ -73,13 +73,14 @@ def columns_of(axes: FrameAxes, first: float, last: float, step: int, lat: float
 
 def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
     """Return the layer of circles, and their curves for the labels."""
-    chosen = steps(ctx.scale)
-    parts: list[tuple[int, Circle, FrameAxes, Int, Float]] = []
+    parts: list[tuple[int, Circle, FrameAxes, Int, Float, Steps]] = []
     for number, (circle, axes) in enumerate(ctx.sky["circles"]):
         lat = circle.lat_deg * DEG
         first, last = span(ctx, axes, lat)
         if last > first:
-            parts.append((number, circle, axes, *columns_of(axes, first, last, chosen.minor, lat)))
+            # Degrees of longitude are shorter on a small circle.
+            chosen = steps(ctx.step_scale * float(np.cos(lat)))
+            parts.append((number, circle, axes, *columns_of(axes, first, last, chosen.minor, lat), chosen))
     if not parts:
         return Layer("circles", (), key(ctx)), ()
     starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
@@ -96,15 +97,18 @@ def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
     hand = np.repeat(np.array(hands, np.float32), np.diff(starts))
     north = np.empty_like(tangent)
     north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
-    major, middle = arcsec % chosen.major == 0, arcsec % chosen.middle == 0
+    lengths = np.diff(starts)
+    major = arcsec % np.repeat([part[5].major for part in parts], lengths) == 0
+    middle = arcsec % np.repeat([part[5].middle for part in parts], lengths) == 0
     ticks = np.empty((len(xy), 4), np.float32)
     ticks[:, :2] = xy
     ticks[:, 2:] = xy + north * _TICKS[major.astype(np.intp) + middle][:, None]
     marks: list[Mark] = []
     curves: list[Curve] = []
-    for k, ((points, ends), (number, circle, *_)) in enumerate(zip(drawn.polylines(starts), parts, strict=True)):
+    for k, ((points, ends), part) in enumerate(zip(drawn.polylines(starts), parts, strict=True)):
         if len(ends) < 2:
             continue
+        number, circle, chosen = part[0], part[1], part[5]
         own = slice(int(starts[k]), int(starts[k + 1]))
         marks.append(Lines("circle", points, ends, CIRCLE, circle.colour))
         curves.append(Curve(number, circle, chosen, arcsec[own], xy[own], tangent[own], north[own], valid[own]))
@@ -136,7 +140,7 @@ def _tangents(drawn: Trace) -> tuple[F32, Bool]:
 
 def grid(ctx: Context) -> Layer:
     """Return the layer of coordinate lines, evenly spaced in latitude, and in longitude as evenly as a pole allows."""
-    step = grid_step(ctx.scale)
+    step = grid_step(ctx.step_scale)
     axes: FrameAxes = ctx.sky["grid"]
     pieces: list[Float] = []
     sizes: list[int] = []
@@ -144,15 +148,13 @@ def grid(ctx: Context) -> Layer:
     lon0, lat0 = (float(v[0]) for v in axes.spherical(ctx.window.centre[None, :]))
     whole = radius > 1.0
     low, high = (-np.pi / 2, np.pi / 2) if whole else (max(lat0 - radius, -np.pi / 2), min(lat0 + radius, np.pi / 2))
-    # About 12 pixels between points, and never more than 2° apart, so that curves look like curves.
-    fine = max(min(step // 10, 7200), 1)
     for arcsec in multiples(step, low, high).tolist():
         lat = arcsec * ARCSEC
         first, last = (0.0, TWO_PI) if whole else visible_longitudes(lon0, lat0, radius, lat)
         if abs(lat) < np.pi / 2 - 1e-9 and last > first:
-            points = columns_of(axes, first, last, fine, lat)[1]
-            pieces.append(points)
-            sizes.append(points.shape[1])
+            n = _points(ctx, (last - first) * float(np.cos(lat)))
+            pieces.append(axes.columns(np.linspace(first, last, n), lat))
+            sizes.append(n)
     reach = (0.0, TWO_PI)
     if not whole:
         spans = [visible_longitudes(lon0, lat0, radius, lat) for lat in (low, lat0, high, 0.5 * (low + lat0))]
@@ -161,7 +163,7 @@ def grid(ctx: Context) -> Layer:
         if reach[1] - reach[0] > TWO_PI:
             reach = (0.0, TWO_PI)
     lon_step = _meridian_step(step, min(abs(low), abs(high)) if low * high > 0 else 0.0)
-    lats = _latitudes(low, high, fine, lon_step)
+    lats = np.linspace(low, high, _points(ctx, high - low))
     meridians = multiples(lon_step, *reach)
     if reach[1] - reach[0] >= TWO_PI - 1e-9:
         meridians = np.unique(meridians % 1296000)
@@ -183,10 +185,9 @@ def _meridian_step(step: int, nearest_lat: float) -> int:
     return next((r for r in round_ones if r >= wanted - 1e-6), round_ones[-1])
 
 
-def _latitudes(low: float, high: float, fine: int, lon_step: int) -> Float:
-    """Return the latitudes of the points of a meridian; on the whole sky it stops a degree short of most poles."""
-    n = max(int((high - low) / ARCSEC / fine), 2)
-    return np.linspace(low, high, n + 1)
+def _points(ctx: Context, length: float) -> int:
+    """Return how many points make a curve of this length (rad) look like one: 12 pixels apart, never over 2°."""
+    return int(np.clip(max(length * ctx.scale / 12.0, length / (2.0 * DEG)), 8.0, 400.0)) + 1
 
 
 def grid_key(ctx: Context) -> object:

@@ -6,7 +6,7 @@ from typing import Any
 
 import numpy as np
 
-from colure.arrays import DEG
+from colure.arrays import DEG, Float
 from colure.clipping import Window
 from colure.marks import Layer
 from colure.projections import Projector, projector
@@ -48,6 +48,12 @@ class Context:
         """Pixels per radian at the centre."""
         return self.projector.scale
 
+    @property
+    def step_scale(self) -> float:
+        """Pixels per radian to choose steps by: the centre's, or less where the map is squeezed, as at a sheet's pole."""
+        left, top, right, bottom = self.frame
+        return min(self.scale, 1.5 * float(np.hypot(right - left, bottom - top)) / self.window.radius)
+
     def layer(self, name: str, key: object, make: Callable[[], tuple[Layer, Any]]) -> Any:
         """Add a layer, that of the scene before if its key is the same, and return what it holds for other layers."""
         old = self.previous.get(name)
@@ -55,26 +61,33 @@ class Context:
         return self.made[name][1]
 
 
+def projector_of(
+    view: View, frame: tuple[float, float, float, float], centre: Float, pole: Float, spare: Float
+) -> Projector:
+    """Return the projector of a view on a map rectangle; vectors (3,) as in `sky.Axes`."""
+    return projector(
+        view.projection,
+        centre,
+        pole,
+        spare,
+        east_left=view.east_left,
+        width=view.width_deg * DEG,
+        rotation=view.rotation_deg * DEG,
+        frame=frame,
+    )
+
+
 def context(sky: Sky, size: tuple[int, int], previous: dict[str, tuple[Layer, Any]]) -> Context:
     """Return the context of a build on a page of `size` logical pixels."""
     view = sky.session.view
     page = layout(*size)
-    p = projector(
-        view.projection,
-        sky.axes.centre,
-        sky.axes.pole,
-        sky.axes.spare,
-        east_left=view.east_left,
-        width=view.width_deg * DEG,
-        rotation=view.rotation_deg * DEG,
-        frame=page.frame,
-    )
+    p = projector_of(view, page.frame, sky.axes.centre, sky.axes.pole, sky.axes.spare)
     page_key = (view.projection, size, p.plane.tobytes(), p.shift.tobytes())
     view_key = (page_key, p.camera.tobytes())
     return Context(sky, view, page, p, Window.of(p, page.frame), view_key, page_key, limit_of(view), previous)
 
 
-def in_page(ctx: Context, x: Any, y: Any, margin: float = PAGE_MARGIN) -> Any:
+def in_page(ctx: Context, x: Any, y: Any, margin: Any = PAGE_MARGIN) -> Any:
     """Return which pixels (N,) lie on the map or within a margin of it."""
     left, top, right, bottom = ctx.frame
     return (x > left - margin) & (x < right + margin) & (y > top - margin) & (y < bottom + margin)

@@ -10,8 +10,8 @@ from colure.frames import Frame
 from colure.graduation import figure
 from colure.marks import Discs, Labels, Layer, Mark
 from colure.scene.context import Context
-from colure.scene.stars import RADII, area_ratio, size_class
-from colure.session import Centre, View
+from colure.scene.stars import scale_of
+from colure.session import Centre
 
 TITLE_PT, LEGEND_PT = 10.0, 9.0
 MINUS = "\N{MINUS SIGN}"
@@ -42,16 +42,17 @@ def frame_label(name: str) -> str:
     return Frame.parse(name).label()
 
 
-def up_label(view: View) -> str:
+@lru_cache(maxsize=256)
+def up_label(up: str, rotation_deg: float = 0.0) -> str:
     """Return which way is up, and by how much the picture is turned from it."""
-    if view.up == "zenith":
+    if up == "zenith":
         text = "zenith up"
     else:
-        frame = Frame.parse(view.up)
-        plain = view.up in ("ecliptic/mean/date", "equator/mean/date", "ecliptic/true/date", "equator/true/date")
+        frame = Frame.parse(up)
+        plain = up in ("ecliptic/mean/date", "equator/mean/date", "ecliptic/true/date", "equator/true/date")
         text = f"{frame.plane if plain or frame.plane in ('galactic', 'invariable') else frame.label()} up"
         text = text.replace("equator up", "north up")
-    return text if view.rotation_deg == 0.0 else f"{text}, turned {view.rotation_deg:g}°"
+    return text if rotation_deg == 0.0 else f"{text}, turned {rotation_deg:g}°"
 
 
 def projection_label(name: str) -> str:
@@ -61,6 +62,7 @@ def projection_label(name: str) -> str:
     )
 
 
+@lru_cache(maxsize=256)
 def centre_label(centre: Centre, width_deg: float) -> str:
     """Return what the chart is centred on: a body, or a position with figures as fine as a pixel, and its frame."""
     if centre.body is not None:
@@ -94,7 +96,7 @@ def title(ctx: Context) -> Layer:
     across = f"{angle_across(view.width_deg)} across"
     lines_of_text = [
         ("left", 0, moment),
-        ("right", 0, f"{projection_label(view.projection)} · {up_label(view)} · {across}"),
+        ("right", 0, f"{projection_label(view.projection)} · {up_label(view.up, view.rotation_deg)} · {across}"),
         ("left", -1, centre_label(view.centre, view.width_deg)),
     ]
     if rows > 1:
@@ -117,7 +119,7 @@ def title(ctx: Context) -> Layer:
     xy = np.array(places, np.float32)
     index = np.arange(len(texts), dtype=np.int32)
     marks.append(Labels("title", tuple(texts), index, xy, np.zeros(len(texts), np.float32), TITLE_PT, halo=False))
-    marks += _legend(ctx, right, page.below[rows - 1], page.below[0], left)
+    marks += _legend(ctx.limit, "stars" in ctx.sky.layers, right, page.below[rows - 1], page.below[0])
     return Layer("title", tuple(marks), key, clip=False)
 
 
@@ -128,6 +130,7 @@ def title_key(ctx: Context) -> object:
     return (session.moment, session.site, session.place, session.from_site, ctx.view, ctx.limit, ctx.page, stars)
 
 
+@lru_cache(maxsize=256)
 def _fitted(text: str, room: float) -> tuple[str, float]:
     """Return a text cut to the room at one of its ` · `, or anywhere, and its width."""
     width = width_px(text, TITLE_PT, "title")
@@ -140,11 +143,13 @@ def _fitted(text: str, room: float) -> tuple[str, float]:
     return text, width
 
 
-def _legend(ctx: Context, right: float, y_text: float, y_discs: float, left: float) -> list[Mark]:
+@lru_cache(maxsize=64)
+def _legend(faintest_shown: float, stars: bool, right: float, y_text: float, y_discs: float) -> tuple[Mark, ...]:
     """Return the magnitude limit, and below it discs of whole magnitudes with their figures."""
-    limit = f"stars to {ctx.limit:.1f} mag".replace("-", MINUS)
-    if "stars" in ctx.sky.layers and y_discs != y_text:
-        limit += f" · area × {1.0 / area_ratio(ctx.limit):.2f} for each"
+    scale = scale_of(faintest_shown)
+    limit = f"stars to {faintest_shown:.1f} mag".replace("-", MINUS)
+    if stars and y_discs != y_text:
+        limit += f" · area × {scale.area_ratio:.2f} for each"
     width = width_px(limit, LEGEND_PT, "legend")
     marks: list[Mark] = [
         Labels(
@@ -157,17 +162,16 @@ def _legend(ctx: Context, right: float, y_text: float, y_discs: float, left: flo
             halo=False,
         )
     ]
-    if y_discs == y_text or "stars" not in ctx.sky.layers:
-        return marks
-    faintest = int(np.floor(ctx.limit))
-    step = 1 if faintest <= 8 else 2
-    magnitudes = np.arange(-1, faintest + 1, step)[::-1]
+    if y_discs == y_text or not stars:
+        return tuple(marks)
+    faintest = int(np.floor(faintest_shown))
+    magnitudes = np.arange(int(np.ceil(scale.brightest)), faintest + 1)[::-1]
     texts = tuple(f"{m}".replace("-", MINUS) for m in magnitudes.tolist())
-    size = size_class(magnitudes.astype(np.float32), ctx.limit)
+    size = scale.size(magnitudes.astype(np.float32))
     x = right
     discs: list[tuple[float, float]] = []
     labels: list[tuple[float, float]] = []
-    for text, radius in zip(texts, RADII[size].tolist(), strict=True):
+    for text, radius in zip(texts, scale.radii[size].tolist(), strict=True):
         w = width_px(text, LEGEND_PT, "legend")
         labels.append((x - 0.5 * w, y_discs))
         x -= w + 4.0 + radius
@@ -175,30 +179,35 @@ def _legend(ctx: Context, right: float, y_text: float, y_discs: float, left: flo
         x -= radius + 11.0
     n = len(texts)
     neutral = np.full(n, 3, np.uint8)
-    marks.append(Discs("legend.star", np.array(discs, np.float32), size, neutral, RADII, np.full(n, -1, np.int64)))
+    marks.append(
+        Discs("legend.star", np.array(discs, np.float32), size, neutral, scale.radii, np.full(n, -1, np.int64))
+    )
     angle = np.zeros(n, np.float32)
     unique = Labels(
         "legend", texts, np.arange(n, dtype=np.int32), np.array(labels, np.float32), angle, LEGEND_PT, halo=False
     )
-    return [*marks, unique]
+    return (*marks, unique)
 
 
-def caution(ctx: Context) -> tuple[Layer, tuple[str, ...]]:
-    """Return the warning about the Sun, if a finder chart lies within 20° of it, and its text as a note."""
+def warning(ctx: Context) -> str:
+    """Return the warning about the Sun where a finder chart lies within 20° of it, or an empty text."""
     sun = ctx.sky["bodies"].vector("sun")
-    text = ""
     if sun is not None and ctx.view.width_deg <= FINDER_WIDTH_DEG:
         apart = float(separation(ctx.window.centre, sun)) / DEG - ctx.window.radius / DEG
         if apart < NEAR_SUN_DEG:
-            text = (
+            return (
                 "The Sun is in this field. Pointing optics at the Sun injures eyes and instruments."
                 if apart <= 0.0
                 else f"The Sun is {max(apart, 0.1):.0f}° from this field. "
                 "Pointing optics near the Sun injures eyes and instruments."
             )
-    key = (text, ctx.page)
+    return ""
+
+
+def caution(ctx: Context, text: str, key: object) -> Layer:
+    """Return the layer of a warning."""
     if not text:
-        return Layer("caution", (), key), ()
+        return Layer("caution", (), key)
     left, _, right, bottom = ctx.frame
     size = 10.0
     while size > 9.0 and width_px(text, size, "caution", bold=True) > right - left - 20:
@@ -210,4 +219,4 @@ def caution(ctx: Context) -> tuple[Layer, tuple[str, ...]]:
     xy = np.stack([np.full(len(parts), 0.5 * (left + right)), y], axis=1).astype(np.float32)
     index = np.arange(len(parts), dtype=np.int32)
     label = Labels("caution", tuple(parts), index, xy, np.zeros(len(parts), np.float32), size, bold=True)
-    return Layer("caution", (label,), key), (text,)
+    return Layer("caution", (label,), key)

@@ -165,7 +165,8 @@ def _circle_names(ctx: Context, curves: tuple[Curve, ...]) -> Wanted | None:
     xy = np.concatenate([curve.xy[at] for curve, at in used]) + north * lift[row, None]
     # A spot's number belongs to its longitude, so that a name stays there while the view moves over it.
     arcsec = np.concatenate([curve.arcsec[at] for curve, at in used])
-    number = (arcsec // used[0][0].steps.major) % NAME_SPOTS
+    major = np.array([curve.steps.major for curve, _ in used])
+    number = (arcsec // major[row]) % NAME_SPOTS
     centres = np.full((len(used), NAME_SPOTS, 2), np.nan, np.float32)
     angles = np.zeros((len(used), NAME_SPOTS), np.float32)
     halves = np.zeros((len(used), NAME_SPOTS, 2), np.float32)
@@ -277,7 +278,8 @@ def _stars(ctx: Context, shown: star_marks.Shown | None) -> Wanted | None:
         return None
     named = ctx.sky["star names"]
     bright = int(np.searchsorted(named.vmag, ctx.limit, side="right"))
-    radius = star_marks.RADII[star_marks.size_class(named.vmag[:bright], ctx.limit)]
+    scale = star_marks.scale_of(ctx.limit)
+    radius = scale.radii[scale.size(named.vmag[:bright])]
     directions = ctx.sky["stars"].directions[:, named.at[:bright]]
     return _about(ctx, "label.star", _STAR, directions, named.texts, named.width_em, named.ids, radius, MOST_STARS)
 

@@ -12,8 +12,10 @@ from colure.sky_layers import StarRows
 
 SIZES = 24
 """Number of size classes between the faintest star shown and the brightest."""
-SMALLEST, LARGEST = 0.62, 6.6
-"""Radii in pixels of a star at the limit and of one of magnitude −1.5."""
+LARGEST = 6.6
+"""Radius in pixels of the brightest stars."""
+SPAN_MAG = 9.5
+"""Magnitudes between the faintest size and the largest: beyond, areas would differ too little from step to step."""
 BRIGHTEST = -1.5
 CELL = 3.0
 BRIGHT_RADIUS = 2.3
@@ -22,30 +24,41 @@ MOST_BRIGHT = 320
 """Nor are more than the brightest so many."""
 
 
-def radii() -> F32:
-    """Return the radius of each size class, in pixels: a geometric series, so that areas fall evenly by magnitude."""
-    return (SMALLEST * (LARGEST / SMALLEST) ** (np.arange(SIZES) / (SIZES - 1.0))).astype(np.float32)
+@dataclass(frozen=True, slots=True, eq=False)
+class Scale:
+    """The one scale of a chart: areas fall evenly from magnitude `brightest` (and brighter) to its limit.
+
+    `radii` (SIZES,) are the radii of the size classes in pixels, a geometric series.
+    """
+
+    limit: float
+    brightest: float
+    radii: F32
+
+    def size(self, vmag: NDArray[np.floating]) -> U8:
+        """Return the size class of magnitudes."""
+        per_mag = (SIZES - 1) / (self.limit - self.brightest)
+        classes = (np.float32(self.limit) - vmag) * np.float32(per_mag) + np.float32(0.5)
+        return np.asarray(np.clip(classes, 0.0, SIZES - 1), dtype=np.uint8)
+
+    @property
+    def area_ratio(self) -> float:
+        """By how much the area of a disc falls from one magnitude to the next."""
+        return float((self.radii[0] / self.radii[-1]) ** (2.0 / (self.limit - self.brightest)))
 
 
-RADII = radii()
-
-
-def size_class(vmag: NDArray[np.floating], limit: float) -> U8:
-    """Return the size class of magnitudes on the scale of a chart with this limit."""
-    per_mag = (SIZES - 1) / (limit - BRIGHTEST)
-    classes = (np.float32(limit) - vmag) * np.float32(per_mag) + np.float32(0.5)
-    return np.asarray(np.clip(classes, 0.0, SIZES - 1), dtype=np.uint8)
-
-
-def area_ratio(limit: float) -> float:
-    """Return by how much the area of a disc falls from one magnitude to the next."""
-    return float((LARGEST / SMALLEST) ** (2.0 / (limit - BRIGHTEST)))
+@lru_cache(maxsize=64)
+def scale_of(limit: float) -> Scale:
+    """Return the scale of a chart with this magnitude limit; deep charts hold few stars, so their least is larger."""
+    smallest = 0.62 if limit <= 8.5 else 0.8 if limit <= 10.5 else 1.0
+    radii = smallest * (LARGEST / smallest) ** (np.arange(SIZES) / (SIZES - 1.0))
+    return Scale(limit, max(BRIGHTEST, limit - SPAN_MAG), radii.astype(np.float32))
 
 
 @lru_cache(maxsize=4)
 def _sizes(base: StarRows, limit: float) -> U8:
     """Return the size classes of a list of stars; kept, as neither changes from frame to frame."""
-    return size_class(base.vmag, limit)
+    return scale_of(limit).size(base.vmag)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -81,10 +94,11 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
     at = inside[keep] if numbers is None else numbers[inside[keep]]
     at += first
     size = _sizes(base, ctx.limit)[at]
-    mark = Discs("star", xy, size, base.tint[at], RADII, base.ids[at])
+    radii = scale_of(ctx.limit).radii
+    mark = Discs("star", xy, size, base.tint[at], radii, base.ids[at])
     layer = Layer("stars", (mark,), key(ctx), shown=len(at), total=len(inside))
     bright = slice(max(len(at) - MOST_BRIGHT, 0), len(at))
-    radius = RADII[size[bright]]
+    radius = radii[size[bright]]
     large = radius >= BRIGHT_RADIUS
     return layer, Shown(xy[bright][large], radius[large])
 

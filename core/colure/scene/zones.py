@@ -3,7 +3,7 @@
 import numpy as np
 
 from colure.arrays import ARCSEC, DEG, TWO_PI, Float
-from colure.clipping import lines
+from colure.clipping import lines, trace
 from colure.clipping_areas import areas, rim_ring
 from colure.graduation import steps, visible_longitudes
 from colure.marks import DIVISION, GRID, Areas, Layer, Lines, Mark
@@ -12,6 +12,8 @@ from colure.scene.context import Context
 from colure.sky import FrameAxes
 
 DIVISIONS = 12
+_MERIDIAN = 21
+"""Points along a division line."""
 
 
 def sky_disc(ctx: Context) -> Layer:
@@ -46,35 +48,35 @@ def belt(ctx: Context) -> Layer:
     axes: FrameAxes = ctx.sky["belt"]
     setting = ctx.sky.session.belt
     half = setting.half_width_deg * DEG
-    fine = min(max(steps(ctx.scale).minor, 60), 3600)
-    marks: list[Mark] = []
-    edges = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
-    full = [columns_of(axes, 0.0, TWO_PI, 3600, lat)[1][:, :-1] for lat in (half, -half)]
-    if ctx.window.radius < 0.5:
-        full = [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
-    ring_starts = np.array([0, full[0].shape[1], full[0].shape[1] + full[1].shape[1]], np.int32)
+    fine = min(max(steps(ctx.step_scale).minor, 60), 3600)
+    parallels = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
+    rings = (
+        [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
+        if ctx.window.radius < 0.5
+        else [columns_of(axes, 0.0, TWO_PI, 3600, lat)[1][:, :-1] for lat in (half, -half)]
+    )
+    ring_starts = np.array([0, rings[0].shape[1], rings[0].shape[1] + rings[1].shape[1]], np.int32)
     pole = axes.columns(np.zeros(1), np.pi / 2)[:, 0]
-    points, starts = areas(
-        ctx.window, ctx.projector.to_camera(np.concatenate(full, axis=1)), ring_starts, ctx.projector.camera @ pole
+    filled, starts = areas(
+        ctx.window, ctx.projector.to_camera(np.concatenate(rings, axis=1)), ring_starts, ctx.projector.camera @ pole
     )
-    if len(points):
-        marks.append(Areas("belt", points, starts, alpha=0.55))
-    sizes = [edge.shape[1] for edge in edges]
-    edge_points, edge_starts = lines(
-        ctx.window,
-        ctx.projector.to_camera(np.concatenate(edges, axis=1)),
-        np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32),
-    )
-    if len(edge_points):
-        marks.append(Lines("belt.edge", edge_points, edge_starts, GRID))
+    marks: list[Mark] = [Areas("belt", filled, starts, alpha=0.55)] if len(filled) else []
     if setting.divisions:
-        lon = np.repeat(np.arange(DIVISIONS) * (TWO_PI / DIVISIONS), 21)
-        lat = np.tile(np.linspace(-half, half, 21), DIVISIONS)
-        camera = ctx.projector.to_camera(axes.columns(lon, lat))
-        points, starts = lines(ctx.window, camera, np.arange(DIVISIONS + 1, dtype=np.int32) * 21)
+        parallels.append(_divisions(axes, half))
+    sizes = [line.shape[1] for line in parallels[:2]] + [_MERIDIAN] * (DIVISIONS if setting.divisions else 0)
+    starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
+    camera = ctx.projector.to_camera(np.concatenate(parallels, axis=1))
+    drawn = trace(ctx.window, camera, starts).polylines(starts[[0, 2, -1]] if setting.divisions else starts[[0, 2]])
+    for role, weight, (points, ends) in zip(("belt.edge", "belt.division"), (GRID, DIVISION), drawn, strict=False):
         if len(points):
-            marks.append(Lines("belt.division", points, starts, DIVISION))
+            marks.append(Lines(role, points, ends, weight))
     return Layer("belt", tuple(marks), belt_key(ctx))
+
+
+def _divisions(axes: FrameAxes, half: float) -> Float:
+    """Return the twelve division lines (3, N), from the south edge to the north."""
+    lon = np.repeat(np.arange(DIVISIONS) * (TWO_PI / DIVISIONS), _MERIDIAN)
+    return axes.columns(lon, np.tile(np.linspace(-half, half, _MERIDIAN), DIVISIONS))
 
 
 def belt_key(ctx: Context) -> object:
