@@ -5,10 +5,11 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QLineF, QPointF, QRectF, Qt
-from PySide6.QtGui import QColor, QFont, QImage, QPainter, QPen, QPixmap, QPolygonF, QStaticText
+from PySide6.QtCore import QPointF, Qt
+from PySide6.QtGui import QColor, QFont, QImage, QPainter, QPen, QPixmap, QStaticText
 
 from colure.marks import Areas, Discs, Labels, Lines, Scene, Segments
+from colure_viewer.primitives import fragments, lines, polygon
 
 INK = QColor("#20242c")
 PAPER = QColor("#f4efe2")
@@ -85,13 +86,14 @@ def bare_painter(scene: Scene) -> Callable[[], None]:
         painter.drawEllipse(QPointF((at + 0.5) * tile, 0.5 * tile), float(radius), float(radius))
     painter.end()
     which = np.searchsorted(sizes, np.round(marks.star_radius, 1))
-    fragments = [
-        QPainter.PixmapFragment.create(QPointF(float(x), float(y)), QRectF(float(at * tile), 0.0, tile, tile))
-        for (x, y), at in zip(marks.star_xy, which, strict=True)
-    ]
-    polygons = [QPolygonF([QPointF(float(x), float(y)) for x, y in line]) for line in marks.lines]
-    rings = [QPolygonF([QPointF(float(x), float(y)) for x, y in ring]) for ring in marks.areas]
-    strokes = [QLineF(*(float(value) for value in row)) for row in marks.segments]
+    stars = fragments()
+    rows = stars.rows(len(which))
+    rows[:, :2] = marks.star_xy
+    rows[:, 2], rows[:, 3:] = which * tile, (0.0, tile, tile, 1.0, 1.0, 0.0, 1.0)
+    polygons = [polygon(line) for line in marks.lines]
+    rings = [polygon(ring) for ring in marks.areas]
+    strokes = lines()
+    strokes.rows(len(marks.segments))[:] = marks.segments
     texts = []
     for text, x, y in marks.texts:
         prepared = QStaticText(text)
@@ -110,10 +112,12 @@ def bare_painter(scene: Scene) -> Callable[[], None]:
         for ring in rings:
             painter.drawPolygon(ring)
         painter.setPen(pen)
-        for polygon in polygons:
-            painter.drawPolyline(polygon)
-        painter.drawLines(strokes)
-        painter.drawPixmapFragments(fragments, len(fragments), sheet)
+        for line in polygons:
+            painter.drawPolyline(line)
+        if len(marks.segments):
+            painter.drawLines(strokes.first(), len(marks.segments))
+        if len(which):
+            painter.drawPixmapFragments(stars.first(), len(which), sheet)
         for at, prepared in texts:
             painter.drawStaticText(at, prepared)
         painter.end()
