@@ -5,8 +5,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from colure import angles, frames
-from colure.arrays import ARCSEC, DEG, Float, spherical
-from colure.errors import ColureError
+from colure.arrays import ARCSEC, DEG, Float, cartesian, dot, position_angle, separation, spherical
+from colure.errors import ColureError, FrameError
 from colure.frames import Frame
 from colure.moment import Moment
 from colure.sidereal import Ground
@@ -122,3 +122,185 @@ def as_text(rows: tuple[Row, ...], heading: str = "") -> str:
         for one in rows
     ]  # fmt: skip
     return "\n".join(lines)
+
+
+@dataclass(frozen=True, slots=True)
+class Difference:
+    """How far the numbers of a frame lead astray where they are read in another, arcseconds.
+
+    The numbers of `frame`, read as if they were in the chosen frame, name a direction that is off by `size_arcsec`
+    towards `pa_deg` (from the chosen frame's north through growing longitude). That shift on the sky is also given
+    along growing longitude and latitude of the chosen frame (`dlon_arcsec`, times cos lat, and `dlat_arcsec`), of the
+    mean ecliptic and of the equator of J2000 (Δλ cos β, Δβ; Δα cos δ, Δδ), and along and across the motion of a body
+    (across: to the left of the motion on the sky, east at left). Long shifts keep their true length. NaN where the
+    frame has no answer (`fault`) or nothing moves.
+    """
+
+    frame: str
+    label: str
+    dlon_arcsec: float
+    dlat_arcsec: float
+    dlam_arcsec: float
+    dbeta_arcsec: float
+    dra_arcsec: float
+    ddec_arcsec: float
+    along_arcsec: float
+    across_arcsec: float
+    size_arcsec: float
+    pa_deg: float
+    fault: str = ""
+
+
+ECLIPTIC_J2000, EQUATOR_J2000 = "ecliptic/mean/J2000", "equator/mean/J2000"
+
+
+def differences(
+    direction: Float,
+    moment: Moment,
+    chosen: Frame | str,
+    *,
+    site: Ground | None = None,
+    motion: Float | None = None,
+    among: tuple[str, ...] = FRAMES,
+    also: tuple[str, ...] = (),
+) -> tuple[Difference, ...]:
+    """Return, for a direction (3,) on ICRS axes, the difference of every frame's numbers from those of a chosen one.
+
+    `motion` (3,) is where a body goes on the sky, on ICRS axes, of any length. Raises what the chosen frame raises.
+    """
+    here = np.asarray(direction, dtype=np.float64)
+    chosen = frames.parsed(chosen)
+    right = frames.from_icrs(here, chosen, moment, site)
+    wanted = tuple(dict.fromkeys((*among, *(str(Frame.parse(name)) for name in also))))
+    found: list[Difference] = []
+    for name in wanted:
+        frame = Frame.parse(name)
+        try:
+            read = frames.from_icrs(here, frame, moment, site)
+        except ColureError as fault:
+            nan = float("nan")
+            found.append(Difference(name, frame.label(), nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, str(fault)))
+            continue
+        there = frames.to_icrs(read, chosen, moment, site)
+        shift = _shift(here, there)
+        size = float(separation(here, there)) / ARCSEC
+        angle = float(position_angle(right, read)) / DEG if size > 1e-9 else float("nan")
+        parts = (
+            *_tangent(right, _shift(right, read)),
+            *_in_frame(here, shift, ECLIPTIC_J2000),
+            *_in_frame(here, shift, EQUATOR_J2000),
+            *_along(here, shift, motion),
+        )
+        dlon, dlat, dlam, dbeta, dra, ddec, along, across = (part / ARCSEC for part in parts)
+        found.append(Difference(name, frame.label(), dlon, dlat, dlam, dbeta, dra, ddec, along, across, size, angle))
+    return tuple(found)
+
+
+def _shift(here: Float, there: Float) -> Float:
+    """Return the tangent vector (3,) at `here` whose length is the angle to `there`, rad."""
+    flat = there - dot(here, there) * here
+    length = float(np.sqrt(flat @ flat))
+    return np.asarray(flat * (float(separation(here, there)) / length)) if length > 0.0 else np.zeros(3)
+
+
+def _tangent(here: Float, shift: Float) -> tuple[float, float]:
+    """Return the parts of a shift along growing longitude and latitude of the axes that both are on."""
+    x, y, z = (float(part) for part in here)
+    flat = float(np.hypot(x, y))
+    east = np.array([-y / flat, x / flat, 0.0]) if flat > 0.0 else np.array([0.0, 1.0, 0.0])
+    north = np.array([-z * east[1], z * east[0], x * east[1] - y * east[0]])
+    return float(shift @ east), float(shift @ north)
+
+
+def _in_frame(here: Float, shift: Float, name: str) -> tuple[float, float]:
+    matrix = frames.rotation(name).matrix
+    return _tangent(matrix @ here, matrix @ shift)
+
+
+def _along(here: Float, shift: Float, motion: Float | None) -> tuple[float, float]:
+    if motion is None:
+        return float("nan"), float("nan")
+    ahead = np.asarray(motion, dtype=np.float64)
+    ahead = ahead - dot(here, ahead) * here
+    length = float(np.sqrt(ahead @ ahead))
+    if not length > 0.0:
+        return float("nan"), float("nan")
+    ahead = ahead / length
+    return float(shift @ ahead), float(shift @ np.cross(ahead, here))
+
+
+NORTHS = ("equator/mean/J2000", "equator/mean/date", "equator/true/date", "ecliptic/mean/date", "galactic", "horizon")
+"""The poles from which position angles are counted in practice; that of the horizon is the zenith."""
+
+
+@dataclass(frozen=True, slots=True)
+class North:
+    """The bearing of one frame's pole: `turn_deg` its position angle from the north of J2000 through east.
+
+    `pa_deg` is the angle that was asked for, counted from this pole; NaN where the frame has no answer (`fault`).
+    """
+
+    frame: str
+    label: str
+    turn_deg: float
+    pa_deg: float
+    fault: str = ""
+
+
+def norths(
+    direction: Float,
+    moment: Moment,
+    *,
+    pa_deg: float = 0.0,
+    source: Frame | str = "equator/mean/J2000",
+    site: Ground | None = None,
+    among: tuple[str, ...] = NORTHS,
+) -> tuple[North, ...]:
+    """Return a position angle at a direction (3,), counted from the source's north, as counted from every other.
+
+    All angles run from north through celestial east, as on the sky, whatever way a frame's longitudes run: from the
+    zenith the bearing of celestial north is minus the parallactic angle. Raises FrameError at a pole of the source.
+    """
+    if not np.isfinite(pa_deg):
+        raise FrameError(f"position angle {pa_deg:g}: expected finite degrees")
+    here = np.asarray(direction, dtype=np.float64)
+    base = _bearing(here, EQUATOR_J2000, moment, site)
+    start = _bearing(here, source, moment, site)
+    rows = []
+    for name in among:
+        frame = Frame.parse(name)
+        try:
+            pole = _bearing(here, frame, moment, site)
+        except ColureError as fault:
+            rows.append(North(name, frame.label(), float("nan"), float("nan"), str(fault)))
+            continue
+        turn, angle = (pole - base) / DEG % 360.0, (pa_deg + (start - pole) / DEG) % 360.0
+        rows.append(North(name, frame.label(), turn, angle))
+    return tuple(rows)
+
+
+def carry_angle(
+    pa_deg: float,
+    source: Frame | str,
+    target: Frame | str,
+    direction: Float,
+    moment: Moment,
+    site: Ground | None = None,
+) -> float:
+    """Return a position angle at a direction (3, ICRS axes) counted from another frame's north, degrees 0 to 360."""
+    name = str(frames.parsed(target))
+    (row,) = norths(direction, moment, pa_deg=pa_deg, source=source, site=site, among=(name,))
+    if row.fault:
+        raise FrameError(row.fault)
+    return row.pa_deg
+
+
+def _bearing(here: Float, frame: Frame | str, moment: Moment, site: Ground | None) -> float:
+    """Return the angle (rad) of a frame's pole at a direction (3,), through east, from a north of its own."""
+    frame = frames.parsed(frame)
+    pole = frames.to_icrs(cartesian(0.0, np.pi / 2.0), frame, moment, site)
+    if not 1e-9 < float(separation(here, pole)) < np.pi - 1e-9:
+        raise FrameError(f"frame '{frame}': the direction is its pole, from which no angle can be counted")
+    if abs(float(here[2])) > 0.9:  # count from another axis near the pole; the order of axes keeps the sense
+        here, pole = np.roll(here, 1), np.roll(pole, 1)
+    return float(position_angle(here, pole))

@@ -289,19 +289,19 @@ def test_a_click_selects_and_the_panel_follows(qtbot, window):
 
 def test_shift_clicks_measure(qtbot, window):
     a, b = body_pixel(window, "uranus"), middle(window.chart)
-    with qtbot.waitSignal(window.chart.measured):
+    with qtbot.waitSignal(window.hand.measured):
         qtbot.mouseClick(window.chart, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.ShiftModifier, a)
     qtbot.mouseClick(window.chart, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.ShiftModifier, b)
     text = window.right.measure.text.text()
     assert "Uranus →" in text
     assert "position angle" in text
     # The second end is the star or the point there.
-    v, w = window.chart.sky["bodies"].vector("uranus"), window.chart._to.vector
+    v, w = window.chart.sky["bodies"].vector("uranus"), window.chart.ends[1].vector
     assert f"\n{int(np.degrees(np.arccos(v @ w))):02d}°" in text
 
 
 def test_hovering_says_what_is_there(qtbot, window):
-    with qtbot.waitSignal(window.chart.hovered, check_params_cb=lambda text: text.startswith("Uranus")):
+    with qtbot.waitSignal(window.hand.hovered, check_params_cb=lambda text: text.startswith("Uranus")):
         qtbot.mouseMove(window.chart, body_pixel(window, "uranus") + QPoint(30, 30))
         qtbot.mouseMove(window.chart, body_pixel(window, "uranus"))
     assert "β" in window._hover.text()
@@ -490,8 +490,8 @@ def test_nothing_is_cut_at_any_size(qtbot, window, size):
 
 def test_the_toggles_of_the_menu(window):
     session = window.desk.session
-    for name in ("toggle_belt", "toggle_edges", "toggle_milky_way", "toggle_deep_sky", "toggle_grid", "mirror", "turn_up",
-                 "whole_sky"):  # fmt: skip
+    layers = [f"toggle_{layer}" for layer in ("belt", "edges", "milky_way", "deep_sky", "grid")]
+    for name in (*layers, "mirror", "turn_up", "whole_sky"):
         window.actions_by_name[name].trigger()
         assert window.desk.session != session, name
         window.undo()

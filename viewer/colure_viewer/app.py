@@ -25,7 +25,8 @@ def application() -> QApplication:
     made = running if isinstance(running, QApplication) else QApplication(sys.argv[:1])
     made.setApplicationName("colure")
     made.setApplicationDisplayName("Colure")
-    made.setStyle("Fusion")
+    if made.style().name() != "fusion":
+        made.setStyle("Fusion")
     style.set_font(made)
     return made
 

@@ -5,7 +5,7 @@ from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF, Qt
+from PySide6.QtCore import QPointF
 from PySide6.QtGui import QColor, QFontMetricsF, QImage, QPainter, QPixmap
 
 from colure_viewer.fonts import CAP_MIDDLE, font
@@ -29,7 +29,7 @@ def blank(width: int, height: int) -> QImage:
 
 def _clear_pixmap(width: int, height: int) -> QPixmap:
     pixmap = QPixmap(width, height)
-    pixmap.fill(Qt.GlobalColor.transparent)
+    pixmap.fill(QColor(0, 0, 0, 0))
     return pixmap
 
 
@@ -206,7 +206,7 @@ class TextAtlas:
         rise, fall = math.ceil(metrics.ascent()), math.ceil(metrics.descent())
         line = rise + fall + 2 * pad
         work, spots = [], []
-        x = y = 0
+        x = y = widest = 0
         for text in texts:
             advance = metrics.horizontalAdvance(text)
             width = min(math.ceil(advance) + 2 * pad + 2, self.WIDTH)
@@ -214,7 +214,8 @@ class TextAtlas:
                 x, y = 0, y + line
             work.append((text, x, y, width, advance))
             x += width
-        sheet = blank(self.WIDTH, y + line)
+            widest = max(widest, x)
+        sheet = blank(widest, y + line)
         painter = QPainter(sheet)
         painter.setRenderHint(QPainter.RenderHint.TextAntialiasing)
         painter.setFont(pen_font)

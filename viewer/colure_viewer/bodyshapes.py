@@ -2,11 +2,11 @@
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF, Qt
-from PySide6.QtGui import QColor, QPainter, QPen
+from PySide6.QtCore import QPointF
+from PySide6.QtGui import QBrush, QColor, QPainter, QPainterPath, QPen
 
 from colure.marks import Bodies
-from colure_viewer.primitives import polygon
+from colure_viewer.primitives import path
 from colure_viewer.themes import Theme, mix
 
 F64 = NDArray[np.float64]
@@ -40,22 +40,21 @@ def draw_bodies(painter: QPainter, mark: Bodies, theme: Theme, scale: float) -> 
         bright, night = (
             (colour, mix(sky, colour, 0.28)) if theme.dark else (mix("#FFFFFF", colour, 0.14), mix(sky, colour, 0.62))
         )
-        pen = QPen(QColor(colour), OUTLINE * scale)
-        painter.setPen(Qt.PenStyle.NoPen)
-        centre = QPointF(x, y)
         if lit >= 0.999 or radius < 2.0 * scale:
-            painter.setBrush(QColor(bright))
-            painter.drawEllipse(centre, radius, radius)
+            painter.fillPath(_disc(x, y, radius), QColor(bright))
         else:
-            painter.setBrush(QColor(night))
-            painter.drawEllipse(centre, radius, radius)
+            painter.fillPath(_disc(x, y, radius), QColor(night))
             if lit > 0.001:
-                painter.setBrush(QColor(bright))
-                painter.drawPolygon(polygon(lit_shape(radius, lit, float(mark.limb[row]), x, y)))
-        painter.setBrush(Qt.BrushStyle.NoBrush)
-        painter.setPen(pen)
-        painter.drawEllipse(centre, radius, radius)
+                shape = lit_shape(radius, lit, float(mark.limb[row]), x, y)
+                painter.fillPath(path(shape, np.array([0, len(shape)], dtype=np.int32)), QColor(bright))
+        painter.setBrush(QBrush())
+        painter.setPen(QPen(QColor(colour), OUTLINE * scale))
+        painter.drawEllipse(QPointF(x, y), radius, radius)
         if name == "sun" and not mark.true_size[row]:
-            painter.setPen(Qt.PenStyle.NoPen)
-            painter.setBrush(QColor(sky if theme.dark else colour))
-            painter.drawEllipse(centre, 1.6 * scale, 1.6 * scale)
+            painter.fillPath(_disc(x, y, 1.6 * scale), QColor(sky if theme.dark else colour))
+
+
+def _disc(x: float, y: float, radius: float) -> QPainterPath:
+    disc = QPainterPath()
+    disc.addEllipse(QPointF(x, y), radius, radius)
+    return disc

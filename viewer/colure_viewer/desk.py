@@ -2,14 +2,17 @@
 
 from collections.abc import Callable
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QObject, Signal
 
 from colure.errors import ColureError
-from colure.pointing import Pointed
 from colure.session import Session
 from colure_viewer.history import History
 from colure_viewer.themes import THEMES, Theme
+
+if TYPE_CHECKING:
+    from colure.pointing import Pointed
 
 
 class Desk(QObject):
@@ -50,7 +53,7 @@ class Desk(QObject):
         return self.session != self._saved
 
     @property
-    def selection(self) -> Pointed | None:
+    def selection(self) -> "Pointed | None":
         """What is selected, or None."""
         return self._selection
 
@@ -117,7 +120,7 @@ class Desk(QObject):
         self._saved, self.path = self.session, path
         self.filed.emit()
 
-    def select(self, selection: Pointed | None) -> None:
+    def select(self, selection: "Pointed | None") -> None:
         """Select something; the session is not touched."""
         if selection != self._selection:
             self._selection = selection

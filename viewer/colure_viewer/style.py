@@ -83,8 +83,8 @@ def sheet(theme: Theme) -> str:
     QMenuBar {{ background: {c("window")}; color: {c("ink")}; }}
     QMenuBar::item:selected, QMenu::item:selected {{ background: {c("accent")}; color: {c("on.accent")}; }}
     QMenu {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")}; }}
-    QStatusBar {{ background: {c("window")}; color: {c("ink")}; }}
-    QStatusBar::item {{ border: 0; }}
+
+
     QToolTip {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")}; padding: 3px; }}
     QCheckBox {{ spacing: 6px; }}
     QCheckBox::indicator, QTableView::indicator {{ width: 7px; height: 7px; padding: 2px;

@@ -5,13 +5,13 @@ from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from PySide6.QtCore import QSettings, QSize, Qt, QTimer
-from PySide6.QtGui import QAction, QActionGroup, QCloseEvent
+from PySide6.QtCore import QSettings, QSize, QTimer
+from PySide6.QtGui import QAction, QCloseEvent
 from PySide6.QtWidgets import QApplication, QHBoxLayout, QLabel, QMainWindow, QMenu, QVBoxLayout, QWidget
 
 from colure.errors import ColureError
 from colure.session import Session
-from colure_viewer import actions, style
+from colure_viewer import style
 from colure_viewer.chart import ChartWidget
 from colure_viewer.desk import Desk
 from colure_viewer.jobs import Jobs
@@ -19,9 +19,10 @@ from colure_viewer.themes import THEMES
 
 if TYPE_CHECKING:
     from colure.targets import Target
+    from colure_viewer.hand import Hand
     from colure_viewer.panels.sides import LeftSide, RightSide, TopBar
 
-LEFT, RIGHT, TOP = 256, 318, 68
+LEFT, RIGHT, TOP, FOOT = 256, 318, 68, 26
 """Room kept for the panels before they are there, in logical pixels."""
 RECENT = 8
 NOTICE_MS = 8000
@@ -35,18 +36,19 @@ class Window(QMainWindow):
         self.desk = desk
         self.settings = settings if settings is not None else QSettings("colure", "colure")
         self.jobs = Jobs(self)
+        self.hand: Hand | None = None
         self.top: TopBar | None = None
         self.left: LeftSide | None = None
         self.right: RightSide | None = None
         self.chart = ChartWidget(desk)
+        self._hover = QLabel()
         self.setWindowTitle("Colure")
-        self._top_room, self._left_room, self._right_room = QWidget(), QWidget(), QWidget()
+        # Empty rooms of the panels' sizes: the chart does not move when the panels come.
+        self._top_room, self._left_room, self._right_room, self._foot_room = (QWidget() for _ in range(4))
+        self._foot_room.setFixedHeight(FOOT)
         self._top_room.setFixedHeight(TOP)
         self._left_room.setFixedWidth(LEFT)
         self._right_room.setFixedWidth(RIGHT)
-        for room in (self._top_room, self._left_room, self._right_room):
-            layout = QVBoxLayout(room)
-            layout.setContentsMargins(0, 0, 0, 0)
         middle = QHBoxLayout()
         middle.setContentsMargins(0, 0, 0, 0)
         middle.setSpacing(0)
@@ -59,11 +61,8 @@ class Window(QMainWindow):
         column.setSpacing(0)
         column.addWidget(self._top_room)
         column.addLayout(middle, 1)
+        column.addWidget(self._foot_room)
         self.setCentralWidget(whole)
-        self._hover = QLabel()
-        self._hover.setAccessibleName("Under the pointer")
-        self.statusBar().addWidget(self._hover, 1)
-        self.statusBar().setSizeGripEnabled(False)
         self.setMinimumSize(QSize(1000, 660))
         self.actions_by_name: dict[str, QAction | QMenu] = {}
         desk.checker = self.chart.check
@@ -72,13 +71,11 @@ class Window(QMainWindow):
         desk.themed.connect(self._themed)
         desk.faulted.connect(self.say)
         desk.noted.connect(self.note)
-        self.chart.hovered.connect(self._hovered)
         self.chart.painted.connect(self.finish)
         self._notice = QTimer(self)
         self._notice.setSingleShot(True)
         self._notice.timeout.connect(lambda: self._show_hover("", False))
         self._retitle()
-        self.chart.setFocus()
 
     # Building what can wait
 
@@ -86,6 +83,8 @@ class Window(QMainWindow):
         """Make the menus and panels; called once the first chart is on the screen."""
         if self.top is not None:
             return
+        from colure_viewer import actions
+        from colure_viewer.hand import Hand
         from colure_viewer.panels.sides import LeftSide, Progress, RightSide, TopBar
 
         self.actions_by_name = actions.build(self)
@@ -95,13 +94,20 @@ class Window(QMainWindow):
         self.left = LeftSide(self.desk)
         self.right = RightSide(self.desk)
         for room, side in ((self._top_room, self.top), (self._left_room, self.left), (self._right_room, self.right)):
-            layout = room.layout()
-            assert layout is not None
+            layout = QVBoxLayout(room)
+            layout.setContentsMargins(0, 0, 0, 0)
             layout.addWidget(side)
         self._top_room.setFixedHeight(self.top.sizeHint().height())
-        self.chart.measured.connect(self.right.measure.show_text)
+        self.hand = Hand(self.desk, self.chart)
+        self.hand.hovered.connect(self._hovered)
+        self.hand.measured.connect(self.right.measure.show_text)
+        self.chart.setFocus()
         self.progress = Progress(self.jobs)
-        self.statusBar().addPermanentWidget(self.progress)
+        self._hover.setAccessibleName("Under the pointer")
+        foot = QHBoxLayout(self._foot_room)
+        foot.setContentsMargins(10, 0, 10, 0)
+        foot.addWidget(self._hover, 1)
+        foot.addWidget(self.progress)
         for name in ("toggle_left", "toggle_right"):
             self._check(name, True)
         self._changed(False)
@@ -359,11 +365,13 @@ class Window(QMainWindow):
 
     def zoom_in(self) -> None:
         """Magnify about the middle."""
-        self.chart.zoom(1.5)
+        if self.hand is not None:
+            self.hand.zoom(1.5)
 
     def zoom_out(self) -> None:
         """Show more of the sky."""
-        self.chart.zoom(1.0 / 1.5)
+        if self.hand is not None:
+            self.hand.zoom(1.0 / 1.5)
 
     def whole_sky(self) -> None:
         """Show as much of the sky as the projection can, or of all of it where none of a hemisphere fits."""
@@ -373,8 +381,8 @@ class Window(QMainWindow):
 
     def centre_selection(self) -> None:
         """Centre the chart on the selection."""
-        if self.desk.selection is not None:
-            self.chart.centre_on(self.desk.selection)
+        if self.desk.selection is not None and self.hand is not None:
+            self.hand.centre_on(self.desk.selection)
         else:
             self.say("Nothing is selected: click an object, or find one by name")
 
@@ -455,16 +463,18 @@ class Window(QMainWindow):
         from colure import pointing
 
         found = pointing.target(self.chart.sky, target)
-        if found is None:
+        if found is None or self.hand is None:
             self.say(f"{target.name} cannot be shown at this moment")
             return
         self.desk.select(found)
-        self.chart.centre_on(found)
+        self.hand.centre_on(found)
         self.chart.setFocus()
 
     # Focus, looks, help
 
     def _focus(self, field: QWidget) -> None:
+        from PySide6.QtCore import Qt
+
         field.setFocus(Qt.FocusReason.ShortcutFocusReason)
         if hasattr(field, "selectAll"):
             field.selectAll()
@@ -506,6 +516,8 @@ class Window(QMainWindow):
         self._check("full_screen", not full)
 
     def _theme_menu(self) -> None:
+        from PySide6.QtGui import QActionGroup
+
         menu = self.actions_by_name["theme"]
         assert isinstance(menu, QMenu)
         group = QActionGroup(menu)
@@ -537,6 +549,7 @@ class Window(QMainWindow):
 
     def show_help(self) -> None:
         """Show keys and gestures."""
+        from colure_viewer import actions
         from colure_viewer.panels.help import show_keys
 
         show_keys(self, actions.help_rows(self.actions_by_name))
