@@ -18,6 +18,7 @@ COMMANDS = {
     "chart": "Draw a chart to a PNG, SVG or PDF file.",
     "where": "Where bodies are: places, distances, rates, phases, magnitudes.",
     "convert": "Carry a position, or a table of them, from one frame to another.",
+    "ledger": "Every step of a reduction, with its size, model and uncertainty.",
     "time": "One moment in every time scale, with sidereal times.",
     "obliquity": "The obliquity of the ecliptic by every model.",
     "selfcheck": "Check the shipped data, the versions and the platform.",
