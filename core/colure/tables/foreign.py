@@ -81,8 +81,9 @@ def _votable(data: bytes, where: str) -> tuple[Any, list[str]]:
     if not tables:
         raise TableError(f"{where}: no table with rows in it")
     notes = [] if len(tables) == 1 else [f"the first of {len(tables)} tables was read"]
-    if tables[0].nrows > MOST_ROWS:
-        raise TableError(f"{where}: {tables[0].nrows:,} rows; expected at most {MOST_ROWS:,}")
+    rows = len(tables[0].array)  # `nrows` is an attribute of the file, which may lack it
+    if rows > MOST_ROWS:
+        raise TableError(f"{where}: {rows:,} rows; expected at most {MOST_ROWS:,}")
     return tables[0].to_table(use_names_over_ids=True), notes
 
 
