@@ -18,7 +18,7 @@ from colure.projections import Projector, Real
 Rect = tuple[float, float, float, float]
 FAR = 4096.0
 """Pixels outside the map beyond which lines and areas are cut on the page too, because painters lose large numbers."""
-_PARTS = 48
+_PARTS = 24
 """Pieces that an arc is divided into where it swings over the page."""
 
 
@@ -43,7 +43,7 @@ class Window:
         if projector.projection.unrolled:
             return cls(projector, rect, edge)
         corners = np.array([[rect[0], rect[1]], [rect[2], rect[1]], [rect[0], rect[3]], [rect[2], rect[3]]])
-        plane = (corners - projector.shift) @ np.linalg.inv(projector.plane).T
+        plane = projector.to_plane(corners)
         camera = projector.projection.inverse(plane[:, 0], plane[:, 1])
         reach = np.arccos(np.clip(camera[2], -1.0, 1.0))
         return cls(projector, rect, edge if np.isnan(reach).any() else float(min(edge, reach.max())))
@@ -142,7 +142,7 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
         whole[far] = False
         more = np.stack([x[far], y[far], x[far + 1], y[far + 1]], axis=1).astype(np.float64)
         ends, owner = np.concatenate([ends, more]), np.concatenate([owner, far])
-    if len(owner):
+    if len(owner) and np.abs(ends).max() > FAR:
         ends, kept = _boxed(ends, window.rect)
         owner = owner[kept]
     return Trace(x, y, whole, ends.reshape(-1, 2).astype(np.float32), owner)

@@ -234,6 +234,12 @@ def _table() -> dict[str, Projection]:
 PROJECTIONS = _table()
 
 
+def cross(a: Float, b: Float) -> Float:
+    """Return the vector product of two single vectors (3,), without the overhead of the general one."""
+    (ax, ay, az), (bx, by, bz) = a.tolist(), b.tolist()
+    return np.array([ay * bz - az * by, az * bx - ax * bz, ax * by - ay * bx])
+
+
 def orientation(centre: Float, pole: Float, spare: Float, east_left: bool, unrolled: bool) -> Float:
     """Return the camera matrix (3, 3): the ONE place where handedness and up are decided.
 
@@ -249,15 +255,15 @@ def orientation(centre: Float, pole: Float, spare: Float, east_left: bool, unrol
       centre's meridian on the equator; its latitude is a shift on the plane.
     - The turn of the picture and the downward y of pixels are in Projector.plane, after the projection.
     """
-    east = np.cross(pole, centre)
+    east = cross(pole, centre)
     # 1e-9 is far below a pixel of the narrowest field, and far above the noise of a cross product.
     if float(np.sqrt(east @ east)) < 1e-9:
-        east = np.cross(pole, spare)
+        east = cross(pole, spare)
     east = east / np.sqrt(east @ east)
-    forward = np.cross(east, pole) if unrolled else centre
-    north = np.cross(forward, east)
+    forward = cross(east, pole) if unrolled else centre
+    north = cross(forward, east)
     right = -east if east_left else east
-    return np.stack([right, north, forward])
+    return np.array([right, north, forward])
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -280,8 +286,14 @@ class Projector:
 
     def __post_init__(self) -> None:
         """Keep the inverse of the plane's map and a float32 copy of the camera."""
-        object.__setattr__(self, "_back", np.linalg.inv(self.plane))
+        (a, b), (c, d) = self.plane.tolist()
+        # The plane's map is a turn, a mirror and a scale: its determinant is never near nought.
+        object.__setattr__(self, "_back", np.array([[d, -b], [-c, a]]) / (a * d - b * c))
         object.__setattr__(self, "_camera32", self.camera.astype(np.float32))
+
+    def to_plane(self, xy: Float) -> Float:
+        """Return points (..., 2) on the projection's plane for pixels (..., 2)."""
+        return np.asarray((xy - self.shift) @ self._back.T)
 
     def to_camera(self, columns: Real) -> Real:
         """Return camera axes (3, N) of directions (3, N) on ICRS axes, in the precision given."""
@@ -318,8 +330,7 @@ class Projector:
 
     def unproject(self, xy: Any) -> Float:
         """Return unit vectors (..., 3) on ICRS axes for pixels (..., 2); NaN off the sky."""
-        page = np.asarray(xy, dtype=np.float64) - self.shift
-        plane = page @ self._back.T
+        plane = self.to_plane(np.asarray(xy, dtype=np.float64))
         camera = self.projection.inverse(plane[..., 0], plane[..., 1])
         camera = np.where(self.on_sky(camera), camera, np.nan)
         return np.asarray(np.moveaxis(camera, 0, -1) @ self.camera)

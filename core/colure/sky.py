@@ -75,8 +75,7 @@ class FrameAxes:
     @property
     def left_handed(self) -> bool:
         """Whether longitudes run the other way round the pole, as azimuths do."""
-        m = self.matrix
-        return m is not None and bool(np.cross(m[:, 0], m[:, 1]) @ m[:, 2] < 0.0)
+        return self.frame.plane == "horizon"
 
     def columns(self, lon: Float, lat: Float | float) -> Float:
         """Return directions (3, N) on ICRS axes for longitudes and latitudes (N,) in radians."""

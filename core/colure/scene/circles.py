@@ -4,11 +4,12 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colure.arrays import ARCSEC, DEG, TWO_PI, Bool, Float, Int, cartesian
 from colure.clipping import Trace, lines, trace
-from colure.graduation import Steps, grid_step, multiples, steps, visible_longitudes
-from colure.marks import CIRCLE, DIVISION, F32, GRID, Layer, Lines, Mark, Segments
+from colure.graduation import TURN, Steps, grid_step, multiples, steps, visible_longitudes
+from colure.marks import CIRCLE, DIVISION, F32, GRID, I32, Layer, Lines, Mark, Segments
 from colure.scene.context import Context, in_page
 from colure.session import Circle
 from colure.sky import FrameAxes
@@ -19,16 +20,20 @@ _TICKS = np.array(TICKS, np.float32)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Curve:
-    """A graduated curve on the page, sampled at every smallest tick.
+class Curves:
+    """The reference circles on the page, point after point, circle after circle.
 
-    `arcsec` (N,) longitudes as whole arcseconds, `xy` (N, 2) pixels, `tangent` (N, 2) unit vectors towards growing
-    longitude, `north` (N, 2) unit vectors to the north side, `shown` (N,) whether the point is on the map.
+    `circles` (C,) those that are shown and `numbers` (C,) their places in the session's list; `graduated` (C,), and
+    `major` (C,) the spacing of their figures in arcseconds. For every point, (N,): `row` which of the circles it is on,
+    `arcsec` its longitude as a whole number, `xy` (N, 2) its pixel, `tangent` and `north` (N, 2) unit vectors on the
+    page towards growing longitude and towards the north side, `shown` whether it is on the map.
     """
 
-    number: int
-    circle: Circle
-    steps: Steps
+    circles: tuple[Circle, ...]
+    numbers: Int
+    graduated: Bool
+    major: Int
+    row: NDArray[np.intp]
     arcsec: Int
     xy: F32
     tangent: F32
@@ -71,7 +76,7 @@ def columns_of(axes: FrameAxes, first: float, last: float, step: int, lat: float
     return arcsec, axes.matrix @ columns
 
 
-def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
+def build(ctx: Context) -> tuple[Layer, Curves | None]:
     """Return the layer of circles, and their curves for the labels."""
     parts: list[tuple[int, Circle, FrameAxes, Int, Float, Steps]] = []
     for number, (circle, axes) in enumerate(ctx.sky["circles"]):
@@ -80,41 +85,59 @@ def build(ctx: Context) -> tuple[Layer, tuple[Curve, ...]]:
         if last > first:
             # Degrees of longitude are shorter on a small circle.
             chosen = steps(ctx.step_scale * float(np.cos(lat)))
-            parts.append((number, circle, axes, *columns_of(axes, first, last, chosen.minor, lat), chosen))
+            parts.append((number, circle, axes, *columns_of(axes, first, last, _fine(chosen.minor), lat), chosen))
     if not parts:
-        return Layer("circles", (), key(ctx)), ()
-    starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
+        return Layer("circles", (), key(ctx)), None
+    sizes = [len(part[3]) for part in parts]
+    starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
+    row = np.repeat(np.arange(len(parts)), sizes)
     columns = np.concatenate([part[4] for part in parts], axis=1)
     drawn = trace(ctx.window, ctx.projector.to_camera(columns), starts)
     tangent, valid = _tangents(drawn)
     valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
-    xy = np.stack([drawn.x, drawn.y], axis=1).astype(np.float32)
+    xy = np.empty((len(row), 2), np.float32)
+    xy[:, 0], xy[:, 1] = drawn.x, drawn.y
     arcsec = np.concatenate([part[3] for part in parts])
     # North is to the left of growing longitude seen from outside the sphere; a sky chart is seen from inside, and the
     # horizon counts its azimuths the other way round.
     side = 1.0 if ctx.view.east_left else -1.0
-    hands = [-side if part[2].left_handed else side for part in parts]
-    hand = np.repeat(np.array(hands, np.float32), np.diff(starts))
+    hand = np.array([-side if part[2].left_handed else side for part in parts], np.float32)[row]
     north = np.empty_like(tangent)
     north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
-    lengths = np.diff(starts)
-    major = arcsec % np.repeat([part[5].major for part in parts], lengths) == 0
-    middle = arcsec % np.repeat([part[5].middle for part in parts], lengths) == 0
-    ticks = np.empty((len(xy), 4), np.float32)
-    ticks[:, :2] = xy
-    ticks[:, 2:] = xy + north * _TICKS[major.astype(np.intp) + middle][:, None]
+    minor, middle, major = (
+        np.array([getattr(part[5], name) for part in parts]) for name in ("minor", "middle", "major")
+    )
+    graduated = np.array([part[1].graduated for part in parts])
+    at = np.flatnonzero(valid & graduated[row] & (arcsec % minor[row] == 0))
+    here, which = arcsec[at], row[at]
+    length = _TICKS[(here % major[which] == 0).astype(np.intp) + (here % middle[which] == 0)]
+    ticks = np.concatenate([xy[at], xy[at] + north[at] * length[:, None]], axis=1)
+    tick_at = np.searchsorted(at, starts)
     marks: list[Mark] = []
-    curves: list[Curve] = []
-    for k, ((points, ends), part) in enumerate(zip(drawn.polylines(starts), parts, strict=True)):
-        if len(ends) < 2:
-            continue
-        number, circle, chosen = part[0], part[1], part[5]
-        own = slice(int(starts[k]), int(starts[k + 1]))
-        marks.append(Lines("circle", points, ends, CIRCLE, circle.colour))
-        curves.append(Curve(number, circle, chosen, arcsec[own], xy[own], tangent[own], north[own], valid[own]))
-        if circle.graduated:
-            marks.append(Segments("circle", ticks[own][valid[own]], GRID, circle.colour))
-    return Layer("circles", tuple(marks), key(ctx)), tuple(curves)
+    for k, (points, ends) in enumerate(drawn.polylines(starts)):
+        colour = parts[k][1].colour
+        if len(ends) > 1:
+            marks.append(Lines("circle", points, ends, CIRCLE, colour))
+        if tick_at[k + 1] > tick_at[k]:
+            marks.append(Segments("circle", ticks[tick_at[k] : tick_at[k + 1]], GRID, colour))
+    curves = Curves(
+        tuple(part[1] for part in parts),
+        np.array([part[0] for part in parts]),
+        graduated,
+        major,
+        row,
+        arcsec,
+        xy,
+        tangent,
+        north,
+        valid,
+    )
+    return Layer("circles", tuple(marks), key(ctx)), curves
+
+
+def _fine(minor: int) -> int:
+    """Return the spacing of a curve's points in arcseconds: the smallest tick, or a part of it that looks round."""
+    return minor if minor <= 7200 else 3600 if minor == 18000 else 7200
 
 
 def key(ctx: Context) -> object:
@@ -142,40 +165,59 @@ def grid(ctx: Context) -> Layer:
     """Return the layer of coordinate lines, evenly spaced in latitude, and in longitude as evenly as a pole allows."""
     step = grid_step(ctx.step_scale)
     axes: FrameAxes = ctx.sky["grid"]
+    if ctx.window.radius > 1.0 and axes.matrix is not None:
+        columns, starts = _whole_grid(step)
+        camera = np.asarray((ctx.projector.camera @ axes.matrix).astype(np.float32) @ columns)
+    else:
+        part, starts = _part_grid(ctx, axes, step)
+        camera = ctx.projector.to_camera(part)
+    if len(starts) < 2:
+        return Layer("grid", (), grid_key(ctx))
+    xy, ends = lines(ctx.window, camera, starts)
+    return Layer("grid", (Lines("grid", xy, ends, GRID),), grid_key(ctx))
+
+
+@lru_cache(maxsize=8)
+def _whole_grid(step: int) -> tuple[F32, I32]:
+    """Return the lines of the whole sky in the grid's own frame: columns (3, N), a point every two degrees, starts."""
+    lats = multiples(step, -0.4999 * np.pi, 0.4999 * np.pi)
+    lons = np.arange(0, TURN, step)
+    along, across = np.linspace(0.0, TWO_PI, 181), np.linspace(-0.5 * np.pi, 0.5 * np.pi, 91)
+    parallels = cartesian(np.tile(along, len(lats)), np.repeat(_radians(lats), len(along)))
+    meridians = cartesian(np.repeat(_radians(lons), len(across)), np.tile(across, len(lons)))
+    sizes = [len(along)] * len(lats) + [len(across)] * len(lons)
+    columns = np.ascontiguousarray(np.concatenate([parallels, meridians]).T.astype(np.float32))
+    return columns, np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
+
+
+def _part_grid(ctx: Context, axes: FrameAxes, step: int) -> tuple[Float, I32]:
+    """Return the lines that a small field may show, on ICRS axes: columns (3, N), starts."""
     pieces: list[Float] = []
     sizes: list[int] = []
     radius = ctx.window.radius
     lon0, lat0 = (float(v[0]) for v in axes.spherical(ctx.window.centre[None, :]))
-    whole = radius > 1.0
-    low, high = (-np.pi / 2, np.pi / 2) if whole else (max(lat0 - radius, -np.pi / 2), min(lat0 + radius, np.pi / 2))
+    low, high = max(lat0 - radius, -np.pi / 2), min(lat0 + radius, np.pi / 2)
     for arcsec in multiples(step, low, high).tolist():
         lat = arcsec * ARCSEC
-        first, last = (0.0, TWO_PI) if whole else visible_longitudes(lon0, lat0, radius, lat)
+        first, last = visible_longitudes(lon0, lat0, radius, lat)
         if abs(lat) < np.pi / 2 - 1e-9 and last > first:
             n = _points(ctx, (last - first) * float(np.cos(lat)))
             pieces.append(axes.columns(np.linspace(first, last, n), lat))
             sizes.append(n)
-    reach = (0.0, TWO_PI)
-    if not whole:
-        spans = [visible_longitudes(lon0, lat0, radius, lat) for lat in (low, lat0, high, 0.5 * (low + lat0))]
-        spans.append(visible_longitudes(lon0, lat0, radius, float(np.arcsin(np.clip(np.sin(lat0), -1, 1)))))
-        reach = (min(s[0] for s in spans), max(s[1] for s in spans))
-        if reach[1] - reach[0] > TWO_PI:
-            reach = (0.0, TWO_PI)
+    spans = [visible_longitudes(lon0, lat0, radius, lat) for lat in (low, lat0, high, 0.5 * (low + lat0))]
+    first, last = min(s[0] for s in spans), max(s[1] for s in spans)
+    if last - first > TWO_PI:
+        first, last = 0.0, TWO_PI
     lon_step = _meridian_step(step, min(abs(low), abs(high)) if low * high > 0 else 0.0)
+    meridians = multiples(lon_step, first, last)
+    if last - first >= TWO_PI - 1e-9:
+        meridians = np.unique(meridians % TURN)
     lats = np.linspace(low, high, _points(ctx, high - low))
-    meridians = multiples(lon_step, *reach)
-    if reach[1] - reach[0] >= TWO_PI - 1e-9:
-        meridians = np.unique(meridians % 1296000)
     for arcsec in meridians.tolist():
         pieces.append(axes.columns(np.full(len(lats), arcsec * ARCSEC), lats))
         sizes.append(len(lats))
-    if not pieces:
-        return Layer("grid", (), grid_key(ctx))
     starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
-    camera = ctx.projector.to_camera(np.concatenate(pieces, axis=1))
-    xy, ends = lines(ctx.window, camera, starts)
-    return Layer("grid", (Lines("grid", xy, ends, GRID),), grid_key(ctx))
+    return (np.concatenate(pieces, axis=1) if pieces else np.empty((3, 0))), starts
 
 
 def _meridian_step(step: int, nearest_lat: float) -> int:
@@ -195,4 +237,4 @@ def grid_key(ctx: Context) -> object:
     return (ctx.sky.key("grid"), ctx.view_key)
 
 
-__all__ = ["DIVISION", "Curve", "build", "columns_of", "grid", "grid_key", "key", "span"]
+__all__ = ["DIVISION", "Curves", "build", "columns_of", "grid", "grid_key", "key", "span"]

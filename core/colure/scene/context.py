@@ -50,7 +50,7 @@ class Context:
 
     @property
     def step_scale(self) -> float:
-        """Pixels per radian to choose steps by: the centre's, or less where the map is squeezed, as at a sheet's pole."""
+        """Pixels per radian to choose steps by: the centre's, or less where the map is squeezed, as at a pole."""
         left, top, right, bottom = self.frame
         return min(self.scale, 1.5 * float(np.hypot(right - left, bottom - top)) / self.window.radius)
 

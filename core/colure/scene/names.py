@@ -12,7 +12,7 @@ from colure.labels import NOWHERE, Placement, Request, around, join, merged, pla
 from colure.marks import F32, I32, Labels, Layer
 from colure.scene import bodies as body_marks
 from colure.scene import stars as star_marks
-from colure.scene.circles import TICKS, Curve
+from colure.scene.circles import TICKS, Curves
 from colure.scene.context import Context, on_page
 
 # The first part of a text's identity; the second is the row in its source.
@@ -84,7 +84,7 @@ def upright(tangent: F32) -> F32:
 
 def build(
     ctx: Context,
-    curves: tuple[Curve, ...],
+    curves: Curves | None,
     shown: star_marks.Shown | None,
     listed: body_marks.Shown,
     memory: Any,
@@ -149,85 +149,86 @@ def _stable(name: str) -> int:
     return value
 
 
-def _circle_names(ctx: Context, curves: tuple[Curve, ...]) -> Wanted | None:
+def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     """Return the circles' names, to stand along their curves between two figures, on the north side."""
+    if curves is None:
+        return None
     size = 10.0
     tall = height(size)
-    spots = [_spots(curve) for curve in curves]
-    used = [(curve, at) for curve, at in zip(curves, spots, strict=True) if len(at)]
-    if not used:
+    half_step = curves.major // 2
+    major = curves.major[curves.row]
+    at = np.flatnonzero(curves.shown & ((curves.arcsec - half_step[curves.row]) % major == 0))
+    missing = np.setdiff1d(curves.row[curves.shown], curves.row[at])
+    if len(missing):
+        # No such longitude is on the map: any point will do.
+        at = np.sort(np.concatenate([at, np.flatnonzero(curves.shown & np.isin(curves.row, missing))[::5]]))
+    if not len(at):
         return None
-    row = np.repeat(np.arange(len(used)), [len(at) for _, at in used])
-    widths = np.array([width_px(curve.circle.name, size, "label.circle", italic=True) for curve, _ in used])
-    lift = np.array([(TICKS[2] if c.circle.graduated else 0.0) + 4.0 + 0.5 * tall for c, _ in used], np.float32)
-    angle = upright(np.concatenate([curve.tangent[at] for curve, at in used]))
-    north = np.concatenate([curve.north[at] for curve, at in used])
-    xy = np.concatenate([curve.xy[at] for curve, at in used]) + north * lift[row, None]
+    used, row = np.unique(curves.row[at], return_inverse=True)
+    circles = [curves.circles[i] for i in used.tolist()]
+    texts = tuple(circle.name for circle in circles)
+    widths = np.array([width_px(text, size, "label.circle", italic=True) for text in texts])
+    lift = (np.where(curves.graduated[used], TICKS[2], 0.0) + 4.0 + 0.5 * tall).astype(np.float32)
+    angle = upright(curves.tangent[at])
     # A spot's number belongs to its longitude, so that a name stays there while the view moves over it.
-    arcsec = np.concatenate([curve.arcsec[at] for curve, at in used])
-    major = np.array([curve.steps.major for curve, _ in used])
-    number = (arcsec // major[row]) % NAME_SPOTS
+    number = (curves.arcsec[at] // major[at]) % NAME_SPOTS
     centres = np.full((len(used), NAME_SPOTS, 2), np.nan, np.float32)
     angles = np.zeros((len(used), NAME_SPOTS), np.float32)
     halves = np.zeros((len(used), NAME_SPOTS, 2), np.float32)
-    centres[row, number], angles[row, number] = xy, angle
+    centres[row, number] = curves.xy[at] + curves.north[at] * lift[row, None]
+    angles[row, number] = angle
     halves[row, number] = turned_half(widths[row], tall, angle)
     # Best left of the middle and above it, where nothing else begins.
     left, top, right, bottom = ctx.frame
     away = np.nan_to_num(centres, nan=1e6) - np.array([0.6 * left + 0.4 * right, 0.6 * top + 0.4 * bottom], np.float32)
     preference = np.argsort((away * away).sum(axis=2), axis=1)
-    ids = np.array([_CIRCLE + curve.number for curve, _ in used], np.int64)
     # One box for all spots of a name: the largest that any of its angles needs.
-    request = Request(ids, centres, halves.max(axis=1), preference)
+    request = Request(_CIRCLE + curves.numbers[used], centres, halves.max(axis=1), preference)
     return Wanted(
         "label.circle",
         request,
-        tuple(curve.circle.name for curve, _ in used),
+        texts,
         np.arange(len(used), dtype=np.int32),
         angles,
         size,
         italic=True,
-        colours=tuple(curve.circle.colour for curve, _ in used),
+        colours=tuple(circle.colour for circle in circles),
     )
 
 
-def _spots(curve: Curve) -> Any:
-    """Return the points of a curve where its name may stand: on the map, midway between two figures."""
-    step = curve.steps.major
-    at = np.flatnonzero(((curve.arcsec - step // 2) % step < curve.steps.minor) & curve.shown)
-    return at if len(at) else np.flatnonzero(curve.shown)[::5]
-
-
-def _figures(curves: tuple[Curve, ...]) -> Wanted | None:
+def _figures(curves: Curves | None) -> Wanted | None:
     """Return the degree figures along the graduated circles: below the line, or above the ticks."""
+    if curves is None:
+        return None
     size = 9.0
     tall = height(size)
-    arcs, xy, tangent, north, ids, colours = [], [], [], [], [], []
-    for curve in curves:
-        if not curve.circle.graduated:
-            continue
-        at = np.flatnonzero((curve.arcsec % curve.steps.major == 0) & curve.shown)
-        if len(at) > 1 and (curve.arcsec[at[-1]] - curve.arcsec[at[0]]) % TURN == 0:
-            at = at[:-1]
-        arcs.append(curve.arcsec[at] % TURN)
-        xy.append(curve.xy[at])
-        tangent.append(curve.tangent[at])
-        north.append(curve.north[at])
-        ids.append(_FIGURE + (curve.number << 32) + curve.arcsec[at] % TURN)
-        colours += [curve.circle.colour] * len(at)
-    if not arcs or not sum(map(len, arcs)):
+    row = curves.row
+    at = np.flatnonzero(curves.shown & (curves.arcsec % curves.major[row] == 0) & curves.graduated[row])
+    arcsec = curves.arcsec[at] % TURN
+    ids = _FIGURE + (curves.numbers[row[at]] << 32) + arcsec
+    # A circle that closes has its first point twice.
+    once = np.append(np.diff(ids) != 0, True) & ~((arcsec == 0) & (curves.arcsec[at] > 0))
+    if not once.all():
+        at, arcsec, ids = at[once], arcsec[once], ids[once]
+    if not len(at):
         return None
-    values, index = np.unique(np.concatenate(arcs), return_inverse=True)
+    values, index = np.unique(arcsec, return_inverse=True)
     texts, wide = _figure_texts(tuple(values.tolist()), size)
-    widths = wide[index]
-    angle = upright(np.concatenate(tangent))
-    half = turned_half(widths, tall, angle)
-    at_xy, up = np.concatenate(xy), np.concatenate(north)
-    down = np.float32(3.5 + 0.5 * tall)
-    over = np.float32(TICKS[2] + 3.0 + 0.5 * tall)
-    centres = np.stack([at_xy - up * down, at_xy + up * over], axis=1)
-    request = Request(np.concatenate(ids).astype(np.int64), centres, half)
-    return Wanted("figure.circle", request, texts, index.astype(np.int32), angle, size, colours=tuple(colours))
+    angle = upright(curves.tangent[at])
+    xy, up = curves.xy[at], curves.north[at]
+    down, over = np.float32(3.5 + 0.5 * tall), np.float32(TICKS[2] + 3.0 + 0.5 * tall)
+    centres = np.stack([xy - up * down, xy + up * over], axis=1)
+    request = Request(ids, centres, turned_half(wide[index], tall, angle))
+    colours = [circle.colour for circle in curves.circles]
+    return Wanted(
+        "figure.circle",
+        request,
+        texts,
+        index.astype(np.int32),
+        angle,
+        size,
+        colours=tuple(colours[i] for i in row[at].tolist()),
+    )
 
 
 @lru_cache(maxsize=64)

@@ -1,8 +1,10 @@
 """Lines and filled zones under everything else: the sky itself, the Milky Way, the belt, constellation edges."""
 
+from functools import lru_cache
+
 import numpy as np
 
-from colure.arrays import ARCSEC, DEG, TWO_PI, Float
+from colure.arrays import ARCSEC, DEG, TWO_PI, Float, cartesian
 from colure.clipping import lines, trace
 from colure.clipping_areas import areas, rim_ring
 from colure.graduation import steps, visible_longitudes
@@ -49,14 +51,14 @@ def belt(ctx: Context) -> Layer:
     setting = ctx.sky.session.belt
     half = setting.half_width_deg * DEG
     fine = min(max(steps(ctx.step_scale).minor, 60), 3600)
-    parallels = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
-    rings = (
-        [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
-        if ctx.window.radius < 0.5
-        else [columns_of(axes, 0.0, TWO_PI, 3600, lat)[1][:, :-1] for lat in (half, -half)]
-    )
+    if ctx.window.radius > 1.0:
+        parallels = [columns_of(axes, 0.0, TWO_PI, 3600, lat)[1] for lat in (half, -half)]
+        rings = [parallel[:, :-1] for parallel in parallels]
+    else:
+        parallels = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
+        rings = [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
     ring_starts = np.array([0, rings[0].shape[1], rings[0].shape[1] + rings[1].shape[1]], np.int32)
-    pole = axes.columns(np.zeros(1), np.pi / 2)[:, 0]
+    pole = axes.matrix[:, 2] if axes.matrix is not None else axes.columns(np.zeros(1), np.pi / 2)[:, 0]
     filled, starts = areas(
         ctx.window, ctx.projector.to_camera(np.concatenate(rings, axis=1)), ring_starts, ctx.projector.camera @ pole
     )
@@ -73,10 +75,18 @@ def belt(ctx: Context) -> Layer:
     return Layer("belt", tuple(marks), belt_key(ctx))
 
 
-def _divisions(axes: FrameAxes, half: float) -> Float:
-    """Return the twelve division lines (3, N), from the south edge to the north."""
+@lru_cache(maxsize=16)
+def _division_points(half: float) -> tuple[Float, Float, Float]:
+    """Return longitudes, latitudes and directions (3, N) of the division lines in the belt's own frame."""
     lon = np.repeat(np.arange(DIVISIONS) * (TWO_PI / DIVISIONS), _MERIDIAN)
-    return axes.columns(lon, np.tile(np.linspace(-half, half, _MERIDIAN), DIVISIONS))
+    lat = np.tile(np.linspace(-half, half, _MERIDIAN), DIVISIONS)
+    return lon, lat, np.ascontiguousarray(cartesian(lon, lat).T)
+
+
+def _divisions(axes: FrameAxes, half: float) -> Float:
+    """Return the twelve division lines (3, N) on ICRS axes, from the south edge to the north."""
+    lon, lat, columns = _division_points(half)
+    return np.asarray(axes.matrix @ columns) if axes.matrix is not None else axes.columns(lon, lat)
 
 
 def belt_key(ctx: Context) -> object:
