@@ -23,6 +23,7 @@ FIGURES = {
     "ephemeris_one": "skies",
     "stars_apparent_120k": "skies",
     "cone_1deg": "skies",
+    "pointer_ledger": "ledgers",
 }
 """The figures in the order of the documentation, and the module that measures each."""
 
