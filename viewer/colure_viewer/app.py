@@ -40,7 +40,8 @@ def window(session: Session | None = None, path: Path | None = None, settings: Q
     theme = THEMES.get(str(settings.value("theme", "")))
     if theme is not None:
         desk.set_theme(theme)
-    style.dress(made, desk.theme)
+    # The style sheet waits with the panels that it is for: the first chart needs only the palette.
+    made.setPalette(style.palette(desk.theme))
     shown = Window(desk, settings)
     size = settings.value("size")
     shown.resize(size if isinstance(size, QSize) else DEFAULT_SIZE)

@@ -128,6 +128,9 @@ def _disc(radius: float, side: int, middle: int, fraction: F64) -> F64:
     return np.where(cover == 1.0, 1.0, scaled)
 
 
+HALO = 0.8
+"""How much of what lies behind a halo covers: lines fade, and a tinted ground shows through a little."""
+
 _METRIC = blank(1, 1)
 """What text is measured on: it has the 96 dots to the inch of every picture."""
 
@@ -266,7 +269,7 @@ def _add_halo(sheet: NDArray[np.uint8], colour: tuple[int, int, int], spread: fl
         grown = _grow(grown, square=step % 2 == 1)
     r, g, b = colour
     behind = grown.astype(np.uint16)
-    clear = (255 - alpha).astype(np.uint16)
+    clear = ((255 - alpha) * HALO).astype(np.uint16)
     cover = (behind * clear + 127) // 255
     for channel, value in enumerate((b, g, r)):
         sheet[..., channel] += ((cover * value + 127) // 255).astype(np.uint8)

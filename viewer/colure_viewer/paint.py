@@ -28,8 +28,6 @@ BAND_BYTES = 262144
 LARGE_STAR = 4
 """Radius in device pixels from which a disc is drawn after the bands."""
 NO_BRUSH = QBrush()
-"""An empty brush. (The namespace Qt, which has one too, takes 15 ms to import: nothing on the way to the first chart
-uses it.)"""
 PLAIN_AREAS = ("paper", "sky", "milkyway", "belt")
 
 

@@ -9,7 +9,7 @@ from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPainterPath, 
 
 from colure import marks
 from colure.marks import Scene
-from colure_viewer import strokes
+from colure_viewer import atlas, strokes
 from colure_viewer.bodyshapes import draw_bodies
 from colure_viewer.fonts import CAP_MIDDLE, PX_PER_PT, SERIF, family, register
 from colure_viewer.primitives import path, polygon
@@ -146,7 +146,9 @@ def _labels(mark: marks.Labels, theme: Theme, painter: QPainter) -> None:
         place.translate(-advance / 2.0, CAP_MIDDLE * EM)
         placed.append(place.map(shape))
     if mark.halo:
-        pen = QPen(QColor(theme.colour("sky")), 2.0 * HALO)
+        ground = QColor(theme.colour("sky"))
+        ground.setAlphaF(atlas.HALO)
+        pen = QPen(ground, 2.0 * HALO)
         pen.setJoinStyle(Qt.PenJoinStyle.RoundJoin)
         painter.setPen(pen)
         painter.setBrush(Qt.BrushStyle.NoBrush)

@@ -87,6 +87,7 @@ class Window(QMainWindow):
         from colure_viewer.hand import Hand
         from colure_viewer.panels.sides import LeftSide, Progress, RightSide, TopBar
 
+        self._dress()
         self.actions_by_name = actions.build(self)
         self._theme_menu()
         self._recent_menu()
@@ -537,10 +538,13 @@ class Window(QMainWindow):
         names = list(THEMES)
         self._set_theme(names[(names.index(self.desk.theme.name) + 1) % len(names)])
 
-    def _themed(self) -> None:
+    def _dress(self) -> None:
         application = QApplication.instance()
         if isinstance(application, QApplication):
             style.dress(application, self.desk.theme)
+
+    def _themed(self) -> None:
+        self._dress()
         self.settings.setValue("theme", self.desk.theme.name)
         menu = self.actions_by_name.get("theme")
         if isinstance(menu, QMenu):
