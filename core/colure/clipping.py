@@ -87,6 +87,22 @@ class Trace:
     cut_xy: F32
     cut_of: NDArray[np.intp]
 
+    @classmethod
+    def nothing(cls) -> "Trace":
+        """Return the trace of no points."""
+        none = np.empty(0, np.float32)
+        nobody = np.empty(0, np.intp)
+        return cls(none, none, np.empty(0, dtype=bool), np.empty((0, 2), np.float32), nobody)
+
+    def part(self, first: int, last: int) -> "Trace":
+        """Return the trace of the points first … last − 1, which no segment joins to others."""
+        if first >= last:
+            return Trace.nothing()
+        mine = (self.cut_of >= first) & (self.cut_of < last)
+        cut_xy = self.cut_xy[np.repeat(mine, 2)] if len(mine) else self.cut_xy
+        whole = self.whole[first : last - 1]
+        return Trace(self.x[first:last], self.y[first:last], whole, cut_xy, self.cut_of[mine] - first)
+
     def polylines(self, bounds: I32) -> list[tuple[F32, I32]]:
         """Return page polylines (points (M, 2), starts), in groups: group k is of the points bounds[k] … bounds[k + 1].
 

@@ -156,7 +156,7 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         stars: StarsSky = layer(
             "stars",
             (limit, cell, place_key(session)),
-            lambda: sky_layers.stars(base, session.moment, observer, session.place),
+            lambda: sky_layers.stars(base, session.moment, observer, session.place, bodies.state),
         )
         if stars.note:
             notes.append(stars.note)

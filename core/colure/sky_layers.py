@@ -13,7 +13,7 @@ from colure.errors import SpanError
 from colure.fontmetrics import face_of, width_em
 from colure.frames import Frame
 from colure.moment import Moment
-from colure.reduction import Observer, apply_context, reduce_bodies, star_context
+from colure.reduction import Observer, ObserverState, apply_context, context_of, reduce_bodies, star_context
 from colure.session import View
 from colure.stars import EPOCH_JD, Rows, catalogue
 
@@ -134,11 +134,17 @@ def star_rows(limit: float, cell: Cell) -> StarRows:
     )
 
 
-def stars(base: StarRows, moment: Moment, observer: Observer, place: str) -> StarsSky:
-    """Return the directions of stars at a moment and place."""
+def stars(
+    base: StarRows, moment: Moment, observer: Observer, place: str, known: ObserverState | None = None
+) -> StarsSky:
+    """Return the directions of stars at a moment and place; `known` is the observer's state, if it has been found."""
     state = base.state
     try:
-        context = star_context(moment, observer=observer, place=place, epoch_jd=EPOCH_JD)
+        context = (
+            star_context(moment, observer=observer, place=place, epoch_jd=EPOCH_JD)
+            if known is None
+            else context_of(known, moment, observer, place, EPOCH_JD)
+        )
     except SpanError as fault:
         years = (float(moment.jd_tt) - EPOCH_JD) / 365.25
         moved = state[:3] + state[3:] * state.dtype.type(years)
@@ -197,7 +203,7 @@ class BodiesSky:
     """Sun, Moon and planets as the observer sees them.
 
     `vectors` (B, 3) on ICRS axes, `distance_au` (B,) when the light left, `sight_au` and `from_sun_au` (B, 3) the body
-    from the observer and from the Sun then. What follows from them is worked out when it is asked for.
+    from the observer and from the Sun then, `state` the observer's own. What follows is worked out when asked for.
     """
 
     names: tuple[str, ...]
@@ -206,6 +212,7 @@ class BodiesSky:
     distance_au: Float
     sight_au: Float
     from_sun_au: Float
+    state: ObserverState | None = None
     note: str = ""
 
     def vector(self, name: str) -> Float | None:
@@ -249,11 +256,11 @@ def bodies(names: tuple[str, ...], moment: Moment, observer: Observer, place: st
         seen = reduce_bodies(names, moment, observer=observer, place=place)
     except SpanError as fault:
         none = np.empty((0, 3))
-        return BodiesSky((), jd, none, np.empty(0), none, none, f"no bodies: {fault}")
+        return BodiesSky((), jd, none, np.empty(0), none, none, note=f"no bodies: {fault}")
     state = seen.observer
     # As in the reduction: from the observer to where the body was when its light left.
     sight = seen.heliocentric + (state.sun_pos - state.pos) - (seen.light_time_s / 86400.0)[:, None] * state.sun_vel
-    return BodiesSky(names, jd, seen.vectors, seen.distance_au, sight, seen.heliocentric)
+    return BodiesSky(names, jd, seen.vectors, seen.distance_au, sight, seen.heliocentric, state)
 
 
 # Constellations, deep sky, Milky Way

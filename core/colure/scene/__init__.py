@@ -6,11 +6,13 @@ A layer is laid out anew only when its own part of the sky or the view has chang
 handed on, so that a painter may keep what it made of it.
 """
 
+from collections.abc import Callable
 from typing import Any
 
 from colure.marks import Layer, Scene
 from colure.scene import bodies, circles, deepsky, furniture, names, rim, stars, zones
 from colure.scene.context import Context, context
+from colure.scene.strokes import Strokes, draw
 from colure.sky import Sky
 
 __all__ = ["build"]
@@ -45,13 +47,17 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
     ctx.layer("sky", ctx.page_key, lambda: (zones.sky_disc(ctx), None))
     if "milky way" in has:
         ctx.layer("milky way", (sky.key("milky way"), ctx.view_key), lambda: (zones.milky_way(ctx), None))
+    lined: list[tuple[str, object, Callable[[], Strokes]]] = [
+        ("circles", circles.key(ctx), lambda: circles.prepare(ctx))
+    ]
     if "belt" in has:
-        ctx.layer("belt", zones.belt_key(ctx), lambda: (zones.belt(ctx), None))
+        lined.append(("belt", zones.belt_key(ctx), lambda: zones.prepare_belt(ctx)))
     if "grid" in has:
-        ctx.layer("grid", circles.grid_key(ctx), lambda: (circles.grid(ctx), None))
+        lined.append(("grid", circles.grid_key(ctx), lambda: circles.prepare_grid(ctx)))
     if "edges" in has:
-        ctx.layer("edges", (sky.key("edges"), ctx.view_key), lambda: (zones.edges(ctx), None))
-    curves = ctx.layer("circles", circles.key(ctx), lambda: circles.build(ctx))
+        lined.append(("edges", zones.edges_key(ctx), lambda: zones.prepare_edges(ctx)))
+    draw(ctx, lined)
+    curves = ctx.made["circles"][1]
     if "deep sky" in has:
         ctx.layer("deep sky", deepsky.key(ctx), lambda: deepsky.build(ctx))
     shown = ctx.layer("stars", stars.key(ctx), lambda: stars.build(ctx)) if "stars" in has else None

@@ -2,15 +2,17 @@
 
 from dataclasses import dataclass
 from functools import lru_cache
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from colure.arrays import ARCSEC, DEG, TWO_PI, Bool, Float, Int, cartesian
-from colure.clipping import Trace, lines, trace
+from colure.clipping import Trace
 from colure.graduation import TURN, Steps, grid_step, multiples, steps, visible_longitudes
-from colure.marks import CIRCLE, DIVISION, F32, GRID, I32, Layer, Lines, Mark, Segments
+from colure.marks import CIRCLE, F32, GRID, I32, Layer, Lines, Mark, Segments
 from colure.scene.context import Context, in_page
+from colure.scene.strokes import Strokes
 from colure.session import Circle
 from colure.sky import FrameAxes
 
@@ -64,35 +66,44 @@ def span(ctx: Context, axes: FrameAxes, lat: float) -> tuple[float, float]:
 
 
 def columns_of(axes: FrameAxes, first: float, last: float, step: int, lat: float) -> tuple[Int, Float]:
-    """Return longitudes in arcseconds and directions (3, N) on ICRS axes at the multiples of a step over a span."""
+    """Return longitudes in arcseconds, at the multiples of a step over a span, and directions (3, N).
+
+    The directions are on the frame's own axes if its `matrix` leads from there, else on ICRS axes.
+    """
     whole = last - first >= TWO_PI - 1e-9
     if whole:
         low, high = 0, round(TWO_PI / ARCSEC / step)
     else:
         low, high = int(np.floor(first / ARCSEC / step)), int(np.ceil(last / ARCSEC / step))
     arcsec, columns = _base(low, high, step, lat)
-    if axes.matrix is None:
-        return arcsec, axes.columns(_radians(arcsec), lat)
-    return arcsec, axes.matrix @ columns
+    return arcsec, columns if axes.matrix is not None else axes.columns(_radians(arcsec), lat)
 
 
-def build(ctx: Context) -> tuple[Layer, Curves | None]:
-    """Return the layer of circles, and their curves for the labels."""
-    parts: list[tuple[int, Circle, FrameAxes, Int, Float, Steps]] = []
+def prepare(ctx: Context) -> Strokes:
+    """Return the circles' curves, to be traced and finished."""
+    parts: list[tuple[int, Circle, FrameAxes, Int, Steps]] = []
+    columns: list[Any] = []
     for number, (circle, axes) in enumerate(ctx.sky["circles"]):
         lat = circle.lat_deg * DEG
         first, last = span(ctx, axes, lat)
         if last > first:
             # Degrees of longitude are shorter on a small circle.
             chosen = steps(ctx.step_scale * float(np.cos(lat)))
-            parts.append((number, circle, axes, *columns_of(axes, first, last, _fine(chosen.minor), lat), chosen))
+            arcsec, own = columns_of(axes, first, last, _fine(chosen.minor), lat)
+            parts.append((number, circle, axes, arcsec, chosen))
+            columns.append(ctx.to_camera(own, axes.matrix))
+    starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
+    camera = np.concatenate(columns, axis=1) if columns else np.empty((3, 0), np.float32)
+    return Strokes(camera, starts, lambda drawn: _finish(ctx, parts, starts, drawn))
+
+
+def _finish(
+    ctx: Context, parts: list[tuple[int, Circle, FrameAxes, Int, Steps]], starts: I32, drawn: Trace
+) -> tuple[Layer, Curves | None]:
+    """Return the layer of circles, and their curves for the labels."""
     if not parts:
         return Layer("circles", (), key(ctx)), None
-    sizes = [len(part[3]) for part in parts]
-    starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
-    row = np.repeat(np.arange(len(parts)), sizes)
-    columns = np.concatenate([part[4] for part in parts], axis=1)
-    drawn = trace(ctx.window, ctx.projector.to_camera(columns), starts)
+    row = np.repeat(np.arange(len(parts)), np.diff(starts))
     tangent, valid = _tangents(drawn)
     valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
     xy = np.empty((len(row), 2), np.float32)
@@ -105,7 +116,7 @@ def build(ctx: Context) -> tuple[Layer, Curves | None]:
     north = np.empty_like(tangent)
     north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
     minor, middle, major = (
-        np.array([getattr(part[5], name) for part in parts]) for name in ("minor", "middle", "major")
+        np.array([getattr(part[4], name) for part in parts]) for name in ("minor", "middle", "major")
     )
     graduated = np.array([part[1].graduated for part in parts])
     at = np.flatnonzero(valid & graduated[row] & (arcsec % minor[row] == 0))
@@ -161,20 +172,23 @@ def _tangents(drawn: Trace) -> tuple[F32, Bool]:
     return np.stack([dx / length, dy / length], axis=1).astype(np.float32), valid
 
 
-def grid(ctx: Context) -> Layer:
-    """Return the layer of coordinate lines, evenly spaced in latitude, and in longitude as evenly as a pole allows."""
+def prepare_grid(ctx: Context) -> Strokes:
+    """Return the coordinate lines, evenly spaced in latitude, and in longitude as evenly as a pole allows."""
     step = grid_step(ctx.step_scale)
     axes: FrameAxes = ctx.sky["grid"]
     if ctx.window.radius > 1.0 and axes.matrix is not None:
         columns, starts = _whole_grid(step)
-        camera = np.asarray((ctx.projector.camera @ axes.matrix).astype(np.float32) @ columns)
+        camera = ctx.to_camera(columns, axes.matrix)
     else:
         part, starts = _part_grid(ctx, axes, step)
-        camera = ctx.projector.to_camera(part)
-    if len(starts) < 2:
-        return Layer("grid", (), grid_key(ctx))
-    xy, ends = lines(ctx.window, camera, starts)
-    return Layer("grid", (Lines("grid", xy, ends, GRID),), grid_key(ctx))
+        camera = ctx.to_camera(part)
+
+    def finish(drawn: Trace) -> tuple[Layer, None]:
+        (xy, ends) = drawn.polylines(starts[[0, -1]])[0]
+        marks = (Lines("grid", xy, ends, GRID),) if len(xy) else ()
+        return Layer("grid", marks, grid_key(ctx)), None
+
+    return Strokes(camera, starts, finish)
 
 
 @lru_cache(maxsize=8)
@@ -235,6 +249,3 @@ def _points(ctx: Context, length: float) -> int:
 def grid_key(ctx: Context) -> object:
     """Return what the layer of the grid depends on."""
     return (ctx.sky.key("grid"), ctx.view_key)
-
-
-__all__ = ["DIVISION", "Curves", "build", "columns_of", "grid", "grid_key", "key", "span"]

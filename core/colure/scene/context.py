@@ -19,6 +19,10 @@ PAGE_MARGIN = 10.0
 """Pixels outside the map within which marks are kept: more than the radius of the largest star."""
 
 
+COARSE = 3.0e4
+"""Pixels per radian above which lines are laid out in float64: a float32 direction is good to 1e-7."""
+
+
 @dataclass(slots=True)
 class Context:
     """The inputs of one build.
@@ -53,6 +57,16 @@ class Context:
         """Pixels per radian to choose steps by: the centre's, or less where the map is squeezed, as at a pole."""
         left, top, right, bottom = self.frame
         return min(self.scale, 1.5 * float(np.hypot(right - left, bottom - top)) / self.window.radius)
+
+    def to_camera(self, columns: Any, axes: Float | None = None) -> Any:
+        """Return camera directions (3, N) of directions on ICRS axes, or on axes that a matrix (3, 3) takes there.
+
+        In float32 where that is good to a hundredth of a pixel, which is everywhere but in small fields.
+        """
+        matrix = self.projector.camera if axes is None else self.projector.camera @ axes
+        if self.scale > COARSE:
+            return matrix @ columns.astype(np.float64, copy=False)
+        return matrix.astype(np.float32) @ columns.astype(np.float32, copy=False)
 
     def layer(self, name: str, key: object, make: Callable[[], tuple[Layer, Any]]) -> Any:
         """Add a layer, that of the scene before if its key is the same, and return what it holds for other layers."""

@@ -158,13 +158,17 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     half_step = curves.major // 2
     major = curves.major[curves.row]
     at = np.flatnonzero(curves.shown & ((curves.arcsec - half_step[curves.row]) % major == 0))
-    missing = np.setdiff1d(curves.row[curves.shown], curves.row[at])
-    if len(missing):
+    count = len(curves.circles)
+    has = np.bincount(curves.row[at], minlength=count) > 0
+    bare = ~has & (np.bincount(curves.row[curves.shown], minlength=count) > 0)
+    if bare.any():
         # No such longitude is on the map: any point will do.
-        at = np.sort(np.concatenate([at, np.flatnonzero(curves.shown & np.isin(curves.row, missing))[::5]]))
+        at = np.sort(np.concatenate([at, np.flatnonzero(curves.shown & bare[curves.row])[::5]]))
+        has |= bare
     if not len(at):
         return None
-    used, row = np.unique(curves.row[at], return_inverse=True)
+    used = np.flatnonzero(has)
+    row = (np.cumsum(has) - 1)[curves.row[at]]
     circles = [curves.circles[i] for i in used.tolist()]
     texts = tuple(circle.name for circle in circles)
     widths = np.array([width_px(text, size, "label.circle", italic=True) for text in texts])

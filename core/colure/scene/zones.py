@@ -5,12 +5,13 @@ from functools import lru_cache
 import numpy as np
 
 from colure.arrays import ARCSEC, DEG, TWO_PI, Float, cartesian
-from colure.clipping import lines, trace
+from colure.clipping import Trace
 from colure.clipping_areas import areas, rim_ring
 from colure.graduation import steps, visible_longitudes
 from colure.marks import DIVISION, GRID, Areas, Layer, Lines, Mark
 from colure.scene.circles import columns_of
 from colure.scene.context import Context
+from colure.scene.strokes import Strokes
 from colure.sky import FrameAxes
 
 DIVISIONS = 12
@@ -45,8 +46,8 @@ def milky_way(ctx: Context) -> Layer:
     return Layer("milky way", tuple(marks), (ctx.sky.key("milky way"), ctx.view_key))
 
 
-def belt(ctx: Context) -> Layer:
-    """Return the filled belt, its two edges and the twelve divisions from the equinox."""
+def prepare_belt(ctx: Context) -> Strokes:
+    """Return the belt's two edges and twelve division lines, to be traced; its filled zone is laid out at once."""
     axes: FrameAxes = ctx.sky["belt"]
     setting = ctx.sky.session.belt
     half = setting.half_width_deg * DEG
@@ -58,21 +59,24 @@ def belt(ctx: Context) -> Layer:
         parallels = [columns_of(axes, *_span(ctx, axes, lat), fine, lat)[1] for lat in (half, -half)]
         rings = [_dense_ring(ctx, axes, lat, fine) for lat in (half, -half)]
     ring_starts = np.array([0, rings[0].shape[1], rings[0].shape[1] + rings[1].shape[1]], np.int32)
-    pole = axes.matrix[:, 2] if axes.matrix is not None else axes.columns(np.zeros(1), np.pi / 2)[:, 0]
-    filled, starts = areas(
-        ctx.window, ctx.projector.to_camera(np.concatenate(rings, axis=1)), ring_starts, ctx.projector.camera @ pole
-    )
-    marks: list[Mark] = [Areas("belt", filled, starts, alpha=0.55)] if len(filled) else []
+    to_camera = ctx.projector.camera if axes.matrix is None else ctx.projector.camera @ axes.matrix
+    pole = axes.columns(np.zeros(1), np.pi / 2)[:, 0] if axes.matrix is None else np.array([0.0, 0.0, 1.0])
+    filled, ring_ends = areas(ctx.window, to_camera @ np.concatenate(rings, axis=1), ring_starts, to_camera @ pole)
+    sizes = [line.shape[1] for line in parallels]
     if setting.divisions:
         parallels.append(_divisions(axes, half))
-    sizes = [line.shape[1] for line in parallels[:2]] + [_MERIDIAN] * (DIVISIONS if setting.divisions else 0)
+        sizes += [_MERIDIAN] * DIVISIONS
     starts = np.concatenate([[0], np.cumsum(sizes)]).astype(np.int32)
-    camera = ctx.projector.to_camera(np.concatenate(parallels, axis=1))
-    drawn = trace(ctx.window, camera, starts).polylines(starts[[0, 2, -1]] if setting.divisions else starts[[0, 2]])
-    for role, weight, (points, ends) in zip(("belt.edge", "belt.division"), (GRID, DIVISION), drawn, strict=False):
-        if len(points):
-            marks.append(Lines(role, points, ends, weight))
-    return Layer("belt", tuple(marks), belt_key(ctx))
+
+    def finish(drawn: Trace) -> tuple[Layer, None]:
+        marks: list[Mark] = [Areas("belt", filled, ring_ends, alpha=0.55)] if len(filled) else []
+        groups = drawn.polylines(starts[[0, 2, -1]] if setting.divisions else starts[[0, 2]])
+        for role, weight, (points, ends) in zip(("belt.edge", "belt.division"), (GRID, DIVISION), groups, strict=False):
+            if len(points):
+                marks.append(Lines(role, points, ends, weight))
+        return Layer("belt", tuple(marks), belt_key(ctx)), None
+
+    return Strokes(ctx.to_camera(np.concatenate(parallels, axis=1), axes.matrix), starts, finish)
 
 
 @lru_cache(maxsize=16)
@@ -84,9 +88,9 @@ def _division_points(half: float) -> tuple[Float, Float, Float]:
 
 
 def _divisions(axes: FrameAxes, half: float) -> Float:
-    """Return the twelve division lines (3, N) on ICRS axes, from the south edge to the north."""
+    """Return the twelve division lines (3, N), from the south edge to the north, on axes as `columns_of` has them."""
     lon, lat, columns = _division_points(half)
-    return np.asarray(axes.matrix @ columns) if axes.matrix is not None else axes.columns(lon, lat)
+    return columns if axes.matrix is not None else axes.columns(lon, lat)
 
 
 def belt_key(ctx: Context) -> object:
@@ -111,12 +115,21 @@ def _dense_ring(ctx: Context, axes: FrameAxes, lat: float, fine: int) -> Float:
             ((coarse - seen[-1]) % TWO_PI > DEG * 0.01) & ((coarse - seen[-1]) % TWO_PI < TWO_PI - (last - first))
         ]
         coarse = np.concatenate([seen, seen[-1] + np.sort((rest - seen[-1]) % TWO_PI)])
-    return axes.columns(coarse, lat)
+    return axes.columns(coarse, lat) if axes.matrix is None else np.ascontiguousarray(cartesian(coarse, lat).T)
 
 
-def edges(ctx: Context) -> Layer:
-    """Return the layer of constellation edges."""
+def prepare_edges(ctx: Context) -> Strokes:
+    """Return the constellation edges, to be traced."""
     sky = ctx.sky["edges"]
-    points, starts = lines(ctx.window, ctx.projector.to_camera(sky.columns), sky.starts)
-    marks = (Lines("edge", points, starts, GRID, dash=True),) if len(points) else ()
-    return Layer("edges", marks, (ctx.sky.key("edges"), ctx.view_key))
+
+    def finish(drawn: Trace) -> tuple[Layer, None]:
+        points, ends = drawn.polylines(sky.starts[[0, -1]])[0]
+        marks = (Lines("edge", points, ends, GRID, dash=True),) if len(points) else ()
+        return Layer("edges", marks, edges_key(ctx)), None
+
+    return Strokes(ctx.to_camera(sky.columns), sky.starts, finish)
+
+
+def edges_key(ctx: Context) -> object:
+    """Return what the layer of constellation edges depends on."""
+    return (ctx.sky.key("edges"), ctx.view_key)
