@@ -39,6 +39,16 @@ def to_icrs(vectors: Float, frame: str, epoch: float | None, moment: Moment | No
     return frames.to_icrs(vectors, parsed, None, None, None if parsed.is_rotation else besselian(epoch))
 
 
+def from_icrs(vectors: Float, frame: str, epoch: float | None) -> Float:
+    """Return vectors (…, 3) on ICRS axes turned into a declared frame at an epoch: the inverse of `to_icrs`."""
+    parsed = Frame.parse(frame)
+    if parsed.needs_moment:
+        if epoch is None:
+            raise FrameError(f"frame '{frame}': moves with time; the overlay needs an epoch or a moment")
+        return frames.from_icrs(vectors, parsed, Moment.from_julian_year(epoch))
+    return frames.from_icrs(vectors, parsed, None, None, None if parsed.is_rotation else besselian(epoch))
+
+
 def native(rows: Rows) -> Float:
     """Return unit vectors (N, 3) of rows on the axes of their own frame."""
     return cartesian(rows.lon, rows.lat)

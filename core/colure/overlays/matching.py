@@ -106,7 +106,7 @@ def _way(
     """Return the reading in which most rows lie on stars, equinoxes worth a fit, and the share found by chance."""
     some = hypotheses.spread_sample(len(vectors), SAMPLE)
     chance = _share(hypotheses.shifted(declared[some], CHANCE_SHIFT), epoch, limit)
-    floor = chance + max(0.1, 4.0 * np.sqrt(max(chance, 1.0 / len(some)) / len(some)))
+    floor = chance + max(0.1, 4.0 * np.sqrt(max(chance, 0.05) / len(some)))
     share = _share(declared[some], epoch, limit)
     best = _Way(declared, overlay.frame, share) if share > floor else None
     plane = hypotheses.plane(overlay.frame)
