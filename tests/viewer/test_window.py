@@ -529,3 +529,27 @@ def test_a_closed_window_is_gone(qtbot, settings):
     qtbot.wait(10)
     gc.collect()
     assert [ref() for triple in refs for ref in triple if ref() is not None] == []
+
+
+def test_a_chart_of_very_many_stars_is_finished_beside_the_window(qtbot, window):
+    session = window.desk.session
+    deep = replace(session, view=replace(session.view, limit_mag=11.0, width_deg=40.0))
+    window.desk.put(deep, "test")
+    first = window.chart.scene.layer("stars").shown
+    assert not window.chart.whole
+    window.export_path(window._folder() / "never.png")
+    assert "not whole" in window._hover.text()
+    with qtbot.waitSignal(window.chart.completed, timeout=20000):
+        pass
+    assert window.chart.whole
+    assert window.chart.scene.layer("stars").shown > first
+    # Given up, the chart stays with fewer stars; a new session begins anew.
+    window.desk.put(replace(deep, view=replace(deep.view, limit_mag=11.2)), "test")
+    assert window.chart.scene.layer("stars").shown
+    window.chart._finish()
+    assert window.jobs.busy
+    window.jobs.cancel()
+    assert not window.jobs.busy
+    window.desk.put(session, "test")
+    assert window.chart.scene
+    assert window.chart.whole

@@ -7,10 +7,12 @@ from PySide6.QtCore import QLineF, QPointF, QRectF, QSize, QTimer, Signal
 from PySide6.QtGui import QColor, QImage, QPainter, QPaintEvent, QPen, QResizeEvent
 from PySide6.QtWidgets import QSizePolicy, QWidget
 
+from colure import workload
 from colure.errors import ColureError
 from colure.marks import Scene
 from colure.session import Session
 from colure.sky import Sky
+from colure.sky_layers import limit_of
 from colure_viewer import paint
 from colure_viewer.compose import Chart, compose
 from colure_viewer.desk import Desk
@@ -18,15 +20,23 @@ from colure_viewer.fonts import SANS, font
 
 if TYPE_CHECKING:
     from colure.pointing import Pointed
+    from colure_viewer.jobs import Jobs
+
+
+MOST_AT_ONCE = 90_000
+"""Stars that are reduced and laid out between two frames without holding up the window."""
+LATER_MS = 250
 
 
 class ChartWidget(QWidget):
     """The sky, drawn by `paint`. Pointer and keys are `colure_viewer.hand`'s, which comes after the first chart.
 
-    `painted` says that a chart has been on the screen for the first time.
+    `painted` says that a chart has been on the screen for the first time, `completed` that a chart with very many
+    stars, shown with fewer until then, is whole.
     """
 
     painted = Signal()
+    completed = Signal()
 
     def __init__(self, desk: Desk, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -36,6 +46,12 @@ class ChartWidget(QWidget):
         self._image: QImage | None = None
         self._drawn: tuple[object, ...] | None = None
         self._shown_once = False
+        self._jobs: Jobs | None = None
+        self.whole = True
+        self._later = QTimer(self)
+        self._later.setSingleShot(True)
+        self._later.setInterval(LATER_MS)
+        self._later.timeout.connect(self._finish)
         self.ends: tuple[Pointed, Pointed] | None = None
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
         self.setAccessibleName("Sky chart")
@@ -59,9 +75,38 @@ class ChartWidget(QWidget):
         session, ratio = self._desk.session, self.devicePixelRatioF()
         key = (session, self.width(), self.height(), ratio)
         if self._chart is None or self._composed != key:
-            self._chart = compose(session, max(self.width(), 1), max(self.height(), 1), ratio, self._chart)
+            light = workload.lighter(session, MOST_AT_ONCE)
+            self._chart = self._compose(light)
             self._composed = key
+            self.whole = light is session
+            if not self.whole:
+                self._later.start()
         return self._chart
+
+    def _compose(self, session: Session) -> Chart:
+        return compose(session, max(self.width(), 1), max(self.height(), 1), self.devicePixelRatioF(), self._chart)
+
+    def use_jobs(self, jobs: "Jobs") -> None:
+        """Let charts with very many stars be finished beside the window."""
+        self._jobs = jobs
+        if not self.whole:
+            self._later.start()
+
+    def _finish(self) -> None:
+        """Compose the chart with all of its stars; until then fewer are shown, and the legend says down to which."""
+        if self.whole or self._jobs is None or self._composed is None:
+            return
+        key, session = self._composed, self._desk.session
+        size, ratio = (max(self.width(), 1), max(self.height(), 1)), self.devicePixelRatioF()
+
+        def done(chart: Chart) -> None:
+            if self._composed == key:
+                self._chart, self.whole = chart, True
+                self.update()
+                self.completed.emit()
+
+        limit = f"{limit_of(session.view):g}"
+        self._jobs.run(f"Stars to {limit} mag", lambda: compose(session, *size, ratio), done, self._desk.faulted.emit)
 
     @property
     def scene(self) -> Scene:
@@ -75,9 +120,12 @@ class ChartWidget(QWidget):
 
     def check(self, session: Session) -> None:
         """Compose a session that is about to be shown; raise its ColureError, the chart staying as it is."""
-        ratio = self.devicePixelRatioF()
-        self._chart = compose(session, max(self.width(), 1), max(self.height(), 1), ratio, self._chart)
-        self._composed = (session, self.width(), self.height(), ratio)
+        light = workload.lighter(session, MOST_AT_ONCE)
+        self._chart = self._compose(light)
+        self._composed = (session, self.width(), self.height(), self.devicePixelRatioF())
+        self.whole = light is session
+        if not self.whole:
+            self._later.start()
 
     def _changed(self, transient: bool) -> None:
         selection = self._desk.selection

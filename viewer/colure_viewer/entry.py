@@ -6,7 +6,7 @@ from PySide6.QtCore import QEvent, QObject, QPoint, Qt
 from PySide6.QtGui import QFocusEvent, QHideEvent, QKeyEvent
 from PySide6.QtWidgets import QLabel, QLineEdit, QWidget
 
-NOTE_WIDTH = 380
+NOTE_WIDTH, PADDING = 380, 8
 
 
 class FaultNote(QLabel):
@@ -26,7 +26,8 @@ class FaultNote(QLabel):
         window = self._field.window()
         width = min(NOTE_WIDTH, window.width() - 16)
         self.setFixedWidth(width)
-        self.setFixedHeight(self.heightForWidth(width))
+        # The style sheet's padding and rule are not in what the label reckons for its text.
+        self.setFixedHeight(self.heightForWidth(width - 2 * PADDING) + 2 * PADDING)
         at = self._field.mapTo(window, QPoint(0, self._field.height() + 3))
         x = max(8, min(at.x(), window.width() - width - 8))
         y = at.y()

@@ -50,7 +50,7 @@ def sheet(theme: Theme) -> str:
         qproperty-indent: 0; }}
     QLabel#heading {{ padding: 7px 0 2px 0; }}
     QLabel#muted {{ color: {c("muted")}; }}
-    QLabel#fault {{ background: {c("field")}; color: {c("fault")}; border: 1px solid {c("fault")}; padding: 5px 8px; }}
+    QLabel#fault {{ background: {c("field")}; color: {c("fault")}; border: 1px solid {c("fault")}; padding: 5px 7px; }}
     QLabel#notice {{ color: {c("fault")}; }}
     QLineEdit, QComboBox, QDoubleSpinBox, QSpinBox, QPlainTextEdit {{
         background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")}; padding: 2px 5px; min-height: 20px;

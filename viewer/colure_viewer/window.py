@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     from colure_viewer.hand import Hand
     from colure_viewer.panels.sides import LeftSide, RightSide, TopBar
 
-LEFT, RIGHT, TOP, FOOT = 256, 318, 68, 26
+LEFT, RIGHT, TOP, FOOT = 270, 318, 68, 26
 """Room kept for the panels before they are there, in logical pixels."""
 RECENT = 8
 NOTICE_MS = 8000
@@ -102,6 +102,7 @@ class Window(QMainWindow):
         self.hand = Hand(self.desk, self.chart)
         self.hand.hovered.connect(self._hovered)
         self.hand.measured.connect(self.right.measure.show_text)
+        self.chart.use_jobs(self.jobs)
         self.chart.setFocus()
         self.progress = Progress(self.jobs)
         self._hover.setAccessibleName("Under the pointer")
@@ -304,6 +305,9 @@ class Window(QMainWindow):
         """Write the chart to a file; the caution near the Sun is repeated in the file and here."""
         from colure_viewer import export
 
+        if not self.chart.whole:
+            self.say("The chart is not whole yet: its faint stars are still being read")
+            return
         scene, theme = self.chart.scene, self.desk.theme
         try:
             export.kind(path)
@@ -469,6 +473,7 @@ class Window(QMainWindow):
             return
         self.desk.select(found)
         self.hand.centre_on(found)
+        self.chart.use_jobs(self.jobs)
         self.chart.setFocus()
 
     # Focus, looks, help

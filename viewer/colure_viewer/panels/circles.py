@@ -71,7 +71,7 @@ class CirclesPanel(QWidget):
         header.setSectionResizeMode(2, QHeaderView.ResizeMode.Fixed)
         header.setSectionResizeMode(3, QHeaderView.ResizeMode.Fixed)
         header.setMinimumSectionSize(20)
-        for number, width in ((1, 52), (2, 58), (3, 28)):
+        for number, width in ((1, 50), (2, 56), (3, 26)):
             self.table.setColumnWidth(number, width)
         self.table.itemChanged.connect(self._ticked)
         self.table.itemSelectionChanged.connect(self._chosen)

@@ -3,7 +3,7 @@
 from dataclasses import replace
 from typing import Any
 
-from PySide6.QtWidgets import QCheckBox, QGridLayout, QLabel, QWidget
+from PySide6.QtWidgets import QCheckBox, QGridLayout, QHBoxLayout, QLabel, QWidget
 
 from colure.session import DEMO_BODIES, Session
 from colure_viewer.desk import Desk
@@ -88,9 +88,11 @@ class LayersPanel(QWidget):
         self.grid.setPlaceholderText("no grid")
         label = QLabel("grid", self)
         label.setBuddy(self.grid)
-        row = (len(LAYERS) + 1) // 2
-        grid.addWidget(label, row, 0)
-        grid.addWidget(self.grid, row + 1, 0, 1, 2)
+        line = QHBoxLayout()
+        line.setSpacing(6)
+        line.addWidget(label)
+        line.addWidget(self.grid, 1)
+        grid.addLayout(line, (len(LAYERS) + 1) // 2, 0, 1, 2)
         desk.changed.connect(self._show)
         self._show()
 

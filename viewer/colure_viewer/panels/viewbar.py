@@ -68,18 +68,18 @@ class ViewBar(QWidget):
         row.setContentsMargins(0, 0, 0, 0)
         row.setSpacing(4)
         for text, part, stretch in (
-            ("&View", self.projection, 0),
-            ("Cen&tre", self.centre, 1),
+            ("Vie&w", self.projection, 0),
+            ("&Centre", self.centre, 1),
             ("&Up", self.up, 0),
             ("", self.east, 0),
-            ("&Width", self.width_field, 0),
+            ("Wi&dth", self.width_field, 0),
             ("Ma&g", self.limit, 0),
             ("&Place", self.place, 0),
         ):
             if text:
                 label = QLabel(text, self)
                 label.setBuddy(part)
-                if text == "&View":
+                if text == "Vie&w":
                     label.setObjectName("bar")
                 row.addWidget(label)
             row.addWidget(part, stretch)
