@@ -129,11 +129,11 @@ class Difference:
     """How far the numbers of a frame lead astray where they are read in another, arcseconds.
 
     The numbers of `frame`, read as if they were in the chosen frame, name a direction that is off by `size_arcsec`
-    towards `pa_deg` (from the chosen frame's north through growing longitude). That shift on the sky is also given
-    along growing longitude and latitude of the chosen frame (`dlon_arcsec`, times cos lat, and `dlat_arcsec`), of the
-    mean ecliptic and of the equator of J2000 (Δλ cos β, Δβ; Δα cos δ, Δδ), and along and across the motion of a body
-    (across: to the left of the motion on the sky, east at left). Long shifts keep their true length. NaN where the
-    frame has no answer (`fault`) or nothing moves.
+    towards `pa_deg` (from the chosen frame's north through growing longitude). The differences of the numbers are
+    given in the chosen frame (`dlon_arcsec`, times cos lat, and `dlat_arcsec`), and for the two directions on the mean
+    ecliptic and on the equator of J2000 (Δλ cos β, Δβ; Δα cos δ, Δδ); and the shift along the great circle of a body's
+    motion and across it, to the left on the sky with east at left. NaN where the frame has no answer (`fault`) or
+    nothing moves.
     """
 
     frame: str
@@ -182,14 +182,13 @@ def differences(
             found.append(Difference(name, frame.label(), nan, nan, nan, nan, nan, nan, nan, nan, nan, nan, str(fault)))
             continue
         there = frames.to_icrs(read, chosen, moment, site)
-        shift = _shift(here, there)
         size = float(separation(here, there)) / ARCSEC
         angle = float(position_angle(right, read)) / DEG if size > 1e-9 else float("nan")
         parts = (
-            *_tangent(right, _shift(right, read)),
-            *_in_frame(here, shift, ECLIPTIC_J2000),
-            *_in_frame(here, shift, EQUATOR_J2000),
-            *_along(here, shift, motion),
+            *_apart(right, read),
+            *_in_frame(here, there, ECLIPTIC_J2000),
+            *_in_frame(here, there, EQUATOR_J2000),
+            *_along(here, _shift(here, there), motion),
         )
         dlon, dlat, dlam, dbeta, dra, ddec, along, across = (part / ARCSEC for part in parts)
         found.append(Difference(name, frame.label(), dlon, dlat, dlam, dbeta, dra, ddec, along, across, size, angle))
@@ -203,18 +202,16 @@ def _shift(here: Float, there: Float) -> Float:
     return np.asarray(flat * (float(separation(here, there)) / length)) if length > 0.0 else np.zeros(3)
 
 
-def _tangent(here: Float, shift: Float) -> tuple[float, float]:
-    """Return the parts of a shift along growing longitude and latitude of the axes that both are on."""
-    x, y, z = (float(part) for part in here)
-    flat = float(np.hypot(x, y))
-    east = np.array([-y / flat, x / flat, 0.0]) if flat > 0.0 else np.array([0.0, 1.0, 0.0])
-    north = np.array([-z * east[1], z * east[0], x * east[1] - y * east[0]])
-    return float(shift @ east), float(shift @ north)
+def _apart(right: Float, read: Float) -> tuple[float, float]:
+    """Return the difference of longitudes, times the cosine of the right latitude, and that of latitudes."""
+    (lon, lat), (other, high) = spherical(right), spherical(read)
+    turn = float(other - lon)
+    return float(np.arctan2(np.sin(turn), np.cos(turn)) * np.cos(lat)), float(high - lat)
 
 
-def _in_frame(here: Float, shift: Float, name: str) -> tuple[float, float]:
+def _in_frame(here: Float, there: Float, name: str) -> tuple[float, float]:
     matrix = frames.rotation(name).matrix
-    return _tangent(matrix @ here, matrix @ shift)
+    return _apart(matrix @ here, matrix @ there)
 
 
 def _along(here: Float, shift: Float, motion: Float | None) -> tuple[float, float]:
