@@ -148,10 +148,11 @@ def position(
             "parallax_mas": motion.parallax,
             "rv_km_s": motion.rv,
         }
-    centre = {"lon": lon_deg * DEG, "lat": lat_deg * DEG}
+    lon, lat = lon_deg * DEG, lat_deg * DEG
+    centre: dict[str, float] = {}
     if motion is not None:
         moves = {"pm_lon": motion.pm_lon * MAS, "pm_lat": motion.pm_lat * MAS}
-        centre |= moves | {"parallax": motion.parallax * MAS, "rv": motion.rv}
+        centre = moves | {"parallax": motion.parallax * MAS, "rv": motion.rv}
     spread, steps, scaled = None, None, None
     if covariance is not None:
         order, scaled = _checked(covariance)
@@ -159,7 +160,7 @@ def position(
             raise ColureError(f"covariance of {len(order)} rows: holds motions, but the position was given without one")
         steps = np.array([_STEPS[key] for key in order])
         states = [
-            _state({**centre, key: centre.get(key, 0.0) + sign * _STEPS[key]}, frame, moment, site, jd)
+            _state(lon, lat, {**centre, key: centre.get(key, 0.0) + sign * _STEPS[key]}, frame, moment, site, jd)
             for key in order
             for sign in (1.0, -1.0)
         ]
@@ -168,8 +169,8 @@ def position(
             np.array([state[1] for state in states]),
             np.array([state[2] for state in states]),
         )
-    pos, vel, parallax = _state(centre, frame, moment, site, jd)
-    typed = cartesian(centre["lon"], centre["lat"])
+    pos, vel, parallax = _state(lon, lat, centre, frame, moment, site, jd)
+    typed = cartesian(lon, lat)
     return Source(
         f"{frame} {lon_deg:.10g} {lat_deg:.10g}" if name is None else name,
         kind,
@@ -188,13 +189,21 @@ def position(
 
 
 def _state(
-    given: dict[str, float], frame: Frame, moment: Moment, site: Site | None, jd: float
+    lon: float, lat: float, given: dict[str, float], frame: Frame, moment: Moment, site: Site | None, jd: float
 ) -> tuple[Float, Float, float]:
-    """Return position (3,), velocity (3,) on ICRS axes and the parallax (rad) of a position given in a frame."""
+    """Return position (3,), velocity (3,) on ICRS axes and the parallax (rad) of a position given in a frame.
+
+    `given` holds what there is of motion, parallax and radial velocity, and under "lon" and "lat" small shifts on the
+    sky along the two, which leave the motion parallel to itself.
+    """
     parallax, rv = given.get("parallax", 0.0), given.get("rv", 0.0)
-    keys = ("lon", "lat", "pm_lon", "pm_lat")
-    lon, lat, east, north = (np.asarray(given.get(key, 0.0)) for key in keys)
-    local, moving = space_velocity(lon, lat, east, north, np.asarray(parallax), np.asarray(rv))
+    where = (np.asarray(lon), np.asarray(lat))
+    pm = (np.asarray(given.get("pm_lon", 0.0)), np.asarray(given.get("pm_lat", 0.0)))
+    local, moving = space_velocity(*where, *pm, np.asarray(parallax), np.asarray(rv))
+    if "lon" in given or "lat" in given:
+        nothing = np.zeros(())
+        along = (np.asarray(given.get("lon", 0.0)), np.asarray(given.get("lat", 0.0)))
+        local = unit(local + space_velocity(*where, *along, nothing, nothing)[1])
     if frame.is_rotation:
         back = frames.rotation(frame, moment, site).inverse()
         return back.apply(local), back.apply(moving), parallax
