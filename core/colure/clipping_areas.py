@@ -29,6 +29,8 @@ def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F
     `outside` is a camera direction (3,) that is known not to lie in the area. Edges of rings are great-circle arcs.
     """
     camera = np.array(camera, dtype=np.float64)
+    # What was float32 is a unit vector to 1e-7 only, and cut ends are told from whole ones to 1e-13.
+    camera /= np.sqrt((camera * camera).sum(axis=0))
     # A point exactly on the seam or on the rim would be on both sides of it: 1e-12 rad off is far below any pixel.
     if window.projector.projection.unrolled:
         camera[0] = np.where(np.abs(camera[0]) < 1e-12, np.copysign(1e-12, camera[0]), camera[0])

@@ -12,7 +12,7 @@ from typing import Any
 
 import numpy as np
 
-from colure import frames, sky_layers
+from colure import frames, sky_fixed, sky_layers
 from colure.arrays import DEG, Float, cartesian
 from colure.errors import FrameError, SpanError
 from colure.frames import Frame
@@ -164,25 +164,29 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         if session.layers.star_names:
             layer("star names", (limit, cell, kinds), lambda: sky_layers.star_names(base, kinds))
     if session.layers.milky_way:
-        layer("milky way", (), sky_layers.milky_way)
+        layer("milky way", (), sky_fixed.milky_way)
     if session.layers.deep_sky:
-        layer("deep sky", (), sky_layers.deep_sky)
-    step = sky_layers.edge_step(session.view.width_deg)
+        layer("deep sky", (), sky_fixed.deep_sky)
+    step = sky_fixed.edge_step(session.view.width_deg)
     if session.layers.edges:
-        at_place = place_key(session) if sky_layers.moved(session.place) else None
+        at_place = place_key(session) if sky_fixed.moved(session.place) else None
         layer(
             "edges",
             (step, at_place),
-            lambda: sky_layers.edges(step, session.moment, observer, session.place),
+            lambda: sky_fixed.edges(step, session.moment, observer, session.place),
         )
     if session.layers.constellation_names:
-        layer("constellations", (), sky_layers.constellation_names)
+        layer("constellations", (), sky_fixed.constellation_names)
     if session.layers.grid is not None:
         grid = session.layers.grid
         layer("grid", _frame_key(grid, session), lambda: axes_of(grid))
     if session.belt.visible:
         belt = session.belt
-        layer("belt", (_frame_key(belt.frame, session), belt), lambda: axes_of(belt.frame))
+        layer("belt", _frame_key(belt.frame, session), lambda: axes_of(belt.frame))
+        if belt.crossings and sky_layers.frame_named(belt.frame).is_rotation:
+            follows = sky_layers.frame_named(belt.frame).needs_moment
+            tenths = round(float(session.moment.julian_year) * 10.0) if follows else 20000
+            layer("crossings", (belt.frame, tenths), lambda: sky_fixed.crossings(belt.frame, tenths))
     shown = tuple(circle for circle in session.circles if circle.visible)
     layer(
         "circles",
@@ -191,7 +195,12 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
     )
     if session.layers.points:
         ecliptic = session.belt.frame
-        layer("points", (session.moment, ecliptic), lambda: sky_layers.points(ecliptic, session.moment))
+        layer("points", (session.moment, ecliptic), lambda: sky_fixed.points(ecliptic, session.moment))
+    if session.overlays:
+        from colure.overlays import skylayer  # a start without overlays loads no reader of files
+
+        overlays = layer("overlays", skylayer.key(session), lambda: skylayer.compute(session, observer))
+        notes += skylayer.faults(overlays)
     return Sky(session, observer, axes, MappingProxyType(layers), tuple(notes))
 
 

@@ -10,7 +10,7 @@ from collections.abc import Callable
 from typing import Any
 
 from colure.marks import Layer, Scene
-from colure.scene import bodies, circles, deepsky, furniture, names, rim, stars, zones
+from colure.scene import bodies, circles, deepsky, furniture, names, overlays, rim, stars, zones
 from colure.scene.context import Context, context
 from colure.scene.strokes import Strokes, draw
 from colure.sky import Sky
@@ -26,6 +26,7 @@ _ORDER = (
     "circles",
     "deep sky",
     "stars",
+    "overlays",
     "points",
     "bodies",
     "labels",
@@ -61,8 +62,10 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
     if "deep sky" in has:
         ctx.layer("deep sky", deepsky.key(ctx), lambda: deepsky.build(ctx))
     shown = ctx.layer("stars", stars.key(ctx), lambda: stars.build(ctx)) if "stars" in has else None
-    if "points" in has:
-        ctx.layer("points", (sky.key("points"), ctx.view_key), lambda: (deepsky.points(ctx), None))
+    if "overlays" in has:
+        ctx.layer("overlays", overlays.key(ctx), lambda: (overlays.build(ctx), None))
+    if "points" in has or "crossings" in has:
+        ctx.layer("points", deepsky.points_key(ctx), lambda: (deepsky.points(ctx), None))
     listed = ctx.layer("bodies", bodies.key(ctx), lambda: bodies.build(ctx))
     memory = previous.placement if previous is not None else None
     labels_key = _labels_key(ctx)
@@ -78,8 +81,9 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
 
 def _labels_key(ctx: Context) -> object:
     """Return what the texts depend on: the very layers that they stand beside."""
-    beside = ("circles", "deep sky", "stars", "points", "bodies")
-    texts = tuple(ctx.sky.key(name) for name in ("star names", "constellations") if name in ctx.sky.layers)
+    beside = ("circles", "belt", "deep sky", "stars", "overlays", "points", "bodies")
+    named = ("star names", "constellations", "points", "crossings")
+    texts = tuple(ctx.sky.key(name) for name in named if name in ctx.sky.layers)
     return (tuple(ctx.made[name][0].key for name in beside if name in ctx.made), texts)
 
 
@@ -88,5 +92,5 @@ def _counts(layers: tuple[Layer, ...]) -> tuple[str, ...]:
     return tuple(
         f"{layer.name}: {layer.shown} of {layer.total} shown, one in each 3-pixel cell"
         for layer in layers
-        if layer.name == "stars" and layer.shown < layer.total
+        if layer.name in ("stars", "overlays") and layer.shown < layer.total
     )

@@ -194,9 +194,11 @@ def prepare_grid(ctx: Context) -> Strokes:
 @lru_cache(maxsize=8)
 def _whole_grid(step: int) -> tuple[F32, I32]:
     """Return the lines of the whole sky in the grid's own frame: columns (3, N), a point every two degrees, starts."""
-    lats = multiples(step, -0.4999 * np.pi, 0.4999 * np.pi)
+    # A hair off the pole, where a longitude still is one in float32.
+    high = 0.5 * np.pi - 1e-3
+    lats = multiples(step, -high, high)
     lons = np.arange(0, TURN, step)
-    along, across = np.linspace(0.0, TWO_PI, 181), np.linspace(-0.5 * np.pi, 0.5 * np.pi, 91)
+    along, across = np.linspace(0.0, TWO_PI, 181), np.linspace(-high, high, 91)
     parallels = cartesian(np.tile(along, len(lats)), np.repeat(_radians(lats), len(along)))
     meridians = cartesian(np.repeat(_radians(lons), len(across)), np.tile(across, len(lons)))
     sizes = [len(along)] * len(lats) + [len(across)] * len(lons)
@@ -210,11 +212,12 @@ def _part_grid(ctx: Context, axes: FrameAxes, step: int) -> tuple[Float, I32]:
     sizes: list[int] = []
     radius = ctx.window.radius
     lon0, lat0 = (float(v[0]) for v in axes.spherical(ctx.window.centre[None, :]))
-    low, high = max(lat0 - radius, -np.pi / 2), min(lat0 + radius, np.pi / 2)
+    top = np.pi / 2 - 1e-7
+    low, high = max(lat0 - radius, -top), min(lat0 + radius, top)
     for arcsec in multiples(step, low, high).tolist():
         lat = arcsec * ARCSEC
         first, last = visible_longitudes(lon0, lat0, radius, lat)
-        if abs(lat) < np.pi / 2 - 1e-9 and last > first:
+        if abs(lat) < top and last > first:
             n = _points(ctx, (last - first) * float(np.cos(lat)))
             pieces.append(axes.columns(np.linspace(first, last, n), lat))
             sizes.append(n)

@@ -9,7 +9,8 @@ from colure import deepsky as objects
 from colure.arrays import Float
 from colure.marks import Layer, Symbols
 from colure.scene.context import Context, in_page, on_page
-from colure.sky_layers import SYMBOLS, DeepSky, widths_em
+from colure.sky_fixed import SYMBOLS, DeepSky, NamesSky
+from colure.sky_layers import widths_em
 
 LEAST = 3.6
 """Least half-axis of a symbol in pixels."""
@@ -48,7 +49,8 @@ def build(ctx: Context) -> tuple[Layer, Spots | None]:
     camera = ctx.projector.to_camera(np.ascontiguousarray(sky.columns[:, at]))
     x0, y0 = ctx.projector.to_page(camera)
     dx, dy = x - x0, y - y0
-    scale = np.hypot(dx, dy) / step
+    # Where a sheet is drawn out, as at its poles, an outline of one scale would be far too large.
+    scale = np.minimum(np.hypot(dx, dy) / step, 2.0 * ctx.scale)
     size = sky.half[at] * scale[:, None]
     real = size[:, 0] > LEAST
     floor = np.maximum(size[:, 1], 0.45 * size[:, 0])
@@ -97,17 +99,29 @@ def key(ctx: Context) -> object:
 
 
 def points(ctx: Context) -> Layer:
-    """Return the layer of equinoxes, solstices and poles."""
-    sky = ctx.sky["points"]
+    """Return the layer of equinoxes, solstices and poles, and of the crossings into constellations."""
+    groups = [ctx.sky[name] for name in ("points", "crossings") if name in ctx.sky.layers]
+    marks = tuple(mark for group, kind in zip(groups, (4, 0), strict=False) if (mark := _points(ctx, group, kind)))
+    return Layer("points", marks, points_key(ctx))
+
+
+def points_key(ctx: Context) -> object:
+    """Return what the layer of points depends on."""
+    return (*(ctx.sky.key(name) for name in ("points", "crossings") if name in ctx.sky.layers), ctx.view_key)
+
+
+def _points(ctx: Context, sky: NamesSky, first_cross: int) -> Symbols | None:
+    """Return points as circles with a dot up to a row, and as crosses from it on."""
     xy, on = on_page(ctx, sky.columns, 4.0)
     at = np.flatnonzero(on)
-    mark = Symbols(
+    if not len(at):
+        return None
+    return Symbols(
         "point",
         ("point", "cross"),
-        np.where(at < 4, 0, 1).astype(np.uint8),
+        np.where(at < first_cross, 0, 1).astype(np.uint8),
         xy[at],
         np.full((len(at), 2), 3.2, np.float32),
         np.zeros(len(at), np.float32),
         at.astype(np.int64),
     )
-    return Layer("points", (mark,) if len(at) else (), (ctx.sky.key("points"), ctx.view_key))

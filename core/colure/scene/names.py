@@ -6,6 +6,8 @@ from typing import Any
 
 import numpy as np
 
+from colure.arrays import DEG, TWO_PI
+from colure.belt import DIVISION_GLYPHS
 from colure.fontmetrics import CAP_HEIGHT, PX_PER_PT, width_px
 from colure.graduation import TURN, figure
 from colure.labels import NOWHERE, Placement, Request, around, join, merged, place
@@ -14,9 +16,10 @@ from colure.scene import bodies as body_marks
 from colure.scene import stars as star_marks
 from colure.scene.circles import TICKS, Curves
 from colure.scene.context import Context, on_page
+from colure.sky import FrameAxes
 
 # The first part of a text's identity; the second is the row in its source.
-_BODY, _CIRCLE, _FIGURE, _STAR, _DEEP, _CONSTELLATION, _POINT = (k << 56 for k in range(1, 8))
+_BODY, _CIRCLE, _FIGURE, _STAR, _DEEP, _CONSTELLATION, _POINT, _CROSSING, _BELT = (k << 56 for k in range(1, 10))
 
 MOST_STARS = 60
 MOST_DEEP_SKY = 30
@@ -97,7 +100,19 @@ def build(
     first = [w for w in (_bodies(listed), _circle_names(ctx, curves)) if w is not None]
     marks: list[Labels] = []
     boxes, first_memory = _settle(ctx, first, discs, previous, None, marks)
-    second = [w for w in (_figures(curves), _stars(ctx, shown), _deep_sky(ctx), _constellations(ctx)) if w is not None]
+    second = [
+        w
+        for w in (
+            _named(ctx, "points", "label.point", _POINT, 5.0),
+            _figures(curves),
+            _named(ctx, "crossings", "label.belt", _CROSSING, 5.0),
+            _stars(ctx, shown),
+            _belt(ctx),
+            _deep_sky(ctx),
+            _named(ctx, "constellations", "label.constellation", _CONSTELLATION, 4.0, italic=True, centred=True),
+        )
+        if w is not None
+    ]
     _, second_memory = _settle(ctx, second, discs, previous, boxes, marks)
     return Layer("labels", tuple(marks), key), merged([first_memory, second_memory])
 
@@ -306,21 +321,45 @@ def _deep_sky(ctx: Context) -> Wanted | None:
     )
 
 
-def _constellations(ctx: Context) -> Wanted | None:
-    if "constellations" not in ctx.sky.layers:
+def _named(
+    ctx: Context, layer: str, role: str, code: int, radius: float, *, italic: bool = False, centred: bool = False
+) -> Wanted | None:
+    """Return the texts of a layer of the sky that is nothing but texts at directions."""
+    if layer not in ctx.sky.layers:
         return None
-    names = ctx.sky["constellations"]
-    rows = np.arange(len(names.texts))
+    found = ctx.sky[layer]
+    rows = np.arange(len(found.texts))
     return _about(
         ctx,
-        "label.constellation",
-        _CONSTELLATION,
-        names.columns,
-        names.texts,
-        names.width_em,
+        role,
+        code,
+        found.columns,
+        found.texts,
+        found.width_em,
         rows,
-        4.0,
-        88,
-        italic=True,
-        centred=True,
+        radius,
+        len(rows),
+        italic=italic,
+        centred=centred,
+    )
+
+
+def _belt(ctx: Context) -> Wanted | None:
+    """Return the signs of the belt's divisions, in the middle of each, near an edge."""
+    if "belt" not in ctx.sky.layers or not ctx.sky.session.belt.divisions:
+        return None
+    axes: FrameAxes = ctx.sky["belt"]
+    half_width = ctx.sky.session.belt.half_width_deg * DEG
+    lon = np.asarray((np.arange(12) + 0.5) * (TWO_PI / 12.0), dtype=np.float64)
+    size = 11.0
+    spots = [on_page(ctx, axes.columns(lon, lat * half_width), 0.0) for lat in (0.8, -0.8)]
+    at = np.flatnonzero(spots[0][1] | spots[1][1])
+    if not len(at):
+        return None
+    centres = np.stack([np.where(on[:, None], xy, np.nan) for xy, on in spots], axis=1)[at].astype(np.float32)
+    texts = tuple(DIVISION_GLYPHS[i] for i in at.tolist())
+    half = np.array([[0.5 * width_px(t, size, "label.belt"), 0.5 * height(size)] for t in texts], np.float32)
+    n = np.arange(len(at), dtype=np.int32)
+    return Wanted(
+        "label.belt", Request(_BELT + at.astype(np.int64), centres, half), texts, n, np.zeros(len(at), np.float32), size
     )
