@@ -2,11 +2,12 @@
 
 import math
 from collections.abc import Sequence
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 from PySide6.QtCore import QPointF
-from PySide6.QtGui import QColor, QFontMetricsF, QImage, QPainter, QPixmap
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QImage, QPainter, QPixmap
 
 from colure_viewer.fonts import CAP_MIDDLE, font
 from colure_viewer.primitives import FRAGMENT
@@ -93,19 +94,22 @@ class StarAtlas:
         """Return logical pixels (N, 2) as whole numbers of phases of a device pixel."""
         return np.asarray(np.rint(xy * np.float32(self.phases * ratio)).astype(np.int32))
 
-    def fill(self, rows: F64, fine: NDArray[np.int32], size: NDArray[np.uint8], tint: NDArray[np.uint8]) -> None:
-        """Write the fragments (N, 10) of stars at `fine` (N, 2)."""
-        p = self.phases
-        bits = self.bits
-        code = size.astype(np.intp)
+    def codes(self, fine: NDArray[np.int32], size: NDArray[np.uint8], tint: NDArray[np.uint8]) -> NDArray[np.int32]:
+        """Return which picture (N,) each star takes."""
+        p, bits = self.phases, self.bits
+        code = size.astype(np.int32)
         code *= self.tints
         code += tint
         code <<= 2 * bits
         code += (fine[:, 1] & (p - 1)) << bits
         code += fine[:, 0] & (p - 1)
+        return code
+
+    def fill(self, rows: F64, code: NDArray[np.int32], fine: NDArray[np.int32]) -> None:
+        """Write the fragments (N, 10) of stars with pictures `code` at `fine` (N, 2)."""
         # Clipping spares a check of every index; the codes are in range by their making.
         np.take(self.table, code, axis=0, out=rows, mode="clip")
-        rows[:, :2] += fine >> bits
+        rows[:, :2] += fine >> self.bits
 
     @property
     def bits(self) -> int:
@@ -133,6 +137,13 @@ HALO = 0.8
 
 _METRIC = blank(1, 1)
 """What text is measured on: it has the 96 dots to the inch of every picture."""
+
+
+@lru_cache(maxsize=64)
+def measured(family: str, pixels: float, italic: bool, bold: bool) -> tuple[QFont, QFontMetricsF]:
+    """Return a font with its metrics on a picture."""
+    made = font(family, pixels, italic, bold)
+    return made, QFontMetricsF(made, _METRIC)
 
 
 class TextAtlas:
@@ -202,8 +213,7 @@ class TextAtlas:
     ) -> None:
         """Draw texts into the picture in one batch, then grow the halos of them all at once."""
         family, em, italic, bold = face
-        pen_font = font(family, em * scale, italic, bold)
-        metrics = QFontMetricsF(pen_font, _METRIC)
+        pen_font, metrics = measured(family, em * scale, italic, bold)
         spread = 1.7 * scale if halo else 0.0
         pad = math.ceil(spread) + 2
         rise, fall = math.ceil(metrics.ascent()), math.ceil(metrics.descent())

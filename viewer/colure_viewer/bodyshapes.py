@@ -1,5 +1,7 @@
 """The discs of Sun, Moon and planets with the shape of their phase, for raster and vector painters alike."""
 
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import NDArray
 from PySide6.QtCore import QPointF
@@ -30,28 +32,33 @@ def lit_shape(radius: float, lit: float, limb: float, x: float, y: float) -> F64
     return np.stack([x + shape[:, 0] * c - shape[:, 1] * s, y + shape[:, 0] * s + shape[:, 1] * c], axis=-1)
 
 
+@lru_cache(maxsize=64)
+def _colours(theme: Theme, name: str) -> tuple[QColor, QColor, QColor]:
+    """Return the colours of a body's rim, lit side and night side."""
+    colour, sky = theme.colour(f"body.{name}"), theme.colour("sky")
+    # On paper the lit side is bare paper and the night side inked; on a dark ground it is the other way round.
+    bright = colour if theme.dark else mix("#FFFFFF", colour, 0.14)
+    night = mix(sky, colour, 0.28 if theme.dark else 0.62)
+    return QColor(colour), QColor(bright), QColor(night)
+
+
 def draw_bodies(painter: QPainter, mark: Bodies, theme: Theme, scale: float) -> None:
     """Draw the discs; `scale` is painter units per logical pixel."""
-    sky = theme.colour("sky")
+    painter.setBrush(QBrush())
+    places = (mark.xy * scale).tolist()
+    radii = (mark.radius * scale).tolist()
     for row, name in enumerate(mark.names):
-        colour = theme.colour(f"body.{name}")
-        x, y = (float(v) * scale for v in mark.xy[row])
-        radius, lit = float(mark.radius[row]) * scale, float(mark.lit[row])
-        bright, night = (
-            (colour, mix(sky, colour, 0.28)) if theme.dark else (mix("#FFFFFF", colour, 0.14), mix(sky, colour, 0.62))
-        )
-        if lit >= 0.999 or radius < 2.0 * scale:
-            painter.fillPath(_disc(x, y, radius), QColor(bright))
-        else:
-            painter.fillPath(_disc(x, y, radius), QColor(night))
-            if lit > 0.001:
-                shape = lit_shape(radius, lit, float(mark.limb[row]), x, y)
-                painter.fillPath(path(shape, np.array([0, len(shape)], dtype=np.int32)), QColor(bright))
-        painter.setBrush(QBrush())
-        painter.setPen(QPen(QColor(colour), OUTLINE * scale))
+        colour, bright, night = _colours(theme, name)
+        (x, y), radius, lit = places[row], radii[row], float(mark.lit[row])
+        full = lit >= 0.999 or radius < 2.0 * scale
+        painter.fillPath(_disc(x, y, radius), bright if full else night)
+        if not full and lit > 0.001:
+            shape = lit_shape(radius, lit, float(mark.limb[row]), x, y)
+            painter.fillPath(path(shape, np.array([0, len(shape)], dtype=np.int32)), bright)
+        painter.setPen(QPen(colour, OUTLINE * scale))
         painter.drawEllipse(QPointF(x, y), radius, radius)
         if name == "sun" and not mark.true_size[row]:
-            painter.fillPath(_disc(x, y, 1.6 * scale), QColor(sky if theme.dark else colour))
+            painter.fillPath(_disc(x, y, 1.6 * scale), QColor(theme.colour("sky")) if theme.dark else colour)
 
 
 def _disc(x: float, y: float, radius: float) -> QPainterPath:

@@ -7,20 +7,20 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 from PySide6.QtCore import QPointF, QRect
-from PySide6.QtGui import QBrush, QColor, QFontMetricsF, QImage, QPaintEngine, QPainter, QPen
+from PySide6.QtGui import QBrush, QColor, QImage, QPaintEngine, QPainter, QPen
 
 from colure import marks
 from colure.marks import Scene
 from colure_viewer import strokes
-from colure_viewer.atlas import StarAtlas, TextAtlas
+from colure_viewer.atlas import StarAtlas, TextAtlas, measured
 from colure_viewer.bodyshapes import draw_bodies
-from colure_viewer.fonts import CAP_MIDDLE, PX_PER_PT, family, font
-from colure_viewer.primitives import Batch, fragments, lines, path, polygon
+from colure_viewer.fonts import CAP_MIDDLE, PX_PER_PT, family
+from colure_viewer.primitives import Batch, fragments, lines, path
 from colure_viewer.themes import Theme
 
 F64 = NDArray[np.float64]
 
-MAX_STAR_ATLASES = 4
+MAX_STAR_ATLASES = 12
 FEW_STARS = 1500
 FEW_POINTS = 200
 BAND_BYTES = 262144
@@ -175,17 +175,19 @@ class _Raster:
             # A rim runs along rows and columns of pixels: whole ones are sharper, and ten times as fast.
             self.painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
             thick = max(1, round(strokes.THICKNESS[mark.weight] * self.ratio))
+            level = path(np.floor(points) - (thick - 1) // 2, mark.starts)
             for shift in range(thick):
-                self.painter.drawPath(path(np.floor(points) + (shift - (thick - 1) // 2), mark.starts))
+                self.painter.drawPath(level.translated(shift, shift))
             return
         places = strokes.offsets(mark.weight, self.ratio)
         normal = strokes.normals(points, mark.starts) if len(places) > 1 else None
-        for place in places:
-            moved = points if normal is None else points + place * normal
-            if len(mark.starts) == 2:
-                self.painter.drawPolyline(polygon(moved))
-            else:
-                self.painter.drawPath(path(moved, mark.starts))
+        if normal is None:
+            self.painter.drawPath(path(points, mark.starts))
+        else:
+            # All parallels are one path: to make a path costs more than to draw it.
+            moved = (points + np.multiply.outer(np.array(places), normal)).reshape(-1, 2)
+            firsts = np.add.outer(len(points) * np.arange(len(places), dtype=np.int32), mark.starts[:-1]).ravel()
+            self.painter.drawPath(path(moved, np.append(firsts, np.int32(len(moved)))))
 
     def _strokes(self, xy: F64, colour: str, weight: int) -> None:
         """Draw separate strokes (N, 4), given in device pixels."""
@@ -216,7 +218,7 @@ class _Raster:
         tints = (
             self.theme.tints
             if mark.role.startswith(("star", "legend"))
-            else (self.theme.colour(mark.role),) * marks.TINTS
+            else (self.theme.line(mark.role, mark.colour),) * marks.TINTS
         )
         atlas = self.kit.star_atlas(mark.radii, tints, self.ratio)
         # With antialiasing on, every fragment would be drawn as a filled shape, twice as slowly.
@@ -224,7 +226,7 @@ class _Raster:
         rows = self.kit.fragments.rows(count)
         fine = atlas.fine(mark.xy, self.ratio)
         if self.memory is None or count < FEW_STARS:
-            atlas.fill(rows, fine, mark.size, mark.tint)
+            atlas.fill(rows, atlas.codes(fine, mark.size, mark.tint), fine)
             self.painter.drawPixmapFragments(self.kit.fragments.first(), count, atlas.pixmap)
             return
         self._in_bands(mark, atlas, rows, fine)
@@ -248,7 +250,8 @@ class _Raster:
         narrow = np.uint8 if bands < 256 else np.uint16
         band = np.clip(fine[:small, 1] >> (atlas.bits + shift), 0, bands - 1).astype(narrow)
         order = np.concatenate([np.argsort(band, kind="stable"), np.arange(small, count)])
-        atlas.fill(rows, fine[order], mark.size[order], mark.tint[order])
+        code = atlas.codes(fine, mark.size, mark.tint)
+        atlas.fill(rows, code.take(order), fine.take(order, axis=0))
         ends = np.cumsum(np.bincount(band, minlength=bands)).tolist()
         painter, block, pixmap, start = self.painter, self.kit.fragments, atlas.pixmap, 0
         for number, end in enumerate(ends):
@@ -313,9 +316,9 @@ class _Raster:
         """Draw texts straight on to the page."""
         painter, ratio = self.painter, self.ratio
         em = mark.size_pt * PX_PER_PT
-        painter.setFont(font(family(mark.role), em * ratio, mark.italic, mark.bold))
+        face, metrics = measured(family(mark.role), em * ratio, mark.italic, mark.bold)
+        painter.setFont(face)
         painter.setPen(QColor(self.theme.text(mark.role, mark.colour)))
-        metrics = QFontMetricsF(painter.font(), painter.device())
         for number, (x, y) in zip(mark.index.tolist(), (mark.xy * ratio).tolist(), strict=True):
             text = mark.texts[number]
             left, base = x - metrics.horizontalAdvance(text) / 2.0, y + CAP_MIDDLE * em * ratio

@@ -103,7 +103,7 @@ def _strokes(xy: np.ndarray, colour: str, weight: int, painter: QPainter) -> Non
 def _discs(mark: marks.Discs, theme: Theme, painter: QPainter) -> None:
     painter.setPen(Qt.PenStyle.NoPen)
     stars = mark.role.startswith(("star", "legend"))
-    brushes = [QColor(c) for c in theme.tints] if stars else [QColor(theme.colour(mark.role))] * marks.TINTS
+    brushes = [QColor(c) for c in theme.tints] if stars else [QColor(theme.line(mark.role, mark.colour))] * marks.TINTS
     radii = mark.radii.tolist()
     current = -1
     # Still faintest first, but of one size all of one tint together: a file repeats the colour at each change.
