@@ -16,6 +16,7 @@ Roles, by layer (a suffix after a full stop is a grade of the part before it):
     body.sun body.moon body.<planet>          rim            frame lines; rim.bar filled graduation, rim.tick
     label.star label.deepsky label.body label.constellation label.circle label.belt label.grid
     figure.circle figure.rim                  degree figures
+    overlay.N      marks, arrows and outlines of the overlay at place N of the session's list; label.overlay its texts
     title legend caution                      title block, magnitude legend, warning
     legend.star                               discs of the legend
 """
@@ -80,7 +81,7 @@ class Discs:
     `radii[size]` is the radius in logical pixels (sizes are quantised so that a painter can keep one picture for each);
     `tint` is a class of B−V from 0 (blue, hottest) to 6 (red, coolest), 3 being neutral or unknown. Rows are ordered
     faintest first, so that a bright star is painted over its neighbours. `refs` (N,) are row numbers in the source
-    that the layer names.
+    that the layer names. With a `colour` the tints are not used: all discs have it, made to stand out as lines are.
     """
 
     role: str
@@ -89,6 +90,7 @@ class Discs:
     tint: U8
     radii: F32
     refs: I64
+    colour: str | None = None
 
 
 TINTS = 7

@@ -14,6 +14,7 @@ from typing import Any
 from colure.errors import BodyError, FrameError, SessionError, near_names
 from colure.frames import Frame
 from colure.moment import Moment
+from colure.overlays.model import Overlay
 from colure.sites import Site
 
 FORMAT = 1
@@ -225,6 +226,7 @@ class Session:
     belt: Belt = field(default_factory=Belt)
     bodies: tuple[str, ...] = DEMO_BODIES
     layers: Layers = field(default_factory=Layers)
+    overlays: tuple[Overlay, ...] = ()
     extras: Mapping[str, Any] = field(default_factory=_no_extras, compare=False)
 
     def __post_init__(self) -> None:

@@ -20,7 +20,9 @@ DOT = np.array([1.5], np.float32)
 CELL = 3.0
 _ROW_BITS = 40
 HEAD, HEAD_ANGLE, LEAST_ARROW = 6.0, 0.42, 2.0
-"""Length in pixels and half-angle of an arrow's head; shorter arrows have none and stay a stroke."""
+MOST_ARROWS = 3000
+"""Length in pixels and half-angle of an arrow's head; shorter arrows are not drawn, and of more than the most
+on the map every so-many-th is."""
 
 
 def ref(place: int, rows: I64) -> I64:
@@ -109,9 +111,12 @@ def _image(ctx: Context, sky: "OverlaySky") -> list[Mark]:
 
 def _arrows(ctx: Context, role: str, colour: str, foot: Float, tip: Float) -> list[Mark]:
     """Return arrows between directions (3, M); they have heads where the whole arrow is on the page."""
-    count = foot.shape[1]
-    ends = np.empty((3, 2 * count), dtype=foot.dtype)
-    ends[:, ::2], ends[:, 1::2] = foot, tip
+    camera = ctx.to_camera(foot)
+    x, y = ctx.projector.to_page(camera)
+    at = np.flatnonzero(in_page(ctx, x, y) & ctx.projector.on_sky(camera))
+    at = at[:: -(-len(at) // MOST_ARROWS) or 1]
+    ends = np.empty((3, 2 * len(at)), dtype=foot.dtype)
+    ends[:, ::2], ends[:, 1::2] = foot[:, at], tip[:, at]
     camera = ctx.to_camera(ends)
     x, y = ctx.projector.to_page(camera)
     good = in_page(ctx, x, y) & ctx.projector.on_sky(camera)
