@@ -58,7 +58,7 @@ def legible(colour: str, ground: str, least: float) -> str:
     return away
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Theme:
     """Colours by role; a role such as `label.star` falls back on `label`, and every role on `ink`.
 
