@@ -115,26 +115,31 @@ def around(xy: F32, radius: F32, half: F32) -> F32:
 
 def _hits_discs(centres: F32, half: F32, discs: F32, margin: float) -> NDArray[np.bool_]:
     """Return which boxes (N,) come within `margin` of a disc; `discs` (M, 3) are x, y, radius."""
+    hit = np.zeros(len(centres), dtype=bool)
     if not len(discs) or not len(centres):
-        return np.zeros(len(centres), dtype=bool)
-    dx = np.abs(centres[:, 0, None] - discs[:, 0])
-    dx -= half[:, 0, None]
-    dy = np.abs(centres[:, 1, None] - discs[:, 1])
-    dy -= half[:, 1, None]
-    np.maximum(dx, 0.0, out=dx)
-    np.maximum(dy, 0.0, out=dy)
-    dx *= dx
-    dy *= dy
-    dx += dy
-    return np.asarray((dx < np.square(discs[:, 2] + np.float32(margin))).any(axis=1))
+        return hit
+    # The squares round the discs first: few boxes come near one, and only those are measured.
+    box, disc = np.nonzero(_overlap(centres, half, discs[:, :2], discs[:, [2, 2]], margin))
+    if not len(box):
+        return hit
+    gap = np.abs(centres[box] - discs[disc, :2]) - half[box]
+    np.maximum(gap, 0.0, out=gap)
+    reach = discs[disc, 2] + np.float32(margin)
+    hit[box[gap[:, 0] ** 2 + gap[:, 1] ** 2 < reach * reach]] = True
+    return hit
 
 
 def _overlap(c1: F32, h1: F32, c2: F32, h2: F32, margin: float) -> NDArray[np.bool_]:
     """Return which boxes (N, M) overlap or come within `margin` of each other."""
-    m = np.float32(margin)
-    near_x = np.abs(c1[:, 0, None] - c2[:, 0]) < h1[:, 0, None] + (h2[:, 0] + m)
-    near_y = np.abs(c1[:, 1, None] - c2[:, 1]) < h1[:, 1, None] + (h2[:, 1] + m)
-    return np.asarray(near_x & near_y)
+    grown = h1 + np.float32(margin)
+    low1, high1 = (c1 - grown)[:, :, None], (c1 + grown)[:, :, None]
+    low2, high2 = np.ascontiguousarray((c2 - h2).T), np.ascontiguousarray((c2 + h2).T)
+    # Comparisons only: they write one byte for each pair, where differences would write four.
+    out = np.less(low1[:, 0], high2[0])
+    out &= np.greater(high1[:, 0], low2[0])
+    out &= np.less(low1[:, 1], high2[1])
+    out &= np.greater(high1[:, 1], low2[1])
+    return np.asarray(out)
 
 
 def place(

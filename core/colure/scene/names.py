@@ -100,19 +100,11 @@ def build(
     first = [w for w in (_bodies(listed), _circle_names(ctx, curves)) if w is not None]
     marks: list[Labels] = []
     boxes, first_memory = _settle(ctx, first, discs, previous, None, marks)
-    second = [
-        w
-        for w in (
-            _named(ctx, "points", "label.point", _POINT, 5.0),
-            _figures(curves),
-            _named(ctx, "crossings", "label.belt", _CROSSING, 5.0),
-            _stars(ctx, shown),
-            _belt(ctx),
-            _deep_sky(ctx),
-            _named(ctx, "constellations", "label.constellation", _CONSTELLATION, 4.0, italic=True, centred=True),
-        )
-        if w is not None
-    ]
+    stars, signs, deep = _stars(ctx, shown), _belt(ctx), _deep_sky(ctx)
+    points, crossings = _named(ctx, "points", "label.point", _POINT), _named(ctx, "crossings", "label.belt", _CROSSING)
+    constellations = _named(ctx, "constellations", "label.constellation", _CONSTELLATION)
+    spots = _laid(ctx, [points, crossings, stars, deep, constellations])
+    second = [w for w in (spots[0], _figures(curves), spots[1], spots[2], signs, *spots[3:]) if w is not None]
     _, second_memory = _settle(ctx, second, discs, previous, boxes, marks)
     return Layer("labels", tuple(marks), key), merged([first_memory, second_memory])
 
@@ -257,42 +249,61 @@ def _figure_texts(arcsec: tuple[int, ...], size_pt: float) -> tuple[tuple[str, .
     return texts, np.array([width_px(text, size_pt, "figure.circle") for text in texts], np.float32)
 
 
-def _about(
-    ctx: Context,
-    role: str,
-    code: int,
-    columns: Any,
-    texts: tuple[str, ...],
-    width_em: F32,
-    rows: Any,
-    radius: Any,
-    most: int,
-    *,
-    centred: bool = False,
-    italic: bool = False,
-    size: float = 9.0,
-) -> Wanted | None:
-    """Return texts about points of the sky (3, N), the first `most` that are on the map."""
-    xy, on = on_page(ctx, columns, 0.0)
-    at = np.flatnonzero(on)[:most]
+@dataclass(frozen=True, slots=True, eq=False)
+class Spots:
+    """Texts about points of the sky: directions (3, N), a text, its width in em, its row and a radius for each.
+
+    The first `most` that are on the map ask for a place.
+    """
+
+    role: str
+    code: int
+    columns: Any
+    texts: tuple[str, ...]
+    width_em: F32
+    rows: Any
+    radius: Any
+    most: int = 1000
+    centred: bool = False
+
+
+def _laid(ctx: Context, groups: list[Spots | None]) -> list[Wanted | None]:
+    """Return what each group asks for; the points of all are projected together."""
+    real = [group for group in groups if group is not None and len(group.texts)]
+    if not real:
+        return [None] * len(groups)
+    xy, on = on_page(ctx, np.concatenate([group.columns for group in real], axis=1), 0.0)
+    out: list[Wanted | None] = []
+    at = 0
+    for group in groups:
+        if group is None or not len(group.texts):
+            out.append(None)
+            continue
+        n = len(group.texts)
+        out.append(_about(group, xy[at : at + n], np.flatnonzero(on[at : at + n])[: group.most]))
+        at += n
+    return out
+
+
+def _about(group: Spots, xy: F32, at: Any, size: float = 9.0) -> Wanted | None:
+    """Return the texts of a group at its points `at`, for which there are positions round each."""
     if not len(at):
         return None
     half = np.empty((len(at), 2), np.float32)
-    half[:, 0] = width_em[at] * np.float32(0.5 * size * PX_PER_PT)
+    half[:, 0] = group.width_em[at] * np.float32(0.5 * size * PX_PER_PT)
     half[:, 1] = 0.5 * height(size)
     here = xy[at]
-    r = radius[at] if isinstance(radius, np.ndarray) else np.full(len(at), radius, np.float32)
+    r = group.radius[at] if isinstance(group.radius, np.ndarray) else np.full(len(at), group.radius, np.float32)
     centres = around(here, r, half)
-    if centred:
+    if group.centred:
         centres = np.concatenate([here[:, None, :], centres], axis=1)
-    request = Request(code + rows[at], centres, half)
-    listed = tuple(texts[i] for i in at.tolist())
-    return Wanted(
-        role, request, listed, np.arange(len(at), dtype=np.int32), np.zeros(len(at), np.float32), size, italic=italic
-    )
+    request = Request(group.code + group.rows[at], centres, half)
+    texts = tuple(group.texts[i] for i in at.tolist())
+    index, level = np.arange(len(at), dtype=np.int32), np.zeros(len(at), np.float32)
+    return Wanted(group.role, request, texts, index, level, size, italic=group.role == "label.constellation")
 
 
-def _stars(ctx: Context, shown: star_marks.Shown | None) -> Wanted | None:
+def _stars(ctx: Context, shown: star_marks.Shown | None) -> Spots | None:
     """Return the names of the brightest named stars on the map."""
     if shown is None or "star names" not in ctx.sky.layers:
         return None
@@ -301,15 +312,23 @@ def _stars(ctx: Context, shown: star_marks.Shown | None) -> Wanted | None:
     scale = star_marks.scale_of(ctx.limit)
     radius = scale.radii[scale.size(named.vmag[:bright])]
     directions = ctx.sky["stars"].directions[:, named.at[:bright]]
-    return _about(ctx, "label.star", _STAR, directions, named.texts, named.width_em, named.ids, radius, MOST_STARS)
+    return Spots(
+        "label.star",
+        _STAR,
+        directions,
+        named.texts[:bright],
+        named.width_em[:bright],
+        named.ids[:bright],
+        radius,
+        MOST_STARS,
+    )
 
 
-def _deep_sky(ctx: Context) -> Wanted | None:
+def _deep_sky(ctx: Context) -> Spots | None:
     spots = ctx.made["deep sky"][1] if "deep sky" in ctx.made else None
     if spots is None:
         return None
-    return _about(
-        ctx,
+    return Spots(
         "label.deepsky",
         _DEEP,
         spots.columns,
@@ -321,27 +340,15 @@ def _deep_sky(ctx: Context) -> Wanted | None:
     )
 
 
-def _named(
-    ctx: Context, layer: str, role: str, code: int, radius: float, *, italic: bool = False, centred: bool = False
-) -> Wanted | None:
+def _named(ctx: Context, layer: str, role: str, code: int) -> Spots | None:
     """Return the texts of a layer of the sky that is nothing but texts at directions."""
     if layer not in ctx.sky.layers:
         return None
     found = ctx.sky[layer]
     rows = np.arange(len(found.texts))
-    return _about(
-        ctx,
-        role,
-        code,
-        found.columns,
-        found.texts,
-        found.width_em,
-        rows,
-        radius,
-        len(rows),
-        italic=italic,
-        centred=centred,
-    )
+    # A constellation's name stands on its middle, the others beside their mark.
+    centred = layer == "constellations"
+    return Spots(role, code, found.columns, found.texts, found.width_em, rows, 5.0, centred=centred)
 
 
 def _belt(ctx: Context) -> Wanted | None:
