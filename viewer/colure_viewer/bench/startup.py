@@ -1,6 +1,7 @@
 """Start and memory figures, taken from outside: an interpreter to its first chart, beside an empty window."""
 
 import os
+import signal
 import subprocess
 import sys
 import tempfile
@@ -19,6 +20,7 @@ import numpy, erfa
 
 class Empty(W.QWidget):
     def paintEvent(self, event):
+        W.QWidget.paintEvent(self, event)
         print("painted", flush=True)
 
 application = W.QApplication(sys.argv[:1])
@@ -32,13 +34,22 @@ from dataclasses import replace
 from PySide6.QtCore import QSettings
 from colure.session import Session
 from colure_viewer.app import application, window
+from colure_viewer.chart import ChartWidget
 
+paint = ChartWidget.paintEvent
+
+def first(widget, event):
+    paint(widget, event)
+    print("painted", flush=True)
+    ChartWidget.paintEvent = paint
+
+# Told where the empty window is told: at the end of the painting, before the panels are made.
+ChartWidget.paintEvent = first
 made = application()
 demo = Session.demo()
 settings = QSettings("{settings}", QSettings.Format.IniFormat)
 shown = window(replace(demo, view=replace(demo.view, limit_mag=6.5)), settings=settings)
 shown.resize(1920, 1080)
-shown.chart.painted.connect(lambda: print("painted", flush=True))
 shown.show()
 made.exec()
 """
@@ -64,6 +75,8 @@ def _run(program: str, idle: float) -> tuple[float, float]:
             assert process.stdout is not None
             line = process.stdout.readline()
             spent = time.perf_counter() - begun
+            if not idle:
+                process.send_signal(signal.SIGSTOP)  # its memory as it is at this moment
             if line.strip() != "painted":
                 process.kill()
                 raise RuntimeError(f"the measured process ended before it painted: {process.communicate()[1][-400:]}")
