@@ -401,6 +401,62 @@ def test_refraction_left_out_is_the_apparent_place() -> None:
     assert separation(short.vector, apparent.vector) < 1e-15
 
 
+def test_an_observer_does_without_what_is_left_out() -> None:
+    # What a chart is drawn with: the same directions as with the steps named in every call.
+    left = frozenset({"annual aberration", "deflection", "light time", "nutation"})
+    observer = Observer("site", DEMO, omitted=left)
+    on_path = ("annual aberration", "deflection", "light time")
+    for place in ("astrometric", "apparent"):
+        named = [step for step in on_path if place == "apparent" or step == "light time"]
+        bodies = reduce_bodies(BODIES, NIGHT, observer=observer, place=place).vectors
+        assert np.array_equal(bodies, reduce_bodies(BODIES, NIGHT, observer=AT_SITE, place=place, omit=named).vectors)
+        star = given.star(17)
+        fast = reduce_stars(
+            star.position[None],
+            None if star.velocity is None else star.velocity[None],
+            np.array([star.parallax]),
+            NIGHT,
+            observer=observer,
+            place=place,
+            epoch_jd=star.epoch_jd,
+        )
+        found = ledger.star(17, NIGHT, observer=AT_SITE, place=place, omitted=named)
+        assert separation(np.asarray(fast)[0], found.direction) < 1e-12
+    chart = ledger.body("mars", NIGHT, observer=observer, frame="equator/true/date")
+    plain = ledger.body("mars", NIGHT, observer=AT_SITE, frame="equator/true/date", omitted=left)
+    assert np.array_equal(chart.vector, plain.vector)
+    assert chart["nutation"].omitted
+    axes = turns.reduced("equator/true/date", NIGHT, DEMO, left)
+    assert np.abs(axes - frames.rotation("equator/mean/date", NIGHT).matrix).max() < 3e-14
+
+
+def test_a_turn_alone_needs_no_ephemeris() -> None:
+    # The tables begin at −2999; the precession of the long-term model goes on.
+    found = ledger.direction(
+        np.array([1.0, 0.0, 0.0]), Moment.parse("-4000-01-01"), frame="equator/mean/date", place="astrometric"
+    )
+    assert found["precession of the equator"].size_arcsec > 70.0 * 3600.0
+
+
+def test_the_caution_near_the_sun_and_only_there() -> None:
+    # Mercury meets the Sun twice in its synodic period of 116 days, so once in 60 days or nearly; Uranus is at opposition
+    # in late November 2026.
+    near = min(
+        (ledger.body("mercury", NIGHT.shifted(float(d))) for d in range(0, 60, 5)), key=lambda one: _from_sun(one)
+    )
+    far = ledger.body("uranus", NIGHT)
+    assert _from_sun(near) < 15.0
+    assert "CAUTION" in ledger.as_text(near)
+    assert ledger.full_records(near)[0]["caution"] is True
+    assert "CAUTION" not in ledger.as_text(far)
+    assert ledger.full_records(far)[0]["caution"] is False
+
+
+def _from_sun(found: ledger.Ledger) -> float:
+    sun = reduce_bodies(("sun",), found.moment, place="astrometric").vectors[0]
+    return float(separation(sun, found.direction)) / DEG
+
+
 def test_omission_is_nothing_where_nothing_is_left_out() -> None:
     assert ledger.omission("icrs", NIGHT, None, {"nutation"}) is None
     assert ledger.omission("equator/true/date", NIGHT, None, {"annual aberration"}) is None

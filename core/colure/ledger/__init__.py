@@ -105,7 +105,7 @@ def led_back(
         raise FrameError(f"a position seen at the {seen} place: takes no motion and no covariance")
     kernel: Any = ephemeris
     steps = build.star_steps(source, seen, observer)
-    way = build.contexts(moment, observer, seen, source.epoch_jd, steps, frozenset(), kernel)
+    way = build.contexts(moment, observer, seen, source.epoch_jd, steps, kernel)
     back = unapply(way[-1], source.position[None, :])[0]
     return replace(source, position=back, seen=seen, seen_as=source.position)
 

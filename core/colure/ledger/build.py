@@ -61,13 +61,13 @@ def _prepared(
     """Check what was asked and fill in the place; polar motion left out is left out of the observer as well."""
     if moment.shape != ():
         raise ColureError(f"ledger: {moment.size} moments were given; a ledger is of one")
-    left_out = check_omitted(omitted)
+    left_out = check_omitted(omitted) | observer.omitted
     frame = frames.parsed(frame)
     if place is None:
         place, _ = defaults(frame, observer.site, None, observer.origin)
     check_place(place, observer)
-    if turns.POLAR_MOTION in left_out:
-        observer = replace(observer, polar_motion=False)
+    if left_out != observer.omitted:
+        observer = replace(observer, omitted=left_out)
     return observer, place, frame, left_out
 
 
@@ -94,15 +94,14 @@ def body(
     if place == "geometric":
         way = [step for step in way if step != "light time"]
     trace: list[TraceEntry] = []
-    on_path = left_out & {*way}
-    seen = reduce_bodies(
-        (name,), moment, observer=observer, place=place, ephemeris=source, omit=sorted(on_path), trace=trace
-    )
+    seen = reduce_bodies((name,), moment, observer=observer, place=place, ephemeris=source, trace=trace)
     found = {_full(one.name): unit(one.vectors[0]) for one in trace}
     stages = [_sky_stage("barycentric", None, found["barycentric"], source.source(jd_tdb(moment)))]
     for step in _seen_from(way, observer):
         before = stages[-1].after
-        stages.append(_sky_stage(step, before, found.get(step, before), _model(step, source, moment), step in left_out))
+        stages.append(
+            _sky_stage(step, before, found.get(step, before), _model(step, source, moment, observer), step in left_out)
+        )
     end = seen.vectors[0]
     stages, vector = _to_frame(stages, end, frame, moment, observer, left_out)
     pos, vel = source.posvel((name,), *moment.tdb)
@@ -124,10 +123,11 @@ def _seen_from(way: Sequence[str], observer: Observer) -> list[str]:
     return [step for step in way if step not in _DIURNAL or observer.origin == "site"]
 
 
-def _model(step: str, ephemeris: Ephemeris, moment: Moment) -> str:
+def _model(step: str, ephemeris: Ephemeris, moment: Moment, observer: Observer) -> str:
+    centre = {"sun": "the Sun", "ssb": "itself", "emb": "the Earth–Moon barycentre"}.get(observer.origin, "the Earth")
     match step:
         case "annual parallax" | "annual aberration":
-            what = "from the barycentre" if "parallax" in step else "relativistic; velocity"
+            what = f"from the barycentre to {centre}" if "parallax" in step else f"relativistic; velocity of {centre}"
             return f"{what}, {ephemeris.source(jd_tdb(moment))}"
         case "diurnal parallax":
             return "WGS84 site"
@@ -152,15 +152,19 @@ def contexts(
     place: str,
     epoch_jd: float,
     steps: tuple[str, ...],
-    omitted: frozenset[str],
     ephemeris: Any,
 ) -> tuple[StarContext, ...]:
-    """Return one context for every step: each leaves out the steps after it, and the last nothing but `omitted`."""
+    """Return one context for every step: each leaves out the steps after it, and the last none on the way.
+
+    What the observer does without is left out of all.
+    """
+    if not steps:
+        return ()
     state = observer_state(observer, moment, ephemeris)
     found = []
     for last in range(len(steps)):
-        left = omitted | {*steps[last + 1 :]} | ({*STAR_STEPS} - {*steps})
-        found.append(context_of(state, moment, observer, place, epoch_jd, None, left & {*STAR_STEPS}))
+        left = {*STAR_STEPS} - {*steps[: last + 1]}
+        found.append(context_of(state, moment, observer, place, epoch_jd, None, left))
     return tuple(found)
 
 
@@ -189,7 +193,7 @@ def source(
     observer, place, frame, left_out = _prepared(moment, observer, place, frame, omitted)
     steps = star_steps(given, place, observer)
     kernel: Any = ephemeris
-    states = contexts(moment, observer, place, given.epoch_jd, steps, left_out & {*steps}, kernel)
+    states = contexts(moment, observer, place, given.epoch_jd, steps, kernel)
     position, velocity = given.position[None, :], None if given.velocity is None else given.velocity[None, :]
     parallax = None if given.parallax is None else np.array([given.parallax])
     stages = _start(given, moment, observer.site)
@@ -197,7 +201,7 @@ def source(
     ends = covariance.spreads(given, states)
     for number, (step, context) in enumerate(zip(steps, states, strict=True)):
         after = np.asarray(apply_context(context, position, velocity, parallax))[0]
-        model = "Rømer: across the Earth's orbit" if step == "light time" else _model(step, shown, moment)
+        model = "Rømer: across the Earth's orbit" if step == "light time" else _model(step, shown, moment, observer)
         carried = None if ends is None else covariance.carried(given, after, ends[number])
         stages.append(_sky_stage(step, stages[-1].after, after, model, step in left_out, carried))
     end = stages[-1].after
@@ -257,7 +261,7 @@ def _to_frame(
     epoch = None
     if not frame.is_rotation and given is not None and not given.frame.is_rotation:
         epoch = float(given.echo["epoch"].lstrip("B"))
-    chain = turns.chain(frame, moment, observer.site, polar_motion=observer.polar_motion, epoch=epoch)
+    chain = turns.chain(frame, moment, observer.site, polar_motion=observer.has_pole, epoch=epoch)
     here = stages[-1].after
     matrix: Float | None = np.eye(3)
     applied = []

@@ -9,12 +9,20 @@ from typing import Any
 import numpy as np
 
 from colure import angles, everyframe
+from colure.arrays import DEG, separation
+from colure.bodies import CAUTION_DEG, FROM_EARTH
+from colure.errors import SpanError
 from colure.frames import Frame
 from colure.ledger.doubt import IN_EPHEMERIS
 from colure.ledger.entries import Entry, Ledger
+from colure.reduction import reduce_bodies
 
 _EQUATORIAL, _OTHER = Frame("icrs"), Frame("galactic")
 _DASH = angles.UNKNOWN
+CAUTION = (
+    f"CAUTION: within {CAUTION_DEG:g}° of the Sun. Pointing optics near the Sun injures eyes and instruments; follow"
+    " the rules of your site."
+)
 
 
 def records(ledger: Ledger, *, matrices: bool = False) -> list[dict[str, Any]]:
@@ -75,7 +83,20 @@ def heading(ledger: Ledger) -> dict[str, Any]:
     }
     if observer.origin == "site":
         common["site"] = str(observer.site)
+    if observer.origin in FROM_EARTH:
+        common["caution"] = near_sun(ledger)
     return common | ledger.given
+
+
+def near_sun(ledger: Ledger) -> bool:
+    """Return whether the direction lies within CAUTION_DEG of the Sun, seen from the Earth or a site on it."""
+    if ledger.observer.origin not in FROM_EARTH:
+        return False
+    try:
+        sun = reduce_bodies(("sun",), ledger.moment, observer=ledger.observer, place="astrometric").vectors[0]
+    except SpanError:
+        return False  # no Sun, no telescope
+    return bool(separation(sun, ledger.direction) < CAUTION_DEG * DEG)
 
 
 def full_records(ledger: Ledger, *, matrices: bool = False) -> list[dict[str, Any]]:
@@ -177,6 +198,8 @@ def as_text(ledger: Ledger, *, matrices: bool = False) -> str:
             f"covariance carried to the end: {last['sigma_lon_arcsec']:.3g}″ along longitude, "
             f"{last['sigma_lat_arcsec']:.3g}″ along latitude, correlation {last['correlation']:.3f}"
         )
+    if near_sun(ledger):
+        lines.append(CAUTION)
     if matrices:
         lines += _matrices(ledger)
     return "\n".join(lines)

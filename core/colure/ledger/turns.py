@@ -9,7 +9,6 @@ from collections.abc import Callable, Collection
 from dataclasses import dataclass
 from functools import lru_cache
 
-import erfa
 import numpy as np
 
 from colure import fk4, frames, ofdate, precession, sidereal
@@ -228,6 +227,25 @@ def _fk4(frame: Frame, epoch: float | None) -> tuple[Turn, ...]:
     return tuple(turns)
 
 
+def reduced(
+    frame: Frame | str, moment: Moment, site: Site | None, omitted: Collection[str], *, polar_motion: bool = True
+) -> Float:
+    """Return the matrix (3, 3) from ICRS axes to a frame without the turns that `omitted` names.
+
+    With it in place of the frame's own, a chart shows what leaving them out does to its circles and its grid.
+    """
+    frame = frames.parsed(frame)
+    polar_motion = polar_motion and POLAR_MOTION not in omitted
+    if not set(omitted) & set(STEPS):
+        return final_matrix(frame, moment, site, polar_motion=polar_motion)
+    short = np.eye(3)
+    for turn in chain(frame, moment, site, polar_motion=polar_motion):
+        if turn.name not in omitted:
+            assert turn.matrix is not None
+            short = turn.matrix @ short
+    return short
+
+
 def omission(
     frame: Frame | str,
     moment: Moment,
@@ -244,17 +262,7 @@ def omission(
     frame = frames.parsed(frame)
     if not frame.is_rotation or not set(omitted) & set(STEPS):
         return None
-    turns = chain(frame, moment, site, polar_motion=polar_motion)
-    if not any(turn.name in omitted for turn in turns):
+    if not any(turn.name in omitted for turn in chain(frame, moment, site, polar_motion=polar_motion)):
         return None
-    short = np.eye(3)
-    for turn in turns:
-        if turn.name not in omitted:
-            assert turn.matrix is not None
-            short = turn.matrix @ short
+    short = reduced(frame, moment, site, omitted, polar_motion=polar_motion)
     return np.asarray(final_matrix(frame, moment, site, polar_motion=polar_motion).T @ short)
-
-
-def besselian(moment: Moment) -> float:
-    """Return a moment as a Besselian year, which is how the epoch of an FK4 observation is counted."""
-    return float(erfa.epb(*moment.tt))

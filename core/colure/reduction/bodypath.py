@@ -82,8 +82,9 @@ def reduce_bodies(
     """Return the directions of bodies at moments of any shape.
 
     `place`: "geometric" (where the body is now), "astrometric" (where its light left it), "apparent" (bent by the Sun
-    and turned by aberration) or "observed" (lifted by the air, needs a site). `omit` names steps to leave out, or
-    the annual or diurnal part of one; `trace`, a list, receives the direction after every step and part of a step.
+    and turned by aberration) or "observed" (lifted by the air, needs a site). `omit` names steps to leave out, or the
+    annual or diurnal part of one, besides those that the observer does without; `trace`, a list, receives the direction
+    after every step and part of a step.
     """
     check_place(place, observer)
     source = ephemeris if ephemeris is not None else default()
@@ -96,7 +97,9 @@ def reduce_bodies(
                 f"body '{body}' has no direction from origin '{observer.origin}': it is where the observer is"
             )
     geometry, optics = path(place)
-    check_omitted(omit, names_on_the_way(place), place)
+    known = names_on_the_way(place)
+    check_omitted(omit, known, place)
+    omit = (*omit, *observer.omitted.intersection(known))
 
     shape = moment.shape
     centre = "earth" if observer.origin == "site" else observer.origin

@@ -26,7 +26,8 @@ class Observer:
     """Where the observer stands: a centre, or a site on the Earth.
 
     `polar_motion` switches the IERS pole of a site; `air` overrides the site's atmosphere for the observed place;
-    `model` is the precession that carries the site ("auto", or a name of `colure.precession`).
+    `model` is the precession that carries the site ("auto", or a name of `colure.precession`). `omitted` names steps
+    that everything seen by this observer does without: what a chart shows when a step of the ledger is switched off.
     """
 
     origin: str = "earth"
@@ -34,12 +35,18 @@ class Observer:
     polar_motion: bool = True
     air: Atmosphere | None = None
     model: str = "auto"
+    omitted: frozenset[str] = frozenset()
 
     def __post_init__(self) -> None:
         if self.origin not in ORIGINS:
             raise SiteError(f"origin '{self.origin}': expected one of {', '.join(ORIGINS)}")
         if self.origin == "site" and self.site is None:
             raise SiteError("origin 'site': no site was given")
+
+    @property
+    def has_pole(self) -> bool:
+        """Whether polar motion carries the site."""
+        return self.polar_motion and "polar motion" not in self.omitted
 
     @property
     def atmosphere(self) -> Atmosphere:
@@ -99,7 +106,7 @@ def place_observer(
     """Return the state of an observer about a centre whose barycentric state is already known."""
     if observer.origin != "site" or observer.site is None:
         return ObserverState(centre[0], centre[1], centre[0], centre[1], sun[0], sun[1])
-    matrix = sidereal.terrestrial_matrix(moment, polar_motion=observer.polar_motion, model=observer.model)
+    matrix = sidereal.terrestrial_matrix(moment, polar_motion=observer.has_pole, model=observer.model)
     offset, motion, zenith = _site_vectors(observer.site, matrix)
     return ObserverState(centre[0] + offset, centre[1] + motion, centre[0], centre[1], sun[0], sun[1], zenith, matrix)
 

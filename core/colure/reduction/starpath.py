@@ -119,6 +119,7 @@ def context_of(
     omit: Collection[str] = (),
 ) -> StarContext:
     """Return the context of an observer whose state is already known; see `star_context`."""
+    omit = observer.omitted.union(omit)
     jd1, jd2 = moment.tdb
     from_sun = state.pos - state.sun_pos
     distance = float(np.sqrt(from_sun @ from_sun))
