@@ -9,6 +9,7 @@ A key that this version does not know is kept, written back by `dumps`, and name
     [view]    projection, up, east_left, width_deg, rotation_deg, limit_mag
     [view.centre]  frame, lon_deg, lat_deg   or   body
     [[circles]]    frame, lat_deg, colour, visible, graduated, label
+    [[overlays]]   path, sha256, frame, kind, epoch, lon, lat, …: the rows stay in their file
     [belt]    [layers]    bodies = ["sun", …]
 """
 
@@ -26,17 +27,20 @@ import tomli_w
 
 from colure.errors import ColureError, SessionError
 from colure.moment import Moment
+from colure.overlays.model import Overlay
 from colure.session import FORMAT, Belt, Centre, Circle, Layers, Session, View
 from colure.sites import Site
 
 LARGEST = 1_000_000
 """Largest session file in bytes: a real one has a few thousand."""
 MOST_CIRCLES = 200
+MOST_OVERLAYS = 50
 
 T = TypeVar("T")
 
 _MOMENT_KEYS = ("text", "tt_jd", "scale", "calendar")
 _CIRCLE_KEYS = tuple(f.name for f in fields(Circle) if f.name != "extras")
+_OVERLAY_KEYS = tuple(f.name for f in fields(Overlay) if f.name != "extras")
 _TOP_KEYS = (
     "format",
     "moment",
@@ -48,6 +52,7 @@ _TOP_KEYS = (
     "belt",
     "bodies",
     "layers",
+    "overlays",
 )
 
 
@@ -75,6 +80,8 @@ def dumps(session: Session) -> str:
         "layers": _plain(session.layers),
         "circles": [{**circle.extras, **_plain(circle)} for circle in session.circles],
     }
+    if session.overlays:
+        document["overlays"] = [{**overlay.extras, **_plain(overlay)} for overlay in session.overlays]
     if session.layers.grid is None:
         document["layers"]["grid"] = ""
     _merge(document, session.extras)
@@ -178,6 +185,8 @@ class _Reader:
             values["belt"] = self._table("belt", Belt)
         if "layers" in top:
             values["layers"] = self._layers()
+        if "overlays" in top:
+            values["overlays"] = self._overlays(top["overlays"])
         if "bodies" in top:
             bodies = self._typed("bodies", top["bodies"], list, "a list of names")
             values["bodies"] = tuple(self._typed(f"bodies[{i}]", b, str, "text") for i, b in enumerate(bodies))
@@ -231,11 +240,13 @@ class _Reader:
             path = f"{where}.{key}"
             if text.startswith("bool"):
                 found[key] = self._typed(path, value, bool, "true or false")
+            elif text == "int":
+                found[key] = self._typed(path, value, int, "a whole number")
             elif text.startswith("float"):
                 found[key] = float(self._typed(path, value, (int, float), "a number"))
             elif text.startswith("str"):
                 found[key] = self._typed(path, value, str, "text")
-        if kind is not Circle:
+        if kind not in (Circle, Overlay):
             self._note(where, table, tuple(annotations))
         return found
 
@@ -298,6 +309,22 @@ class _Reader:
             self.unknown += [f"{where}.{key}" for key in inner["extras"]]
             circles.append(self._made(where, lambda inner=inner: Circle(**inner)))  # type: ignore[misc]
         return tuple(circles)
+
+    def _overlays(self, value: Any) -> tuple[Overlay, ...]:
+        rows = self._typed("overlays", value, list, "a list of tables")
+        if len(rows) > MOST_OVERLAYS:
+            raise SessionError(f"overlays: {len(rows)} of them; expected at most {MOST_OVERLAYS}")
+        overlays = []
+        for i, row in enumerate(rows):
+            where = f"overlays[{i}]"
+            inner = self._fields(where, self._typed(where, row, dict, "a table"), Overlay)
+            for key in ("path", "sha256", "frame"):
+                if key not in inner:
+                    raise SessionError(f"{where}.{key}: missing; expected text")
+            inner["extras"] = MappingProxyType({key: row[key] for key in row if key not in _OVERLAY_KEYS})
+            self.unknown += [f"{where}.{key}" for key in inner["extras"]]
+            overlays.append(self._made(where, lambda inner=inner: Overlay(**inner)))  # type: ignore[misc]
+        return tuple(overlays)
 
 
 def _name(kind: Any) -> str:

@@ -68,7 +68,7 @@ def _rows(ctx: Context, sky: "OverlaySky") -> tuple[Symbols | Discs, int]:
     if ctx.projector.projection.name == "mercator":
         on &= ctx.projector.on_sky(camera)
     inside = np.flatnonzero(on)
-    keep = inside[_first_in_cell(x[inside], y[inside])]
+    keep = inside[_first_in_cell(x[inside] - (ctx.frame[0] - 16.0), y[inside] - (ctx.frame[1] - 16.0))]
     xy = np.stack([x[keep], y[keep]], axis=1).astype(np.float32)
     crowded = len(keep) > CROWD
     rows = keep if numbers is None else numbers[keep]
@@ -82,11 +82,11 @@ def _rows(ctx: Context, sky: "OverlaySky") -> tuple[Symbols | Discs, int]:
 
 
 def _first_in_cell(x: F32, y: F32) -> I64:
-    """Return the numbers, ascending, of the first point in each cell of CELL pixels."""
+    """Return the numbers, ascending, of the first point in each cell of CELL pixels; x, y are not negative."""
     if not len(x):
         return np.empty(0, np.int64)
-    column = ((x - x.min()) * (1.0 / CELL)).astype(np.int64)
-    row = ((y - y.min()) * (1.0 / CELL)).astype(np.int64)
+    column = (x * (1.0 / CELL)).astype(np.int64)
+    row = (y * (1.0 / CELL)).astype(np.int64)
     width = int(column.max()) + 1
     cell = row * width + column
     owner = np.empty(width * (int(row.max()) + 1), dtype=np.int64)
