@@ -174,6 +174,19 @@ def test_an_image_has_an_outline_a_grid_arrows_and_its_title(tmp_path: Path) -> 
     assert arrows[0, 3] < arrows[0, 1] - 20
     assert arrows[1, 2] < arrows[1, 0] - 20
     assert found["overlays"][0].texts == ("field.hdr", "N", "E")
+    texts = [m for m in chart.layer("labels").marks if isinstance(m, marks.Labels) and m.role == "label.overlay"]
+    shown = {m.texts[i] for m in texts for i in m.index.tolist()}
+    assert {"N", "E"} <= shown
+    assert all(m.colour == overlay.colour_at(0) for m in texts)
+
+
+def test_names_of_rows_are_shown_where_asked_for(tmp_path: Path) -> None:
+    overlay = opening.open_file(_table(tmp_path, [79.0, 81.0], [19.0, 21.0]), frame="icrs")
+    assert overlay.name == "name"
+    for asked, expected in ((False, set()), (True, {"r0", "r1"})):
+        _, chart = _scene(_session(replace(overlay, names_shown=asked)))
+        texts = [m for m in chart.layer("labels").marks if isinstance(m, marks.Labels) and m.role == "label.overlay"]
+        assert {m.texts[i] for m in texts for i in m.index.tolist()} == expected
 
 
 def test_an_outline_that_crosses_the_edge_of_the_page_is_cut(tmp_path: Path) -> None:

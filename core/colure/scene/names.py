@@ -105,6 +105,10 @@ def build(
     constellations = _named(ctx, "constellations", "label.constellation", _CONSTELLATION)
     spots = _laid(ctx, [points, crossings, stars, deep, constellations])
     second = [w for w in (spots[0], _figures(curves), spots[1], spots[2], signs, *spots[3:]) if w is not None]
+    if "overlays" in ctx.made:
+        from colure.scene.overlaynames import wanted  # it builds on this module
+
+        second = [*wanted(ctx), *second]
     _, second_memory = _settle(ctx, second, discs, previous, boxes, marks)
     return Layer("labels", tuple(marks), key), merged([first_memory, second_memory])
 

@@ -19,7 +19,7 @@ APART = 5.5
 
 def wanted(ctx: Context) -> list[Wanted]:
     """Return the texts of every overlay on the map, in the overlay's colour."""
-    return [w for sky in ctx.sky["overlays"] if (w := _of(ctx, sky)) is not None] if "overlays" in ctx.made else []
+    return [w for sky in ctx.sky["overlays"] if (w := _of(ctx, sky)) is not None]
 
 
 def _of(ctx: Context, sky: object) -> Wanted | None:

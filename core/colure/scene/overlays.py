@@ -6,7 +6,7 @@ import numpy as np
 
 from colure.arrays import Float
 from colure.clipping import lines
-from colure.marks import DIVISION, F32, GRID, I64, Discs, Layer, Lines, Mark, Segments, Symbols
+from colure.marks import DIVISION, GRID, I64, Discs, Layer, Lines, Mark, Segments, Symbols
 from colure.scene.context import Context, in_page
 
 if TYPE_CHECKING:  # a start without overlays loads none of their modules
@@ -81,7 +81,7 @@ def _rows(ctx: Context, sky: "OverlaySky") -> tuple[Symbols | Discs, int]:
     return Symbols(role, (shape,), zeros, xy, size, zeros.astype(np.float32), refs, sky.colour), len(inside)
 
 
-def _first_in_cell(x: F32, y: F32) -> I64:
+def _first_in_cell(x: Float, y: Float) -> I64:
     """Return the numbers, ascending, of the first point in each cell of CELL pixels; x, y are not negative."""
     if not len(x):
         return np.empty(0, np.int64)
