@@ -40,7 +40,7 @@ def session(limit: float) -> Session:
     )
 
 
-class _Film:
+class Film:
     """Frames in a row: each begins with the chart before it, as a window does."""
 
     def __init__(self, limit: float, page: tuple[int, int, float]) -> None:
@@ -53,6 +53,7 @@ class _Film:
         self.turn = 0
 
     def paint(self) -> None:
+        """The chart as it is, painted anew."""
         painter = QPainter(self.image)
         paint.draw(self.chart.scene, self.theme, painter)
         painter.end()
@@ -85,7 +86,7 @@ def counts(scene: Scene) -> dict[str, float]:
 
 
 def _full(limit: float, page: tuple[int, int, float], most_ms: float, *, judged: bool) -> Figure:
-    film = _Film(limit, page)
+    film = Film(limit, page)
     for _ in range(8):
         film.next_date()
     jobs = {"colure": film.next_date, "paint": film.paint, "bare painter": bare_painter(film.chart.scene)}
@@ -119,7 +120,7 @@ def frame_full_v8_4k() -> Figure:
 
 def frame_pan_v8() -> Figure:
     """Whole sky with stars to V 8, the view alone changed; labels are placed."""
-    film = _Film(8.0, HD)
+    film = Film(8.0, HD)
     for _ in range(8):
         film.next_view()
     times = in_turn({"colure": film.next_view}, runs=RUNS)

@@ -24,6 +24,8 @@ FIGURES = {
     "stars_apparent_120k": "skies",
     "cone_1deg": "skies",
     "pointer_ledger": "ledgers",
+    "overlay_pan_100k": "overlays",
+    "overlay_match_100k": "overlays",
 }
 """The figures in the order of the documentation, and the module that measures each."""
 
