@@ -553,3 +553,53 @@ def test_a_chart_of_very_many_stars_is_finished_beside_the_window(qtbot, window)
     window.desk.put(session, "test")
     assert window.chart.scene
     assert window.chart.whole
+
+
+def test_running_time_stops_where_the_ephemeris_ends(qtbot, window):
+    """A chart that follows a body cannot go on past the tables: it stands at the last moment that could be drawn."""
+    session = window.desk.session
+    # The tables of the shipped ephemeris reach JD 2816816.5, in the year 3000.
+    near = Moment.parse("JD 2816787.5 TT")
+    view = replace(session.view, centre=replace(session.view.centre, body="mars"))
+    window.desk.put(replace(session, moment=near, view=view), "test")
+    window.chart.repaint()
+    window.top.moment.speed.setCurrentIndex(window.top.moment.speed.count() - 2)
+    with qtbot.waitSignal(window.desk.faulted, timeout=10000):
+        window.run_on()
+    assert window.top.moment.running == 0
+    assert near.jd_tt <= window.desk.session.moment.jd_tt < 2816816.6
+    window.chart.repaint()
+    assert window.chart.scene.layer("bodies").shown > 0
+
+
+def test_a_first_session_that_cannot_be_drawn_is_said_on_the_page(qtbot, settings):
+    session = Session.demo()
+    view = replace(session.view, centre=replace(session.view.centre, body="earth"))
+    made = app.window(replace(session, view=view), settings=settings)
+    qtbot.addWidget(made)
+    made.resize(1024, 700)
+    made.show()
+    qtbot.waitUntil(lambda: "cannot" in made.chart._reason or "direction" in made.chart._reason)
+    # It does not ask again and again.
+    with qtbot.assertNotEmitted(made.desk.faulted, wait=100):
+        made.chart.repaint()
+    qtbot.waitUntil(lambda: made.top is not None)
+    type_into(qtbot, made.top.view.centre, "mars")
+    made.chart.repaint()
+    assert made.chart.scene.layer("bodies").shown > 0
+
+
+def test_printing_fills_the_page(qapp, window, tmp_path):
+    from PySide6.QtPrintSupport import QPrinter
+
+    from colure_viewer import export
+    from colure_viewer.themes import PRINT
+
+    printer = QPrinter(QPrinter.PrinterMode.HighResolution)
+    printer.setOutputFormat(QPrinter.OutputFormat.PdfFormat)
+    printer.setOutputFileName(str(tmp_path / "page.pdf"))
+    export.print_chart(window.chart.scene, PRINT, printer)
+    data = (tmp_path / "page.pdf").read_bytes()
+    assert data.startswith(b"%PDF")
+    assert b"/Subtype /Image" not in data
+    assert PRINT.colour("sky") == "#FFFFFF"

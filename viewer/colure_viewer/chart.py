@@ -1,5 +1,6 @@
 """The chart on the screen: shows the session of the desk, with the selection and the measurement over it."""
 
+from contextlib import suppress
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -25,7 +26,7 @@ if TYPE_CHECKING:
 
 MOST_AT_ONCE = 90_000
 """Stars that are reduced and laid out between two frames without holding up the window."""
-LATER_MS = 250
+LATER_MS, FOLLOW_MS = 250, 150
 
 
 class ChartWidget(QWidget):
@@ -48,10 +49,17 @@ class ChartWidget(QWidget):
         self._shown_once = False
         self._jobs: Jobs | None = None
         self.whole = True
+        self._good: Session | None = None
+        self._bad: Session | None = None
+        self._reason = ""
         self._later = QTimer(self)
         self._later.setSingleShot(True)
         self._later.setInterval(LATER_MS)
         self._later.timeout.connect(self._finish)
+        self._following = QTimer(self)
+        self._following.setSingleShot(True)
+        self._following.setInterval(FOLLOW_MS)
+        self._following.timeout.connect(self._follow)
         self.ends: tuple[Pointed, Pointed] | None = None
         self.setSizePolicy(QSizePolicy.Policy.Expanding, QSizePolicy.Policy.Expanding)
         self.setAccessibleName("Sky chart")
@@ -109,14 +117,22 @@ class ChartWidget(QWidget):
         self._jobs.run(f"Stars to {limit} mag", lambda: compose(session, *size, ratio), done, self._desk.faulted.emit)
 
     @property
+    def current(self) -> Chart | None:
+        """The chart of the session, or the last one where that cannot be drawn; None where there never was one."""
+        try:
+            return self.chart
+        except ColureError:
+            return self._chart
+
+    @property
     def scene(self) -> Scene:
-        """The scene of the chart."""
-        return self.chart.scene
+        """The scene of the current chart."""
+        return (self.current or self.chart).scene
 
     @property
     def sky(self) -> Sky:
-        """The sky of the chart."""
-        return self.chart.sky
+        """The sky of the current chart."""
+        return (self.current or self.chart).sky
 
     def check(self, session: Session) -> None:
         """Compose a session that is about to be shown; raise its ColureError, the chart staying as it is."""
@@ -128,23 +144,36 @@ class ChartWidget(QWidget):
             self._later.start()
 
     def _changed(self, transient: bool) -> None:
-        selection = self._desk.selection
-        if selection is not None and not transient:
-            from colure import pointing
-
-            self._desk.select(pointing.again(self.sky, selection))
+        if self._desk.selection is not None:
+            # While time runs the figures follow a few times a second, the ring at every frame.
+            if transient:
+                if not self._following.isActive():
+                    self._following.start()
+            else:
+                self._follow()
         self.update()
+
+    def _follow(self) -> None:
+        """Bring the selected object to where it is now."""
+        from colure import pointing
+
+        self._following.stop()
+        if self._desk.selection is not None and self._chart is not None:
+            with suppress(ColureError):
+                self._desk.select(pointing.again(self.sky, self._desk.selection))
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Draw the chart if anything in it has changed, then what lies over it."""
         chart: Chart | None
         try:
             chart = self.chart
+            self._good, self._bad = self._desk.session, None
         except ColureError as fault:
-            # Only a passing session can be refused here: an action is checked before it is taken.
-            self._composed = None
-            QTimer.singleShot(0, lambda text=str(fault): self._refused(text))
+            # Only a passing session, or the first of all, can be refused here: an action is checked before it is taken.
             chart = self._chart
+            if self._bad is not self._desk.session:
+                self._bad = self._desk.session
+                QTimer.singleShot(0, lambda text=str(fault): self._refused(text))
         if chart is not None:
             key = (id(chart.scene), self._desk.theme.name)
             if self._drawn != key or self._image is None:
@@ -154,7 +183,7 @@ class ChartWidget(QWidget):
         if self._image is not None:
             painter.drawImage(QPointF(0.0, 0.0), self._image)
         else:
-            painter.fillRect(self.rect(), QColor(self._desk.theme.colour("paper")))
+            self._say_empty(painter)
         if chart is not None:
             self._overlay(painter, chart.scene)
         painter.end()
@@ -167,9 +196,23 @@ class ChartWidget(QWidget):
         super().resizeEvent(event)
         self.update()
 
+    def _say_empty(self, painter: QPainter) -> None:
+        """Say on the empty page why there is no chart."""
+        theme = self._desk.theme
+        painter.fillRect(self.rect(), QColor(theme.colour("paper")))
+        painter.setPen(QColor(theme.colour("fault")))
+        painter.setFont(font(SANS, 15.0))
+        # 0x1000 wraps words; the namespace Qt that names it is slow to import and not needed otherwise.
+        box = self.rect().adjusted(40, 40, -40, -40)
+        painter.drawText(box, 0x1000, f"This view cannot be drawn. {self._reason}" if self._reason else "")
+
     def _refused(self, text: str) -> None:
-        self._desk.abandon()
-        self._desk.faulted.emit(text)
+        if self._good is not None:
+            self._desk.break_off(self._good, text)
+        else:
+            self._reason = text
+            self._desk.faulted.emit(text)
+            self.update()
 
     def _draw(self, scene: Scene) -> None:
         size = QSize(round(scene.width * scene.ratio), round(scene.height * scene.ratio))
@@ -181,7 +224,8 @@ class ChartWidget(QWidget):
         painter.end()
 
     def _pixel(self, scene: Scene, pointed: "Pointed") -> QPointF | None:
-        x, y = (float(v) for v in scene.projector.project(pointed.vector))
+        moving = self.sky["bodies"].vector(pointed.name.casefold()) if pointed.kind == "bodies" else None
+        x, y = (float(v) for v in scene.projector.project(pointed.vector if moving is None else moving))
         left, top, right, bottom = scene.frame
         inside = np.isfinite([x, y]).all() and left <= x <= right and top <= y <= bottom
         return QPointF(x, y) if inside else None

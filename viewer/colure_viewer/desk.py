@@ -18,12 +18,14 @@ if TYPE_CHECKING:
 class Desk(QObject):
     """The one place through which sessions change; widgets read `session` and hear `changed`.
 
-    `changed` carries whether the session is a transient one. `faulted` carries one line for the user.
+    `changed` carries whether the session is a transient one. `faulted` carries one line for the user, `stopped` says
+    that running time must stop.
     """
 
     changed = Signal(bool)
     selected = Signal()
     themed = Signal()
+    stopped = Signal()
     filed = Signal()
     faulted = Signal(str)
     noted = Signal(str)
@@ -92,10 +94,12 @@ class Desk(QObject):
         self._history.settle()
         self.changed.emit(False)
 
-    def abandon(self) -> None:
-        """Take back a drag or a run that was broken off."""
-        self._history.abandon()
-        self.changed.emit(False)
+    def break_off(self, good: Session, reason: str) -> None:
+        """End a drag or a run at the last session that could be drawn, and say why."""
+        self._history.transient(good, "")
+        self.stopped.emit()
+        self.settle()
+        self.faulted.emit(reason)
 
     def undo(self) -> None:
         """Go back one action."""

@@ -68,7 +68,8 @@ class Hand(QObject):
     def eventFilter(self, watched: QObject, event: QEvent) -> bool:
         """Take the events of pointer and keys, and leave all others."""
         act = self._does.get(event.type())
-        return act(event) if act is not None else False
+        # On an empty page there is nothing to point at.
+        return act(event) if act is not None and self._chart.current is not None else False
 
     # Moving
 
@@ -83,6 +84,8 @@ class Hand(QObject):
     def zoom(self, factor: float, at: QPointF | None = None) -> None:
         """Magnify about a pixel, or about the middle of the map; successive zooms are one entry of the history."""
         chart = self._chart
+        if chart.current is None:
+            return
         x, y = self._middle if at is None else (at.x(), at.y())
         self._pass(navigate.zoomed(self._desk.session, chart.sky.axes, chart.scene.frame, x, y, factor), "zoom")
         self._settle.start()

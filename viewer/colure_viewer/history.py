@@ -44,14 +44,6 @@ class History:
         if anchor is not None and anchor != self.current:
             self._remember(anchor, self._doing)
 
-    def abandon(self) -> bool:
-        """Go back to where a drag or a run began, leaving no entry; return whether anything changed."""
-        anchor, self._anchor = self._anchor, None
-        if anchor is None or anchor == self.current:
-            return False
-        self.current = anchor
-        return True
-
     def _remember(self, session: Session, what: str) -> None:
         self._before.append((session, what))
         del self._before[:-MOST]

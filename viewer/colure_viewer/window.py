@@ -119,9 +119,8 @@ class Window(QMainWindow):
         """Begin with the body nearest to the middle of the chart, so that the panels have something to show."""
         from colure import pointing
 
-        found = pointing.nearest_body(self.chart.sky, self.chart.scene)
-        if self.desk.selection is None and found is not None:
-            self.desk.select(found)
+        if self.desk.selection is None and self.chart.current is not None:
+            self.desk.select(pointing.nearest_body(self.chart.sky, self.chart.scene))
 
     def _check(self, name: str, on: bool) -> None:
         action = self.actions_by_name.get(name)
@@ -305,8 +304,7 @@ class Window(QMainWindow):
         """Write the chart to a file; the caution near the Sun is repeated in the file and here."""
         from colure_viewer import export
 
-        if not self.chart.whole:
-            self.say("The chart is not whole yet: its faint stars are still being read")
+        if not self._has_chart():
             return
         scene, theme = self.chart.scene, self.desk.theme
         try:
@@ -319,6 +317,16 @@ class Window(QMainWindow):
         done = f"Exported {path}" + (f". {caution}" if caution else "")
         self.jobs.run(f"Exporting {path.name}", work, lambda _: self.note(done), self.say)
 
+    def _has_chart(self) -> bool:
+        """Return whether there is a whole chart to write, and say so where there is not."""
+        if self.chart.current is None:
+            self.say("There is no chart: this view cannot be drawn")
+        elif not self.chart.whole:
+            self.say("The chart is not whole yet: its faint stars are still being read")
+        else:
+            return True
+        return False
+
     def print_chart(self) -> None:
         """Ask for a printer and print the chart on white."""
         from PySide6.QtPrintSupport import QPrintDialog, QPrinter
@@ -326,6 +334,8 @@ class Window(QMainWindow):
         from colure_viewer import export
         from colure_viewer.themes import PRINT
 
+        if not self._has_chart():
+            return
         printer = QPrinter(QPrinter.PrinterMode.HighResolution)
         dialog = QPrintDialog(printer, self)
         if dialog.exec() != QPrintDialog.DialogCode.Accepted:
@@ -339,6 +349,8 @@ class Window(QMainWindow):
         """Put the chart on the clipboard."""
         from colure_viewer import export
 
+        if not self._has_chart():
+            return
         export.copy(self.chart.scene, self.desk.theme)
         self.note("Copied the chart as a picture")
 
@@ -467,7 +479,7 @@ class Window(QMainWindow):
         """Select what a search found and bring it to the middle."""
         from colure import pointing
 
-        found = pointing.target(self.chart.sky, target)
+        found = pointing.target(self.chart.sky, target) if self.chart.current is not None else None
         if found is None or self.hand is None:
             self.say(f"{target.name} cannot be shown at this moment")
             return

@@ -75,6 +75,7 @@ class MomentBar(QWidget):
         self._timer.setInterval(FRAME_MS)
         self._timer.timeout.connect(self._tick)
         desk.changed.connect(self._show)
+        desk.stopped.connect(self._halt)
         self._show()
 
     def _button(self, text: str, name: str, act: object, checkable: bool = False) -> QToolButton:
@@ -151,13 +152,15 @@ class MomentBar(QWidget):
 
     def stop(self) -> None:
         """Let time stand; the whole run is one entry of the history."""
-        if not self._direction:
-            return
+        if self._direction:
+            self._halt()
+            self._desk.settle()
+
+    def _halt(self) -> None:
         self._timer.stop()
         self._direction = 0
         self.run_back.setChecked(False)
         self.run_forth.setChecked(False)
-        self._desk.settle()
 
     def _tick(self) -> None:
         seconds = min(self._clock.restart() / 1000.0, 0.25)
