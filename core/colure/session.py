@@ -11,7 +11,8 @@ from functools import cache
 from types import MappingProxyType
 from typing import Any
 
-from colure.errors import BodyError, FrameError, SessionError, near_names
+from colure import stepnames
+from colure.errors import BodyError, ColureError, FrameError, SessionError, near_names
 from colure.frames import Frame
 from colure.moment import Moment
 from colure.overlays.model import Overlay
@@ -215,7 +216,10 @@ class Layers:
 
 @dataclass(frozen=True, slots=True)
 class Session:
-    """Everything on screen. `extras` are the keys of a session file that this version does not know, kept as read."""
+    """Everything on screen. `extras` are the keys of a session file that this version does not know, kept as read.
+
+    `omitted` names the steps of a reduction that everything on the chart does without, in their order.
+    """
 
     moment: Moment
     site: Site
@@ -227,6 +231,7 @@ class Session:
     bodies: tuple[str, ...] = DEMO_BODIES
     layers: Layers = field(default_factory=Layers)
     overlays: tuple[Overlay, ...] = ()
+    omitted: tuple[str, ...] = ()
     extras: Mapping[str, Any] = field(default_factory=_no_extras, compare=False)
 
     def __post_init__(self) -> None:
@@ -239,6 +244,12 @@ class Session:
                 )
         if len(set(self.bodies)) != len(self.bodies):
             raise SessionError(f"bodies: {list(self.bodies)} names a body twice; expected each once")
+        if self.omitted:
+            try:
+                left_out = stepnames.checked(self.omitted)
+            except ColureError as fault:
+                raise SessionError(f"omitted: {fault}") from fault
+            object.__setattr__(self, "omitted", tuple(step for step in stepnames.STEPS if step in left_out))
 
     @classmethod
     def demo(cls) -> "Session":

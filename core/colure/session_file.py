@@ -52,6 +52,7 @@ _TOP_KEYS = (
     "belt",
     "bodies",
     "layers",
+    "omitted",
     "overlays",
 )
 
@@ -82,6 +83,8 @@ def dumps(session: Session) -> str:
     }
     if session.overlays:
         document["overlays"] = [{**overlay.extras, **_plain(overlay)} for overlay in session.overlays]
+    if session.omitted:
+        document["omitted"] = list(session.omitted)
     if session.layers.grid is None:
         document["layers"]["grid"] = ""
     _merge(document, session.extras)
@@ -190,6 +193,9 @@ class _Reader:
         if "bodies" in top:
             bodies = self._typed("bodies", top["bodies"], list, "a list of names")
             values["bodies"] = tuple(self._typed(f"bodies[{i}]", b, str, "text") for i, b in enumerate(bodies))
+        if "omitted" in top:
+            steps = self._typed("omitted", top["omitted"], list, "a list of steps")
+            values["omitted"] = tuple(self._typed(f"omitted[{i}]", s, str, "text") for i, s in enumerate(steps))
         session = self._made("session", lambda: Session(extras=MappingProxyType(self.extras), **values))
         return session, tuple(self.unknown)
 

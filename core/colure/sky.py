@@ -86,15 +86,22 @@ class FrameAxes:
 
     def spherical(self, vectors: Float) -> tuple[Float, Float]:
         """Return longitude (0…2π) and latitude (N,) of directions (N, 3) on ICRS axes."""
-        v = frames.from_icrs(vectors, self.frame, self.moment, self.site)
+        if self.matrix is not None:
+            v = vectors @ self.matrix
+        else:
+            v = frames.from_icrs(vectors, self.frame, self.moment, self.site)
         return np.arctan2(v[:, 1], v[:, 0]) % (2.0 * np.pi), np.arctan2(v[:, 2], np.hypot(v[:, 0], v[:, 1]))
 
 
-def frame_axes(name: str, moment: Moment, site: Site | None) -> FrameAxes:
-    """Return the axes of a frame given by its name."""
+def frame_axes(name: str, moment: Moment, site: Site | None, omitted: tuple[str, ...] = ()) -> FrameAxes:
+    """Return the axes of a frame given by its name, reached without the steps that are left out."""
     frame = sky_layers.frame_named(name)
     if not frame.is_rotation:
         return FrameAxes(frame, moment, site, None)
+    if omitted:
+        from colure.ledger import turns  # a start with every step in place does without the ledger
+
+        return FrameAxes(frame, moment, site, turns.reduced(frame, moment, site, omitted).T)
     return FrameAxes(frame, moment, site, frames.rotation(frame, moment, site).matrix.T)
 
 
@@ -105,17 +112,21 @@ def _frame_key(name: str, session: Session) -> object:
         name,
         session.moment if frame.needs_moment else None,
         session.site if frame.needs_site else None,
+        session.omitted,
     )
 
 
 def observer_of(session: Session) -> Observer:
     """Return where the session looks from: its site, or the centre of the Earth."""
-    return Observer("site", session.site) if session.from_site else Observer("earth")
+    left_out = frozenset(session.omitted)
+    if session.from_site:
+        return Observer("site", session.site, omitted=left_out)
+    return Observer("earth", omitted=left_out)
 
 
 def place_key(session: Session) -> object:
-    """Return what every direction depends on: moment, place and observer."""
-    return (session.moment, session.place, session.site if session.from_site else None)
+    """Return what every direction depends on: moment, place and observer, and the steps that are left out."""
+    return (session.moment, session.place, session.site if session.from_site else None, session.omitted)
 
 
 def compute(session: Session, previous: Sky | None = None) -> Sky:
@@ -133,7 +144,7 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         return layers[name].value
 
     def axes_of(name: str) -> FrameAxes:
-        return frame_axes(name, session.moment, session.site)
+        return frame_axes(name, session.moment, session.site, session.omitted)
 
     def body_names() -> tuple[str, ...]:
         centre = session.view.centre.body
@@ -195,7 +206,11 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
     )
     if session.layers.points:
         ecliptic = session.belt.frame
-        layer("points", (session.moment, ecliptic), lambda: sky_fixed.points(ecliptic, session.moment))
+        layer(
+            "points",
+            (session.moment, ecliptic, session.omitted),
+            lambda: sky_fixed.points(ecliptic, lambda name: axes_of(name).matrix),
+        )
     if session.overlays:
         from colure.overlays import skylayer  # a start without overlays loads no reader of files
 
@@ -209,7 +224,7 @@ def _circles(session: Session, shown: tuple[Any, ...], notes: list[str]) -> tupl
     out = []
     for circle in shown:
         try:
-            out.append((circle, frame_axes(circle.frame, session.moment, session.site)))
+            out.append((circle, frame_axes(circle.frame, session.moment, session.site, session.omitted)))
         except (FrameError, SpanError) as fault:
             notes.append(f"circle {circle.frame}: {fault}")
     return tuple(out)
@@ -226,10 +241,10 @@ def _axes(session: Session, bodies: BodiesSky) -> Axes:
             )
         middle = bodies.vectors[bodies.names.index(centre.body)]
     else:
-        middle = frame_axes(centre.frame, moment, site).columns(
+        middle = frame_axes(centre.frame, moment, site, session.omitted).columns(
             np.array([centre.lon_deg * DEG]), np.array([centre.lat_deg * DEG])
         )[:, 0]
-    up = frame_axes("horizon" if view.up == "zenith" else view.up, moment, site)
+    up = frame_axes("horizon" if view.up == "zenith" else view.up, moment, site, session.omitted)
     pole = up.columns(np.array([0.0]), np.array([np.pi / 2]))[:, 0]
     # Where the centre is the pole itself, its own longitude says which way is up: the limit of approaching along it.
     lon = centre.lon_deg * DEG if centre.body is None and abs(centre.lat_deg) == 90.0 else 0.0

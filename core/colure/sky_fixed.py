@@ -1,5 +1,6 @@
 """What does not move among the stars: constellations, Milky Way, deep sky, points and crossings of an ecliptic."""
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cache, lru_cache
 
@@ -143,13 +144,17 @@ def deep_sky() -> DeepSky:
     )
 
 
-def points(ecliptic: str, moment: Moment) -> NamesSky:
-    """Return the equinoxes, solstices and poles of an ecliptic on the mean equator of date."""
+def points(ecliptic: str, axes_of: Callable[[str], Float | None]) -> NamesSky:
+    """Return the equinoxes, solstices and poles of an ecliptic on the mean equator of date.
+
+    `axes_of` gives the matrix (3, 3) from a frame, as the chart draws it, to ICRS axes.
+    """
     plane = frame_named(ecliptic)
-    onto = frames.rotation(plane, moment).matrix if plane.is_rotation and plane.plane == "ecliptic" else None
-    if onto is None:
-        onto = frames.rotation("ecliptic/mean/date", moment).matrix
-    marks = belt.cardinal_points(onto, frames.rotation("equator/mean/date", moment).matrix)
+    onto = ecliptic if plane.is_rotation and plane.plane == "ecliptic" else "ecliptic/mean/date"
+    plane_axes, equator = axes_of(onto), axes_of("equator/mean/date")
+    assert plane_axes is not None  # both are rotations
+    assert equator is not None
+    marks = belt.cardinal_points(plane_axes.T, equator.T)
     rank = np.arange(len(marks.labels), dtype=np.float64)
     return NamesSky(np.ascontiguousarray(marks.points.T), marks.labels, rank, widths_em(marks.labels, "label.point"))
 

@@ -20,6 +20,7 @@ from colure.moment import Moment
 from colure.reduction import GEOCENTRE, Observer, observer_state, reduce_bodies, reduce_stars
 from colure.refraction import Atmosphere
 from colure.sites import DEMO, Site
+from colure.stepnames import TURN_STEPS
 
 MAS = 1e-3
 NIGHT = Moment.parse("2026-12-01 21:36")
@@ -344,7 +345,7 @@ def test_a_direction_read_at_a_place_comes_back_to_itself() -> None:
 @pytest.mark.parametrize("frame", ["equator/true/date", "ecliptic/true/date", "horizon"])
 def test_a_turn_left_out_is_the_size_of_the_step(frame: str) -> None:
     full = ledger.body("mars", NIGHT, observer=AT_SITE, place="apparent", frame=frame)
-    for step in turns.STEPS:
+    for step in TURN_STEPS:
         if step not in full.steps or step == "polar motion":
             continue
         short = ledger.body("mars", NIGHT, observer=AT_SITE, place="apparent", frame=frame, omitted={step})
@@ -439,8 +440,8 @@ def test_a_turn_alone_needs_no_ephemeris() -> None:
 
 
 def test_the_caution_near_the_sun_and_only_there() -> None:
-    # Mercury meets the Sun twice in its synodic period of 116 days, so once in 60 days or nearly; Uranus is at opposition
-    # in late November 2026.
+    # Mercury meets the Sun twice in its synodic period of 116 days, so once in 60 days or nearly; Uranus is at its
+    # opposition in late November 2026.
     near = min(
         (ledger.body("mercury", NIGHT.shifted(float(d))) for d in range(0, 60, 5)), key=lambda one: _from_sun(one)
     )

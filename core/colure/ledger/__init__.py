@@ -16,7 +16,7 @@ from colure.ephemeris import Ephemeris
 from colure.errors import FrameError, TargetError
 from colure.frames import Frame
 from colure.ledger import build, given
-from colure.ledger.build import STEPS, body, check_omitted
+from colure.ledger.build import body
 from colure.ledger.entries import Entry, Ledger
 from colure.ledger.given import Motion, upper
 from colure.ledger.printing import as_csv, as_json, as_text, full_records, records
@@ -24,6 +24,7 @@ from colure.ledger.turns import omission
 from colure.moment import Moment
 from colure.reduction import GEOCENTRE, Observer, unapply
 from colure.reduction.bodypath import check_place
+from colure.stepnames import STEPS
 from colure.targets import Target
 
 __all__ = [
@@ -35,7 +36,6 @@ __all__ = [
     "as_json",
     "as_text",
     "body",
-    "check_omitted",
     "direction",
     "full_records",
     "of",

@@ -16,7 +16,7 @@ from colure import frames
 from colure.arrays import Float, unit
 from colure.bodies import defaults
 from colure.ephemeris import Ephemeris, default
-from colure.errors import ColureError, near_names
+from colure.errors import ColureError
 from colure.frames import Frame
 from colure.ledger import covariance, doubt, turns
 from colure.ledger.doubt import Doubt
@@ -34,9 +34,8 @@ from colure.reduction import (
     reduce_bodies,
 )
 from colure.reduction.bodypath import TraceEntry, check_place
+from colure.stepnames import checked
 
-STEPS = (*STAR_STEPS, *turns.STEPS)
-"""Every step that can be left out, by name."""
 _ON_THE_WAY = {
     "geometric": STAR_STEPS[:3],
     "astrometric": STAR_STEPS[:4],
@@ -47,21 +46,13 @@ _DIURNAL = ("diurnal parallax", "diurnal aberration")
 _ICRS = Frame("icrs")
 
 
-def check_omitted(omitted: Collection[str]) -> frozenset[str]:
-    """Return the steps to leave out as a set; raise ColureError for a name that is none."""
-    for name in omitted:
-        if name not in STEPS:
-            raise ColureError(f"step '{name}': cannot be left out{near_names(name, STEPS)}; known: {', '.join(STEPS)}")
-    return frozenset(omitted)
-
-
 def _prepared(
     moment: Moment, observer: Observer, place: str | None, frame: Frame | str, omitted: Collection[str]
 ) -> tuple[Observer, str, Frame, frozenset[str]]:
     """Check what was asked and fill in the place; polar motion left out is left out of the observer as well."""
     if moment.shape != ():
         raise ColureError(f"ledger: {moment.size} moments were given; a ledger is of one")
-    left_out = check_omitted(omitted) | observer.omitted
+    left_out = checked(omitted) | observer.omitted
     frame = frames.parsed(frame)
     if place is None:
         place, _ = defaults(frame, observer.site, None, observer.origin)
@@ -86,7 +77,7 @@ def body(
 ) -> Ledger:
     """Return the ledger of a body of the ephemeris at one moment.
 
-    `place` is by default that which the frame implies; `omitted` names steps (of STEPS) to leave out.
+    `place` is by default that which the frame implies; `omitted` names steps (of `colure.stepnames`) to leave out.
     """
     observer, place, frame, left_out = _prepared(moment, observer, place, frame, omitted)
     source = ephemeris if ephemeris is not None else default()

@@ -18,17 +18,19 @@ from colure.moment import Moment
 from colure.nutation import series_of
 from colure.precession import Instant
 from colure.sites import Site
+from colure.stepnames import (
+    BIAS,
+    E_TERMS,
+    EARTH_ROTATION,
+    ECLIPTIC,
+    EQUATOR,
+    FK4_PRECESSION,
+    NUTATION,
+    POLAR_MOTION,
+    TURN_STEPS,
+)
 
 J2000 = (precession.J2000, 0.0)
-BIAS, EQUATOR, ECLIPTIC, NUTATION = (
-    "frame bias",
-    "precession of the equator",
-    "precession of the ecliptic",
-    "nutation",
-)
-EARTH_ROTATION, POLAR_MOTION, E_TERMS, FK4_PRECESSION = "Earth rotation", "polar motion", "E-terms", "precession"
-STEPS = (BIAS, EQUATOR, ECLIPTIC, FK4_PRECESSION, NUTATION, E_TERMS, EARTH_ROTATION, POLAR_MOTION)
-"""The turns that can be left out; a change of plane or of origin cannot."""
 NAMES = {
     "iau2006": "IAU 2006",
     "vondrak2011": "Vondrák, Capitaine & Wallace 2011",
@@ -236,7 +238,7 @@ def reduced(
     """
     frame = frames.parsed(frame)
     polar_motion = polar_motion and POLAR_MOTION not in omitted
-    if not set(omitted) & set(STEPS):
+    if not set(omitted) & set(TURN_STEPS):
         return final_matrix(frame, moment, site, polar_motion=polar_motion)
     short = np.eye(3)
     for turn in chain(frame, moment, site, polar_motion=polar_motion):
@@ -260,7 +262,7 @@ def omission(
     given. None where nothing that is left out is on the way, or the frame is no rotation.
     """
     frame = frames.parsed(frame)
-    if not frame.is_rotation or not set(omitted) & set(STEPS):
+    if not frame.is_rotation or not set(omitted) & set(TURN_STEPS):
         return None
     if not any(turn.name in omitted for turn in chain(frame, moment, site, polar_motion=polar_motion)):
         return None

@@ -84,6 +84,7 @@ def key(session: Session, store: Store = STORE) -> object:
         session.moment if dated else None,
         session.site if sited else None,
         session.from_site,
+        session.omitted,
         store.generation,
     )
 

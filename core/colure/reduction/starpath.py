@@ -19,6 +19,7 @@ from colure.reduction.bodypath import GEOCENTRE, check_place
 from colure.reduction.observer import C_AU_DAY, Observer, ObserverState, eye, observer_state
 from colure.reduction.optics import DEFLECTION_LIMIT, FAR_AU, SCHWARZSCHILD_AU, refracted
 from colure.reduction.steps import PARTED, check_omitted
+from colure.stepnames import SKY_STEPS
 
 J2000 = 2451545.0
 YEAR = 365.25
@@ -27,16 +28,7 @@ KM_S_AU_YR = 86400.0 * YEAR / 149597870.700
 BLOCK = 16384
 """Stars worked on at a time: every array of the arithmetic then stays in the cache."""
 
-STAR_STEPS = (
-    "space motion",
-    "annual parallax",
-    "diurnal parallax",
-    "light time",
-    "deflection",
-    "annual aberration",
-    "diurnal aberration",
-    "refraction",
-)
+STAR_STEPS = SKY_STEPS
 """What happens to the direction of a star, in order: the names that `omit` may hold."""
 
 Stars = NDArray[np.floating]

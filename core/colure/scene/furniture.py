@@ -92,6 +92,7 @@ def title(ctx: Context) -> Layer:
     moment = str(session.moment.text())
     where = f"{session.site.name} · {session.site.coordinates()}" if session.site.name else session.site.coordinates()
     seen_from = f"from {session.site.name or 'the site'}" if session.from_site else "from the Earth’s centre"
+    without = f", without {', '.join(session.omitted)}" if session.omitted else ""
     hand = "east left" if view.east_left else "east right, a map"
     across = f"{angle_across(view.width_deg)} across"
     lines_of_text = [
@@ -103,7 +104,7 @@ def title(ctx: Context) -> Layer:
         lines_of_text += [
             ("left", 1, where),
             ("right", 1, hand),
-            ("left", -2, f"{session.place} places, {seen_from}"),
+            ("left", -2, f"{session.place} places, {seen_from}{without}"),
         ]
     marks: list[Mark] = []
     texts: list[str] = []
@@ -127,7 +128,8 @@ def title_key(ctx: Context) -> object:
     """Return what the title block depends on."""
     session = ctx.sky.session
     stars = "stars" in ctx.sky.layers
-    return (session.moment, session.site, session.place, session.from_site, ctx.view, ctx.limit, ctx.page, stars)
+    what = (session.place, session.from_site, session.omitted)
+    return (session.moment, session.site, what, ctx.view, ctx.limit, ctx.page, stars)
 
 
 @lru_cache(maxsize=256)

@@ -7,8 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from colure import frames
-from colure.arrays import DEG, Float, spherical
+from colure.arrays import DEG, Float
 from colure.marks import Scene
 from colure.scene.context import projector_of
 from colure.session import NARROWEST, WIDEST, Centre, Session, View
@@ -45,8 +44,8 @@ def zoomed(session: Session, scene: Scene, factor: float, about: tuple[float, fl
 def centred(session: Session, direction: Float) -> View:
     """Return the view centred on a direction (3,) on ICRS axes, in the frame of its present centre."""
     frame = session.view.centre.frame
-    local = frames.from_icrs(np.asarray(direction)[None, :], frame, session.moment, session.site)
-    lon, lat = spherical(local)
+    axes = frame_axes(frame, session.moment, session.site, session.omitted)
+    lon, lat = axes.spherical(np.asarray(direction)[None, :])
     at = Centre(frame, float(lon[0]) / DEG, float(np.clip(lat[0] / DEG, -90.0, 90.0)))
     return replace(session.view, centre=at)
 
@@ -58,8 +57,8 @@ def _with_under(session: Session, scene: Scene, view: View, direction: Float, pi
     up, one turn does not do it quite, and is repeated.
     """
     frame = view.centre.frame
-    axes = frame_axes(frame, session.moment, session.site)
-    up = frame_axes("horizon" if view.up == "zenith" else view.up, session.moment, session.site)
+    axes = frame_axes(frame, session.moment, session.site, session.omitted)
+    up = frame_axes("horizon" if view.up == "zenith" else view.up, session.moment, session.site, session.omitted)
     pole = up.columns(np.zeros(1), np.pi / 2)[:, 0]
     spare = up.columns(np.zeros(1), 0.0)[:, 0]
     middle = np.asarray(scene.projector.centre, dtype=np.float64)
