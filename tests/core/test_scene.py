@@ -485,3 +485,14 @@ def test_a_pixel_of_the_narrowest_field_is_resolved():
     assert near["stars"].directions.dtype == np.float64
     np.testing.assert_allclose(star(page, "Aldebaran"), page.projector.project(exact), atol=0.01)
     assert page.projector.scale * ARCSEC > 10.0
+
+
+def test_a_small_page_shows_fewer_stars_unless_the_limit_is_set():
+    small, large = chart(size=(420, 320)), chart()
+    density = [
+        page.layer("stars").total / ((page.frame[2] - page.frame[0]) * (page.frame[3] - page.frame[1]))
+        for page in (small, large)
+    ]
+    # Half as dense again at most, where the same limit would be several times as dense.
+    assert density[0] < 1.5 * density[1]
+    assert chart(size=(420, 320), limit_mag=7.2).layer("stars").total > small.layer("stars").total

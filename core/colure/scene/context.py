@@ -19,6 +19,8 @@ PAGE_MARGIN = 10.0
 """Pixels outside the map within which marks are kept: more than the radius of the largest star."""
 
 
+FULL_PAGE = 450_000.0
+"""Square pixels of a map from which on the limit depends on the width alone."""
 COARSE = 3.0e4
 """Pixels per radian above which lines are laid out in float64: a float32 direction is good to 1e-7."""
 
@@ -98,7 +100,20 @@ def context(sky: Sky, size: tuple[int, int], previous: dict[str, tuple[Layer, An
     p = projector_of(view, page.frame, sky.axes.centre, sky.axes.pole, sky.axes.spare)
     page_key = (view.projection, size, p.plane.tobytes(), p.shift.tobytes())
     view_key = (page_key, p.camera.tobytes())
-    return Context(sky, view, page, p, Window.of(p, page.frame), view_key, page_key, limit_of(view), previous)
+    limit = page_limit(view, page.frame)
+    return Context(sky, view, page, p, Window.of(p, page.frame), view_key, page_key, limit, previous)
+
+
+def page_limit(view: View, frame: tuple[float, float, float, float]) -> float:
+    """Return the magnitude limit on a map: that of the view, brighter on a small map where it follows the width.
+
+    Star counts grow by 10^0.45 a magnitude, so this keeps the stars on a square inch about the same.
+    """
+    limit = limit_of(view)
+    if view.limit_mag is not None:
+        return limit
+    area = (frame[2] - frame[0]) * (frame[3] - frame[1])
+    return round(limit + min(float(np.log10(max(area, 1.0) / FULL_PAGE)) / 0.45, 0.0), 1)
 
 
 def in_page(ctx: Context, x: Any, y: Any, margin: Any = PAGE_MARGIN) -> Any:
