@@ -215,7 +215,7 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         from colure.overlays import skylayer  # a start without overlays loads no reader of files
 
         overlays = layer("overlays", skylayer.key(session), lambda: skylayer.compute(session, observer))
-        notes += skylayer.faults(overlays)
+        notes += skylayer.remarks(overlays)
     return Sky(session, observer, axes, MappingProxyType(layers), tuple(notes))
 
 

@@ -133,6 +133,8 @@ def test_arrows_lead_from_the_row_to_its_star_and_are_enlarged(tmp_path: Path) -
     assert ends.max() < 0.05
     lengths = np.hypot(strokes[:, 2] - strokes[:, 0], strokes[:, 3] - strokes[:, 1])
     _, twice = _scene(_session(replace(overlay, enlarge=2.0)))
+    assert any("2 times as long" in note for note in twice.notes)
+    assert any("not matched" in note for note in bare.notes)
     longer = next(m for m in twice.layer("overlays").marks if isinstance(m, marks.Segments)).xy
     longer = longer[: len(longer) // 3]
     doubled = np.hypot(longer[:, 2] - longer[:, 0], longer[:, 3] - longer[:, 1])

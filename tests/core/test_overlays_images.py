@@ -323,6 +323,15 @@ def test_headers_without_end_are_bounded(tmp_path: Path) -> None:
         read_headers(packed)
 
 
+@pytest.mark.parametrize(("key", "value"), [("A_ORDER", 30000), ("WCSAXES", 100000), ("BP_ORDER", -1)])
+def test_sizes_of_tables_in_a_header_are_bounded(tmp_path: Path, key: str, value: int) -> None:
+    path = tmp_path / "image.hdr"
+    header = _header(("RA---TAN-SIP", "DEC--TAN-SIP"), RADESYS="ICRS", **{key: value})
+    path.write_text(header.tostring(sep="\n"), encoding="ascii")
+    with pytest.raises(OverlayError, match=f"{key} is {value}; expected 0 to"):
+        opening.open_file(path, store=Store())
+
+
 def test_a_damaged_packed_file_is_one_line(tmp_path: Path) -> None:
     data = (DATA / "wcs/tests/data/dss.14.29.56-62.41.05.fits.gz").read_bytes()
     path = tmp_path / "cut.fits.gz"

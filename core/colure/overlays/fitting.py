@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from colure.arrays import ARCSEC, DEG, Bool, Float, separation, spherical, unit
+from colure.arrays import ARCSEC, DEG, Bool, Float, separation, unit
 
 ROUNDS = 12
 CUT = 4.685
@@ -57,10 +57,16 @@ def turned(vectors: Float, rotation: Float) -> Float:
 
 def compass(vectors: Float) -> tuple[Float, Float]:
     """Return the unit tangents east and north (N, 3) at directions (N, 3)."""
-    lon, lat = spherical(vectors)
-    zero = np.zeros_like(lon)
-    east = np.stack([-np.sin(lon), np.cos(lon), zero], axis=-1)
-    north = np.stack([-np.sin(lat) * np.cos(lon), -np.sin(lat) * np.sin(lon), np.cos(lat)], axis=-1)
+    x, y, z = vectors[:, 0], vectors[:, 1], vectors[:, 2]
+    flat = np.hypot(x, y)
+    # At the pole itself any longitude does; that of +x is taken.
+    away = flat > 0.0
+    safe = np.where(away, flat, 1.0)
+    c, s = np.where(away, x / safe, 1.0), np.where(away, y / safe, 0.0)
+    length = np.hypot(flat, z)
+    sine, cosine = z / length, flat / length
+    east = np.stack([-s, c, np.zeros_like(c)], axis=-1)
+    north = np.stack([-sine * c, -sine * s, cosine], axis=-1)
     return east, north
 
 
@@ -110,7 +116,8 @@ def fit(given: Float, true: Float) -> Fit | None:
             scale *= 1.0 + step[3]
         moved = _moved(given, rotation, scale, centre, has_scale)
         rest = offsets(moved, true)
-        if turn > 2 and np.abs(step).max() < 1e-13:
+        # Further turns would move the answer by far less than its error.
+        if turn > 2 and np.abs(step).max() < 1e-5 * sigma / np.sqrt(len(given)) + 1e-15:
             break
     used = weight > 0.0
     mean = float(np.sum(weight * (rest**2).sum(axis=1)) / max(float(weight.sum()), 1e-300))

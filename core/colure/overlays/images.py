@@ -1,5 +1,7 @@
 """The outline of a FITS image on the sky: corners, edges, north and east, parity and a grid of its pixels."""
 
+import gzip
+import io
 import warnings
 from collections.abc import Mapping
 from dataclasses import dataclass
@@ -11,7 +13,7 @@ import numpy as np
 from colure.arrays import DEG, Float, cartesian
 from colure.arrays import unit as normed
 from colure.overlays.fitsrules import PAIRS, Ruling, decide
-from colure.overlays.headers import Headers, HeaderText, read_headers
+from colure.overlays.headers import MOST_UNPACKED, Headers, HeaderText, read_headers
 from colure.overlays.model import OverlayError
 from colure.wording import one_line
 
@@ -21,6 +23,8 @@ GRID_LINES = 3
 """Lines inside the image in each direction."""
 MOST_PIXELS = 1e9
 """The largest size of an axis that is taken for one."""
+_BOUNDS = {"WCSAXES": 20, **{f"{letters}_ORDER": 9 for letters in ("A", "B", "AP", "BP")}}
+"""Sizes that a projection library takes from the header to set up its tables: more than any real image has."""
 _INHERITED = ("RADESYS", "RADECSYS", "EQUINOX", "EPOCH", "MJD-OBS", "DATE-OBS", "MJD-AVG", "DATE-AVG")
 
 
@@ -159,15 +163,31 @@ def _wcs(path: Path | str, found: ImageHeader) -> tuple[Any, tuple[str, ...]]:
     from astropy.wcs import WCS
 
     cards = found.unit.cards
+    for key, most in _BOUNDS.items():
+        value = cards.get(key, 0)
+        if not (isinstance(value, int | float) and 0 <= value <= most):
+            raise OverlayError(f"image '{path}': {key} is {one_line(str(value), 20)}; expected 0 to {most}")
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # what is odd about the frame is said in our own words
         header = fits.Header.fromstring("".join(c if " " <= c <= "~" else " " for c in found.unit.text))
         tabled = any(key.startswith(("CPDIS", "CQDIS", "D2IMDIS", "DP1", "D2IMEXT")) for key in cards)
         tabled |= any("-TAB" in str(value) for key, value in cards.items() if key.startswith("CTYPE"))
         if tabled:
-            with fits.open(path, memmap=True, lazy_load_hdus=True, ignore_missing_simple=True) as units:
+            with fits.open(_whole_file(path), lazy_load_hdus=True, ignore_missing_simple=True) as units:
                 return WCS(header, units).celestial, ("distortion tables of the file are applied",)
         return WCS(header).celestial, ()
+
+
+def _whole_file(path: Path | str) -> Path | io.BytesIO:
+    """Return a file to be opened whole: as it is, or unpacked up to the bound."""
+    with Path(path).open("rb") as file:
+        if file.read(2) != b"\x1f\x8b":
+            return Path(path)
+    with gzip.open(path, "rb") as unpacked:
+        data = unpacked.read(MOST_UNPACKED + 1)
+    if len(data) > MOST_UNPACKED:
+        raise OverlayError(f"image '{path}': more than {MOST_UNPACKED:,} bytes when unpacked, with distortion tables")
+    return io.BytesIO(data)
 
 
 def _places(wcs: Any, x: Float, y: Float) -> Float:

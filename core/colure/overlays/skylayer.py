@@ -104,9 +104,19 @@ def compute(session: Session, observer: Observer, store: Store = STORE) -> tuple
     return tuple(out)
 
 
-def faults(found: tuple[OverlaySky, ...]) -> list[str]:
-    """Return a line for each overlay of which nothing can be drawn."""
-    return [f"overlay {one.overlay.title}: {one.fault}" for one in found if one.fault]
+def remarks(found: tuple[OverlaySky, ...]) -> list[str]:
+    """Return what must be said beside the chart: what cannot be drawn and why, and how far arrows are enlarged."""
+    lines = []
+    for one in found:
+        title = f"overlay {one.overlay.title}"
+        if one.fault:
+            lines.append(f"{title}: {one.fault}")
+        elif one.foot.shape[1]:
+            scale = f"{one.overlay.enlarge:g} times as long" if one.overlay.enlarge != 1.0 else "in true length"
+            lines.append(f"{title}: arrows to the catalogue's places, {scale}")
+        elif one.overlay.arrows and one.columns.shape[1]:
+            lines.append(f"{title}: no arrows; not matched to the catalogue yet, or without a match")
+    return lines
 
 
 def _turn(session: Session, observer: Observer) -> Turn:
