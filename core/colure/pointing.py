@@ -6,19 +6,19 @@ import numpy as np
 
 from colure import angles, bodies, constellations, deepsky, everyframe, names
 from colure.arrays import ARCSEC, DEG, Float, cartesian, position_angle, separation
-from colure.errors import ColureError
+from colure.errors import ColureError, SpanError
 from colure.frames import Frame, from_icrs, to_icrs
 from colure.marks import Scene
+from colure.reduction import apply_context, star_context
 from colure.sky import Sky
-from colure.sky_layers import StarsSky
-from colure.stars import catalogue
+from colure.stars import EPOCH_JD, catalogue
 from colure.targets import Target
 
 BODIES, STARS, DEEP_SKY, DIRECTION = "bodies", "stars", "deep sky", "direction"
 """Kinds of what is pointed at; the first three are names of layers."""
 
 STAR_SIGMA = 0.05
-"""Arcseconds that a chart's star may be off: its motion over decades, in single precision on wide charts."""
+"""Arcseconds that the place of a catalogue star may be off, decades from its epoch."""
 DEEP_SKY_SIGMA = 1.0
 
 
@@ -176,14 +176,17 @@ def deep_sky_object(row: int) -> Pointed:
 
 
 def _star_direction(sky: Sky, row: int) -> Float:
-    """Return a star's direction (3,): the chart's own where it is drawn, else its catalogue position moved to date."""
-    if "stars" in sky.layers:
-        stars: StarsSky = sky["stars"]
-        found = np.flatnonzero(stars.base.ids == row)
-        if len(found):
-            return np.asarray(stars.directions[:, found[0]], dtype=np.float64)
-    year = float(sky.session.moment.julian_year)
-    return np.asarray(catalogue().rows([row]).directions(year)[0])
+    """Return a star's direction (3,) at the chart's moment and place, reduced alone and in full precision."""
+    session = sky.session
+    star_rows = catalogue().rows([row])
+    state = star_rows.state(np.float64)
+    try:
+        context = star_context(session.moment, observer=sky.observer, place=session.place, epoch_jd=EPOCH_JD)
+    except SpanError:
+        # Beyond the ephemeris the chart's stars are moved, and no more.
+        return np.asarray(star_rows.directions(float(session.moment.julian_year))[0])
+    parallax = star_rows.parallax_mas * (1e-3 * ARCSEC)
+    return np.asarray(apply_context(context, state[:3].T, state[3:].T, parallax)[0])
 
 
 def readout(sky: Sky, scene: Scene, x: float, y: float) -> str:
@@ -231,7 +234,8 @@ class Measured:
         smallest, places = angles.dms_places(self.sigma_arcsec)
         apart = angles.format_dms(self.separation_deg, places, smallest=smallest, plus=False)
         decimals = angles.decimals_for(self.sigma_arcsec * ARCSEC / DEG / max(np.sin(self.separation_deg * DEG), 1e-6))
-        turned = angles.format_degrees(self.pa_deg, min(max(decimals, 0), 3))
+        places = min(max(decimals, 0), 3)
+        turned = angles.format_degrees(round(self.pa_deg, places) % 360.0, places)
         return f"{apart}, position angle {turned}"
 
 
@@ -240,7 +244,9 @@ def measure(sky: Sky, a: Pointed, b: Pointed) -> Measured:
     session = sky.session
     name = "icrs" if session.view.up == "zenith" else session.view.up
     first, second = (from_icrs(v.vector, Frame.parse(name), session.moment, session.site) for v in (a, b))
-    angle = float(position_angle(first, second)) / DEG
+    # A tiny angle west of north comes as a full turn.
+    angle = float(position_angle(first, second)) / DEG % 360.0
+    angle = 0.0 if angle > 360.0 - 1e-9 else angle
     sigma = float(np.hypot(a.sigma_arcsec, b.sigma_arcsec))
     return Measured(float(separation(a.vector, b.vector)) / DEG, angle, name, sigma)
 
