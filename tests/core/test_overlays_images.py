@@ -332,6 +332,22 @@ def test_sizes_of_tables_in_a_header_are_bounded(tmp_path: Path, key: str, value
         opening.open_file(path, store=Store())
 
 
+def test_all_chips_of_a_camera_can_be_opened() -> None:
+    path = DATA / "io/fits/tests/data/test0.fits"
+    places = images.places(path)
+    assert places == (2, 3, 4)  # what data of this file are known to have
+    centres = []
+    for place in places:
+        store = Store()
+        overlay = opening.declare(opening.inspect(path, "image", place), store=store)
+        shape = store.shape(overlay)
+        assert shape is not None
+        centres.append(shape.centre)
+    assert separation(centres[0], centres[1]) > 1000 * MAS
+    with pytest.raises(OverlayError, match="has no header 9"):
+        opening.inspect(path, "image", 9)
+
+
 def test_a_damaged_packed_file_is_one_line(tmp_path: Path) -> None:
     data = (DATA / "wcs/tests/data/dss.14.29.56-62.41.05.fits.gz").read_bytes()
     path = tmp_path / "cut.fits.gz"

@@ -115,6 +115,12 @@ def find(path: Path | str, hdu: int | None = None) -> ImageHeader:
     raise _no_sky(headers, where)
 
 
+def places(path: Path | str) -> tuple[int, ...]:
+    """Return the places in a file of all headers that have a sky and a size: the chips of a camera, for example."""
+    units = read_headers(path).units
+    return tuple(unit.place for unit in units if axes_of(unit.cards) and not unit.is_table and _size(unit.cards))
+
+
 def _inherited(unit: HeaderText, headers: Headers) -> tuple[Mapping[str, Any], list[str]]:
     """Return the cards of a header with what only the primary header says of the frame, and a note about it."""
     if unit.place == 0:

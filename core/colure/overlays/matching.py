@@ -207,6 +207,8 @@ def _matched(
 
 def _amount(arcsec: float) -> str:
     """Return an angle in the unit that suits it, with as many digits as a scatter has."""
+    if arcsec < 0.001:
+        return "less than 0.001″"
     if arcsec < 60.0:
         return f"{arcsec:.2g}″"
     return f"{arcsec / 60.0:.3g}′" if arcsec < 6000.0 else f"{arcsec / 3600.0:.3g}°"

@@ -19,6 +19,8 @@ from colure.reduction import Observer, apply_context, star_context
 from colure.session import Session
 from colure.stars import EPOCH_JD
 
+TITLE_PART = 0.6
+"""Distance of the title from the centre, as a part of the arrows' length."""
 MOST_NAMES = 5_000
 """Rows of an overlay that may have a text; more would not find room."""
 ARROW_PART = 0.3
@@ -194,8 +196,9 @@ def _image(overlay: Overlay, place: int, moment: Moment, site: Any, turn: Turn, 
     reach = ARROW_PART * min(sides) if sides else 0.0
     ends = [unit(shape.centre * np.cos(reach) + away * np.sin(reach)) for away in (shape.north, shape.east)]
     arrows = _lines([np.stack([shape.centre, end]) for end in ends], on_sky) if reach else None
-    texts = [overlay.title]
-    spots = [shape.centre]
+    texts = [f"{overlay.title} (mirrored)" if shape.mirrored else overlay.title]
+    # South of the centre, where no arrow is.
+    spots = [unit(shape.centre - shape.north * np.tan(TITLE_PART * reach))]
     if reach:
         far = reach * 1.25
         spots += [unit(shape.centre * np.cos(far) + away * np.sin(far)) for away in (shape.north, shape.east)]
