@@ -36,7 +36,7 @@ def session(limit: float) -> Session:
         view=View("azimuthal-equal-area", Centre("ecliptic/mean/date", 75.0, 6.0), width_deg=360.0, limit_mag=limit),
         circles=tuple(Circle(frame, graduated=True) for frame in EIGHT),
         belt=Belt(visible=True, divisions=True, crossings=True),
-        layers=Layers(edges=True, deep_sky=False, milky_way=False, grid=None),
+        layers=Layers(edges=True, deep_sky=False, milky_way=False, grid=None, constellation_names=False),
     )
 
 
