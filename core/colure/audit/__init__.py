@@ -9,16 +9,18 @@ from colure.audit.answer import STATUSES, Audit, ask, audit, audit_each, audit_j
 from colure.audit.fits import Fit, fits
 from colure.audit.hypotheses import Hypothesis, Predictions, plan, predict
 from colure.audit.mending import Mending, mend
-from colure.audit.numbers import Numbers, read
+from colure.audit.numbers import Numbers, last_digit, read
 from colure.audit.orientation import Turn, TurnPredictions, View, offsets, position_angles
 from colure.audit.reference import Question, Stars
 from colure.audit.search import Found, audit_unknown
-from colure.audit.tablefit import Model, TableFit, fit_identified, fit_unidentified
+from colure.audit.tablefile import date_table, half_digit_deg, moments, star_rows
+from colure.audit.tablefit import SURE_COST, Model, TableFit, fit_identified, fit_unidentified
 from colure.audit.verdict import BEYOND, WITHIN, Candidate, Judged, Separation, joint, judge, ranked
 
 __all__ = [
     "BEYOND",
     "STATUSES",
+    "SURE_COST",
     "WITHIN",
     "Audit",
     "Candidate",
@@ -42,16 +44,21 @@ __all__ = [
     "audit_each",
     "audit_joint",
     "audit_unknown",
+    "date_table",
     "fit_identified",
     "fit_unidentified",
     "fits",
+    "half_digit_deg",
     "joint",
     "judge",
+    "last_digit",
     "mend",
+    "moments",
     "offsets",
     "plan",
     "position_angles",
     "predict",
     "ranked",
     "read",
+    "star_rows",
 ]

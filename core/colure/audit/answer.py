@@ -4,6 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from colure.audit.axes import AXES
 from colure.audit.fits import Fit, fits
 from colure.audit.hypotheses import Predictions, predict
 from colure.audit.mending import Mending, mend
@@ -27,6 +28,7 @@ from colure.moment import Moment
 from colure.sites import Site
 
 STATUSES = ("certain", "likely", "class", "fitted", "none")
+ORDER = {axes.key: rank + (1000 if axes.kind == "slip" else 0) for rank, axes in enumerate(AXES)}
 CHANCE = 0.01
 """Chance of a meeting by accident above which nothing found in the catalogue is called certain."""
 
@@ -60,7 +62,7 @@ class Audit:
     @property
     def simplest(self) -> Candidate:
         """The member of the class with the fewest mistakes, the nearest among equals; the nearest where none fits."""
-        return min(self.members, key=lambda one: (one.hypothesis.steps, one.n_sigma)) if self.members else self.best
+        return min(self.members, key=_plainness) if self.members else self.best
 
     @property
     def verdict(self) -> str:
@@ -84,6 +86,12 @@ class Audit:
         return f"none of these: the nearest is {words} at {self.best.n_sigma:.3g} σ ({self.best.residual_arcsec:.3g}″)"
 
 
+def _plainness(one: Candidate) -> tuple[int, int, float]:
+    """Order by the number of mistakes, then by how common the axes are (the order of AXES), then by distance."""
+    key = one.hypothesis.axes.key
+    return one.hypothesis.steps, ORDER.get(key, -1), one.n_sigma
+
+
 def ask(numbers: Numbers, question: Question, *, chance: float = 0.0, deep: bool = True) -> Audit:
     """Return the audit of numbers (n,) that all have the same explanation.
 
@@ -98,7 +106,7 @@ def ask(numbers: Numbers, question: Question, *, chance: float = 0.0, deep: bool
     status = _status(order, members, fitted)
     if status == "certain" and chance > CHANCE:
         status = "class"
-    first = min(members, key=lambda one: (one.hypothesis.steps, one.n_sigma)) if members else None
+    first = min(members, key=_plainness) if members else None
     sorted_members = tuple(sorted(members, key=lambda one: (one is not first, one.n_sigma)))
     return Audit(
         numbers,

@@ -53,32 +53,37 @@ def fits(numbers: Numbers, question: Question) -> tuple[Fit, ...]:
     return tuple(sorted((fit for fit in found if fit.n_sigma <= WITHIN), key=lambda fit: fit.n_sigma))
 
 
-def _distance(numbers: Numbers, lon: Float, lat: Float) -> Float:
+def _scaled(numbers: Numbers, lon: Float, lat: Float) -> tuple[Float, Float]:
+    """Return the residuals (k,) of longitude and latitude in σ."""
     floor = MODEL_ARCSEC * ARCSEC
-    x, y = numbers.x[0] * DEG, numbers.y[0] * DEG
-    off = (x - lon + np.pi) % TWO_PI - np.pi
+    off = (numbers.x[0] * DEG - lon + np.pi) % TWO_PI - np.pi
     s_lon = np.hypot(numbers.half_x[0] * DEG, floor / np.maximum(np.cos(lat), 1e-9))
     s_lat = np.hypot(numbers.half_y[0] * DEG, floor)
-    return np.asarray(np.sqrt((off / s_lon) ** 2 + ((y - lat) / s_lat) ** 2))
+    return np.asarray(off / s_lon), np.asarray((numbers.y[0] * DEG - lat) / s_lat)
 
 
 def _minimum(
-    numbers: Numbers, predict: Predict, grid: Float, first: tuple[Float, Float] | None = None, nearest: bool = False
-) -> tuple[float, float, float]:
-    """Return the best value of the unknown, its σ, and the distance left: a grid, narrowed around its best points.
+    numbers: Numbers, predict: Predict, grid: Float, first: tuple[Float, Float] | None = None
+) -> tuple[float, float, float] | None:
+    """Return the value of the unknown that fits, its σ, and the distance left; None where none comes near.
 
-    With `nearest`, among several values that fit, the one closest to zero: the Sun is back after a year.
+    The best points of a grid are narrowed where the way to their neighbours leads past the numbers. Among several
+    values that fit, the one closest to `grid`'s middle is taken: the Sun is back after a year.
     """
-    distance = _distance(numbers, *(first if first is not None else predict(grid)))
-    low = np.flatnonzero((distance[1:-1] <= distance[:-2]) & (distance[1:-1] <= distance[2:])) + 1
-    low = (
-        np.array([np.argmin(distance)])
-        if not len(low)
-        else low[np.argsort(distance[low])][: MOST_MINIMA if nearest else 1]
-    )
-    found = [_narrowed(numbers, predict, float(grid[at]), float(grid[1] - grid[0])) for at in low]
+    lon, lat = first if first is not None else predict(grid)
+    off = _scaled(numbers, lon, lat)
+    distance = np.hypot(*off)
+    stride = np.hypot(*(np.diff(part) for part in off))
+    reach = WITHIN + np.maximum(np.append(stride, stride[-1]), np.insert(stride, 0, stride[0]))
+    low = np.ones(len(grid), dtype=np.bool_)
+    low[1:] &= distance[1:] <= distance[:-1]
+    low[:-1] &= distance[:-1] <= distance[1:]
+    near = np.flatnonzero(low & (distance <= reach))
+    near = near[np.argsort(distance[near] / reach[near])][:MOST_MINIMA]
+    found = [_narrowed(numbers, predict, float(grid[at]), float(grid[1] - grid[0])) for at in near]
+    middle = float(grid[0] + grid[-1]) / 2.0
     fit = [one for one in found if one[2] <= WITHIN]
-    return min(fit, key=lambda one: abs(one[0])) if nearest and fit else min(found, key=lambda one: one[2])
+    return min(fit, key=lambda one: abs(one[0] - middle)) if fit else None
 
 
 MOST_MINIMA = 4
@@ -88,15 +93,15 @@ def _narrowed(numbers: Numbers, predict: Predict, at: float, step: float) -> tup
     left = np.inf
     for _ in range(6):
         around = at + np.linspace(-step, step, 33)
-        distance = _distance(numbers, *predict(around))
+        distance = np.hypot(*_scaled(numbers, *predict(around)))
         best = int(np.argmin(distance))
         at, left = float(around[best]), float(distance[best])
         step /= 8.0
     width = max(step, 1e-6)
     lon, lat = predict(np.array([at - width, at + width]))
-    turn = (lon[1] - lon[0] + np.pi) % TWO_PI - np.pi
-    slope = np.hypot(turn / (numbers.half_x[0] * DEG), (lat[1] - lat[0]) / (numbers.half_y[0] * DEG)) / (2.0 * width)
-    return at, float(1.0 / max(slope, 1e-12)), left
+    off = _scaled(numbers, lon, lat)
+    slope = float(np.hypot(off[0][1] - off[0][0], off[1][1] - off[1][0])) / (2.0 * width)
+    return at, 1.0 / max(slope, 1e-12), left
 
 
 @cache
@@ -120,9 +125,10 @@ def _equinoxes(numbers: Numbers, question: Question) -> list[Fit]:
         def predict(at: Float, plane: str = plane) -> tuple[Float, Float]:
             return spherical(_matrices(plane, at) @ direction)
 
-        year, sigma, left = _minimum(numbers, predict, years, spherical(matrices @ direction))
-        if not YEARS[0] < year < YEARS[1]:
+        best = _minimum(numbers, predict, years, spherical(matrices @ direction))
+        if best is None or not YEARS[0] < best[0] < YEARS[1]:
             continue
+        year, sigma, left = best
         decimals = 2 if sigma < 0.1 else 1 if sigma < 1.0 else 0
         label = f"{year:.{decimals}f}"
         frame = f"{plane}/mean/{label if year < 0 else 'J' + label}"
@@ -165,9 +171,12 @@ def _times(numbers: Numbers, question: Question) -> list[Fit]:
             attempts.append((stale, "D13", f"stale elements: {axes.words}, the body where it should be"))
         for function, code, words in attempts:
             try:
-                days, sigma, left = _minimum(numbers, function, grid, nearest=True)
+                best = _minimum(numbers, function, grid)
             except SpanError:
                 continue
+            if best is None:
+                continue
+            days, sigma, left = best
             way = "later" if days > 0 else "earlier"
             text = f"{words} {_span(abs(days))} ± {_span(sigma)} {way}"
             found.append(Fit(code, text, days, sigma, "d", left, None))

@@ -98,5 +98,8 @@ def _note(hypothesis: Hypothesis, question: Question, lon: float, lat: float, ta
                 f"--frame {target} --place {wanted}{site}"
             )
         else:
-            parts.append(f"a conversion changes axes only: the place stays as it is, and {wanted} is claimed")
+            star = question.reference.name
+            known = star and not star.endswith(" position")
+            again = f"; compute anew: colure ledger '{star}'{at} --frame {target} --place {wanted}" if known else ""
+            parts.append(f"a conversion changes axes only; the place that is claimed is {wanted}{again}")
     return "; ".join(parts)

@@ -15,7 +15,6 @@ UNKNOWN = "?"
 
 _PLAIN = re.compile(r"\s*([+-]?(?:\d+\.?\d*|\.\d+)|\?)\s*(?:,\s*|\s+)([+-]?(?:\d+\.?\d*|\.\d+)|\?)\s*\Z", re.ASCII)
 _NUMBER = re.compile(r"\d+(?:\.\d*)?|\.\d+", re.ASCII)
-_SIGN = re.compile(r"[+\-−]")
 LARGEST = 1e7
 
 
@@ -82,8 +81,11 @@ def read(text: str, *, equatorial: bool = True) -> Numbers:
 
 
 def last_digit(text: str) -> float:
-    """Return half the last digit of one decimal number as written."""
-    return _decimal(text.strip().translate({ord("−"): "-"}))[1]
+    """Return half the last digit of one number as written, decimal or sexagesimal, in the unit of its first part."""
+    numbers = _NUMBER.findall(text)
+    if not numbers:
+        raise AngleError(f"'{one_line(text)}': no number")
+    return float(0.5 * 10.0 ** -len(numbers[-1].partition(".")[2]) / 60.0 ** (len(numbers) - 1))
 
 
 def _decimal(text: str) -> tuple[float, float]:
@@ -102,22 +104,13 @@ def _halves(text: str, shown: str) -> tuple[str, str]:
     if UNKNOWN in text:
         lon, _, lat = text.strip().partition(" ") if text.strip()[0] == UNKNOWN else text.strip().rpartition(" ")
         return lon, lat
-    signs = [sign.start() for sign in _SIGN.finditer(text) if text[: sign.start()].strip()]
-    if len(signs) == 1:
-        return text[: signs[0]], text[signs[0] :]
-    numbers = list(_NUMBER.finditer(text))
-    if len(signs) > 1 or len(numbers) < 2 or len(numbers) % 2:
-        # The one reader of positions knows best what is wrong with it.
-        angles.parse_position(text, equatorial=False)
-        raise AngleError(f"position '{shown}': where does the latitude begin? Put a comma before it")
-    cut = numbers[len(numbers) // 2].start()
-    return text[:cut], text[cut:]
+    spelt, tokens = angles._tokens(text, "position")
+    at = tokens[angles._cut(tokens, shown)].start
+    return spelt[:at], spelt[at:]
 
 
 def _half(text: str, longitude: bool, equatorial: bool) -> tuple[float, float]:
     if text.strip() == UNKNOWN:
         return np.nan, 1.0
     value = angles.parse_longitude(text, equatorial=equatorial) if longitude else angles.parse_latitude(text)
-    numbers = _NUMBER.findall(text)
-    unit = 0.5 * 10.0 ** -len(numbers[-1].partition(".")[2]) / 60.0 ** (len(numbers) - 1)
-    return value, unit * (15.0 if re.search(r"\dh|h\b|hour", text.casefold()) else 1.0)
+    return value, last_digit(text) * (15.0 if re.search(r"\dh|h\b|hour", text.casefold()) else 1.0)

@@ -14,6 +14,8 @@ from colure.stars import EPOCH, catalogue
 
 YEARS = (-3000.0, 3000.0)
 FK4_YEARS = (1700.0, 2100.0)
+SURE_COST = 9.0
+"""Difference of χ² below which two models are not told apart (3σ)."""
 FEWEST = 5
 """Rows below which no rotation is fitted: each gives two equations for three unknowns and an epoch."""
 SURE_EPOCH = 30.0

@@ -18,6 +18,8 @@ BEYOND = 5.0
 """σ beyond which the next prediction must lie for a verdict to be certain."""
 JOINT_PERCENTILE = 90.0
 """Of many positions this share must fit: the rest may be misidentified."""
+SAME_ARCSEC = 1e-4
+"""Explanations that are nearer than this to each other give the same numbers."""
 YEARS_AHEAD = 2.0
 SAMPLES = 48
 
@@ -121,8 +123,9 @@ def separating(members: tuple[Candidate, ...], numbers: Numbers, question: Quest
         return None
     hypotheses = [one.hypothesis for one in members]
     now = predict(numbers, question, hypotheses)
-    apart = _apart(now) / ARCSEC
-    nearest = float(apart.min(axis=0)[0])
+    apart = _apart(now)[:, 0] / ARCSEC
+    different = apart[apart > SAME_ARCSEC]
+    nearest = float(different.min()) if len(different) else 0.0
     sigma = float(numbers.half_y[0]) * 3600.0
     rounding = max(2.0 * nearest / BEYOND, 0.0)
     parts = []
@@ -136,8 +139,10 @@ def separating(members: tuple[Candidate, ...], numbers: Numbers, question: Quest
         text, gap = _another_star(hypotheses, numbers, question)
         if gap > BEYOND * sigma:
             parts.append(text)
-    if nearest > 1e-4:
-        parts.append(f"a position with its last digit at {_figure(rounding)} or finer, at the same moment")
+    if nearest > 0.0:
+        same = len(apart) - len(different)
+        rest = f" ({same} of the explanations give the same numbers)" if same else ""
+        parts.append(f"a position with its last digit at {_figure(rounding)} or finer, at the same moment{rest}")
     if not parts:
         parts.append("no position of this object: the explanations give the same numbers")
     return Separation(nearest, rounding, "; or ".join(parts))
@@ -151,6 +156,12 @@ def _apart(found: Predictions) -> Float:
     """Return angles (h − 1, n), rad, between the first prediction and the others, in the numbers' own space."""
     vectors = cartesian(found.lon, found.lat)
     return separation(vectors[1:], vectors[:1])
+
+
+def _least(apart: Float) -> Float:
+    """Return the least distance (n,) from the first to any explanation that can be told from it at all."""
+    ever = apart[apart.max(axis=1) > SAME_ARCSEC]
+    return np.asarray(ever.min(axis=0)) if len(ever) else np.zeros(apart.shape[1])
 
 
 def _same(hypotheses: list[Hypothesis], question: Question) -> list[Hypothesis]:
@@ -171,7 +182,7 @@ def _another_date(hypotheses: list[Hypothesis], numbers: Numbers, question: Ques
     if len(same) < len(hypotheses):
         return "", 0.0
     many = Numbers.of(np.zeros(SAMPLES), 0.0, 1.0, 1.0)
-    gap = _apart(predict(many, later, same)).min(axis=0) / ARCSEC
+    gap = _least(_apart(predict(many, later, same)) / ARCSEC)
     at = int(np.argmax(gap))
     when = str(later.moment[at].text()) if later.moment is not None else ""
     return f"the same rounding on {when[:10]} ({gap[at]:.3g}″ apart)", float(gap[at])
@@ -186,7 +197,7 @@ def _another_star(hypotheses: list[Hypothesis], numbers: Numbers, question: Ques
     if len(same) < len(hypotheses):
         return "", 0.0
     many = Numbers.of(np.zeros(len(grid_lon)), 0.0, 1.0, 1.0)
-    gap = _apart(predict(many, other, same)).min(axis=0) / ARCSEC
+    gap = _least(_apart(predict(many, other, same)) / ARCSEC)
     at = int(np.argmax(gap))
     text = f"a star near {grid_lon[at] / 15.0:.0f}h {grid_lat[at]:+.0f}° at the same rounding ({gap[at]:.3g}″ apart)"
     return text.replace("-", "−"), float(gap[at])

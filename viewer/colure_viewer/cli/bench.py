@@ -23,6 +23,8 @@ FIGURES = {
     "ephemeris_one": "skies",
     "stars_apparent_120k": "skies",
     "cone_1deg": "skies",
+    "audit_one": "audits",
+    "audit_table_100k": "audits",
     "pointer_ledger": "ledgers",
     "overlay_pan_100k": "overlays",
     "overlay_match_100k": "overlays",

@@ -19,6 +19,7 @@ COMMANDS = {
     "where": "Where bodies are: places, distances, rates, phases, magnitudes.",
     "convert": "Carry a position, or a table of them, from one frame to another.",
     "ledger": "Every step of a reduction, with its size, model and uncertainty.",
+    "audit": "Which frame is this coordinate in? Frame, place, origin, time, digits.",
     "time": "One moment in every time scale, with sidereal times.",
     "obliquity": "The obliquity of the ecliptic by every model.",
     "selfcheck": "Check the shipped data, the versions and the platform.",
