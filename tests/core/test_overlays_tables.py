@@ -44,7 +44,9 @@ def _fields(
     )
 
 
-@pytest.mark.parametrize("name", ["valid_votable.xml", "coosys.xml", "names.xml", "vizier_b2_votable.xml"])
+@pytest.mark.parametrize(
+    "name", ["valid_votable.xml", "coosys.xml", "names.xml", "vizier_b2_votable.xml", "irsa-nph-m31.xml"]
+)
 def test_real_votables_agree_with_astropy(name: str) -> None:
     """Tables of astropy's installed test data; their frames are named by COOSYS."""
     store = Store()
@@ -61,6 +63,45 @@ def test_real_votables_agree_with_astropy(name: str) -> None:
     assert mine is not None
     assert len(mine) == len(peer) > 0
     assert separation(mine, cartesian(peer.ra.rad, peer.dec.rad)).max() < 1.0 * MAS
+
+
+def test_a_named_document_type_is_not_fetched(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A table of another service that names its DTD by an address on the network."""
+    import socket
+
+    def refuse(*_: object, **__: object) -> None:
+        raise AssertionError("a connection was tried")
+
+    monkeypatch.setattr(socket.socket, "connect", refuse)
+    assert b"<!DOCTYPE VOTABLE SYSTEM" in (DATA / "irsa-nph-m31.xml").read_bytes()
+    assert opening.inspect(DATA / "irsa-nph-m31.xml").total > 0
+
+
+@pytest.mark.parametrize(
+    ("frame", "words", "name"),
+    [
+        ("icrs", {}, "icrs"),
+        ("fk5", {"equinox": "J1975"}, "equator/mean/J1975@iau1976"),
+        ("fk4", {"equinox": "B1950"}, "equator/fk4/B1950"),
+        ("galactic", {}, "galactic"),
+    ],
+)
+def test_coordinates_that_astropy_wrote_into_ecsv(tmp_path: Path, frame: str, words: dict[str, str], name: str) -> None:
+    from astropy.table import QTable
+
+    coordinates = SkyCoord([10.5, 200.0] * u.deg, [-20.0, 45.0] * u.deg, frame=frame, **words)
+    path = tmp_path / "t.ecsv"
+    QTable({"c": coordinates, "k": [1, 2]}).write(path)
+    overlay = opening.open_file(path, store=(store := Store()))
+    assert overlay.frame == name
+    assert "frame = " in overlay.rule
+    mine = directions.of(overlay, store=store)
+    assert mine is not None
+    peer = coordinates.icrs
+    # FK5 of 1975: astropy precesses by IAU 2006, FK5 is defined with IAU 1976, 0.3″ a century apart; FK4 and the
+    # galactic pole differ by definition by 3 and 30 mas (see the corners of images).
+    apart = {"fk5": 100.0, "fk4": 3.0, "galactic": 30.0}.get(frame, 0.001)
+    assert separation(mine, cartesian(peer.ra.rad, peer.dec.rad)).max() < apart * MAS
 
 
 SYSTEMS = [

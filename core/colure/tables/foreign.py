@@ -19,7 +19,8 @@ from colure.tables.model import Column, Read, Table
 from colure.wording import one_line
 
 _STREAM = re.compile(rb"<\s*(?:[\w.-]+:)?(?:STREAM|FITS)\b[^>]*\bhref", re.IGNORECASE)
-_ENTITY = re.compile(rb"<!\s*(ENTITY|DOCTYPE)", re.IGNORECASE)
+_ENTITY = re.compile(rb"<!\s*(ENTITY|DOCTYPE(?=[^>]*\[))", re.IGNORECASE)
+"""Entities, and document types that declare something; one that only names its DTD is harmless, as none is fetched."""
 
 
 def _guard_xml(data: bytes, where: str) -> None:
@@ -112,22 +113,47 @@ def _from_astropy(source: Any, where: str, notes: list[str]) -> Read:
     if len(source) > MOST_ROWS:
         raise TableError(f"{where}: {len(source):,} rows; expected at most {MOST_ROWS:,}")
     columns = []
+    meta = {str(key): one_line(str(value), 200) for key, value in dict(source.meta).items() if isinstance(value, str)}
     for name in source.colnames:
         column = source[name]
+        if type(column).__name__ == "SkyCoord":
+            lon, lat, frame = _taken_apart(str(name), column)
+            columns += [lon, lat]
+            if frame:
+                meta.setdefault("frame", frame)
+            continue
         values = _plain(column)
         if values is None:
             notes.append(f"column '{one_line(str(name))}' was left out: its cells are arrays or objects")
             continue
         unit = "" if getattr(column, "unit", None) is None else str(column.unit)
-        meta = getattr(column, "meta", {}) or {}
+        own = getattr(column, "meta", {}) or {}
         description = one_line(str(getattr(column, "description", "") or ""), 200)
-        columns.append(Column(str(name), values, unit, str(meta.get("ucd", "")), description))
-    meta = {str(key): one_line(str(value), 200) for key, value in dict(source.meta).items() if isinstance(value, str)}
+        columns.append(Column(str(name), values, unit, str(own.get("ucd", "")), description))
     try:
         table = Table(tuple(columns), meta)
     except TableError as fault:
         raise TableError(f"{where}: {fault}") from None
     return Read(table, np.arange(1, len(table) + 1), (), tuple(notes))
+
+
+def _taken_apart(name: str, column: Any) -> tuple[Column, Column, str]:
+    """Return longitude and latitude of a column of astropy's coordinates, and their frame, empty if it has no name."""
+    spherical = column.spherical
+    words = {"galactic": "pos.galactic", "supergalactic": "pos.supergalactic"}.get(column.frame.name)
+    ucds = (f"{words}.lon", f"{words}.lat") if words else ("pos.eq.ra", "pos.eq.dec")
+    equinox: Any = getattr(column, "equinox", None)
+    match column.frame.name:
+        case "icrs" | "galactic" | "supergalactic":
+            frame = column.frame.name
+        case "fk5":
+            frame = f"equator/mean/J{equinox.jyear:.10g}@iau1976"
+        case "fk4":
+            frame = f"equator/fk4/B{equinox.byear:.10g}"
+        case _:
+            frame, ucds = "", ("", "")
+    lon, lat = (np.asarray(angle.deg, dtype=np.float64) for angle in (spherical.lon, spherical.lat))
+    return Column(f"{name}.lon", lon, "deg", ucds[0]), Column(f"{name}.lat", lat, "deg", ucds[1]), frame
 
 
 def _plain(column: Any) -> NDArray[Any] | None:
