@@ -132,6 +132,8 @@ def _disc(radius: float, side: int, middle: int, fraction: F64) -> F64:
     return np.where(cover == 1.0, 1.0, scaled)
 
 
+STEP = 256
+"""Rows by which the picture of labels grows."""
 HALO = 0.8
 """How much of what lies behind a halo covers: lines fade, and a tinted ground shows through a little."""
 
@@ -255,7 +257,7 @@ class TextAtlas:
         # Painting on the pixmap itself copies only the new tiles; a new pixmap would copy the whole picture.
         bottom, old = self._y + self._tall, self.pixmap
         if bottom > old.height():
-            self.pixmap = _clear_pixmap(self.WIDTH, max(bottom, 2 * old.height()))
+            self.pixmap = _clear_pixmap(self.WIDTH, max(bottom, old.height() + STEP))
         painter = QPainter(self.pixmap)
         painter.setCompositionMode(QPainter.CompositionMode.CompositionMode_Source)
         if self.pixmap is not old:

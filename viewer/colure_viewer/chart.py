@@ -26,6 +26,8 @@ if TYPE_CHECKING:
 
 MOST_AT_ONCE = 90_000
 """Stars that are reduced and laid out between two frames without holding up the window."""
+RETICLE = (9.0, 18.0)
+"""Where the strokes about the selection begin and end, in logical pixels from it."""
 LATER_MS, FOLLOW_MS = 250, 150
 
 
@@ -235,11 +237,12 @@ class ChartWidget(QWidget):
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         selection = self._desk.selection
         if selection is not None and (at := self._pixel(scene, selection)) is not None:
-            painter.setPen(QPen(QColor(theme.colour("selection")), 1.6))
-            # Four arcs with gaps: the object inside and the lines through it stay visible.
-            box = QRectF(at.x() - 12.0, at.y() - 12.0, 24.0, 24.0)
-            for quarter in range(4):
-                painter.drawArc(box, round((quarter * 90.0 + 15.0) * 16.0), 60 * 16)
+            painter.setPen(QPen(QColor(theme.colour("selection")), 2.0))
+            # Four strokes on the diagonals: the object, its label beside it and the lines through it stay visible.
+            near, far = RETICLE
+            for right, down in ((1, 1), (1, -1), (-1, 1), (-1, -1)):
+                step = QPointF(0.7071 * right, 0.7071 * down)
+                painter.drawLine(at + step * near, at + step * far)
         if self.ends is not None:
             from colure import pointing
 

@@ -65,6 +65,9 @@ class Entry(QLineEdit):
     def show_value(self, text: str) -> None:
         """Show the value in force, unless the user is in the middle of typing or has a refused entry to mend."""
         self._value = text
+        if self.fault is None:
+            # A narrow field may not show all of its value.
+            self.setToolTip(f"{self._name}\n{text}" if text else self._name)
         if not self.isModified() and self.fault is None and self.text() != text:
             self.setText(text)
             self.setCursorPosition(0)
@@ -111,7 +114,7 @@ class Entry(QLineEdit):
         self.fault = None
         if self._note is not None:
             self._note.hide()
-        self.setToolTip(self._name)
+        self.setToolTip(f"{self._name}\n{self._value}" if self._value else self._name)
         self.setAccessibleDescription("")
         self._restyle(False)
 
