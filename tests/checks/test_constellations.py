@@ -7,11 +7,11 @@ import re
 
 import numpy as np
 import pytest
-from colure.moment import Moment
 from harness import Row, runnable, verify
 
 from colure import belt, constellations, frames
 from colure.arrays import DEG, MAS, cartesian, spherical, unit
+from colure.moment import Moment
 
 UNRUN: dict[str, str] = {}
 J2000 = Moment.from_jd(2451545.0)

@@ -122,11 +122,22 @@ def _view(session: "Session", wanted: dict[str, Any]) -> Any:
         changes["width_deg"] = parse_extent(wanted["width"], "--width")
     if wanted["centre"]:
         changes["centre"] = _centre(wanted["centre"], wanted["frame"] or view.centre.frame, session)
-    elif wanted["frame"]:
-        from colure import pointing
-
-        changes["centre"] = pointing.recentred(session, wanted["frame"])
+    elif wanted["frame"] and view.centre.body is None:
+        changes["centre"] = _in_frame(session, wanted["frame"])
     return replace(view, **changes)
+
+
+def _in_frame(session: "Session", frame: str) -> Any:
+    """Return the centre of a session, the same point of the sky, in another frame."""
+    import numpy as np
+
+    from colure import convert
+    from colure.session import Centre
+
+    old = session.view.centre
+    lon, lat = np.array([old.lon_deg]), np.array([old.lat_deg])
+    new = convert.columns(lon, lat, old.frame, frame, session.moment, session.site)
+    return Centre(frame, float(new.lon_deg[0]), float(new.lat_deg[0]))
 
 
 def _centre(text: str, frame: str, session: "Session") -> Any:
@@ -134,8 +145,8 @@ def _centre(text: str, frame: str, session: "Session") -> Any:
     from colure.session import Centre
 
     target = lookup.find(text, frame=frame, year=float(session.moment.julian_year))
-    if target.lon_deg is None or target.lat_deg is None:
-        return Centre(body=target.ref)
+    if target.frame is None or target.lon_deg is None or target.lat_deg is None:
+        return Centre(body=str(target.ref))
     return Centre(target.frame, target.lon_deg, target.lat_deg)
 
 
