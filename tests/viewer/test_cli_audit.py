@@ -162,6 +162,49 @@ def test_a_table_of_a_body_is_explained_as_a_whole(colure, tmp_path: Path) -> No
     assert "12 rows together" in ran.out
 
 
+def test_stars_of_a_table_at_a_moment_are_explained_with_their_aberration(colure, tmp_path: Path) -> None:
+    at = Moment.parse("2026-06-01T00:00:00 UTC")
+    bright = catalogue().brighter(5.0)
+    rows = bright.take(np.flatnonzero(bright.hip > 0)[::8])
+    lon, lat = rows.lonlat()
+    east, north = rows.proper_motion()
+    zero = np.zeros(len(lon))
+    far = np.maximum(rows.parallax_mas / 1000.0, 1e-6)
+    years = (26.4137 - 16.0) * 1.0  # from the catalogue's epoch, J2016.0, by ERFA's space motion
+    ra, dec, *_ = erfa.pmsafe(
+        lon, lat, east / np.cos(lat), north, far, zero, 2457388.5, 0.5 - 0.5, 2457388.5, years * 365.25
+    )
+    ri, di, origins = erfa.atci13(ra, dec, zero, zero, far, zero, *at.tt)
+    path = tmp_path / "apparent.csv"
+    lines = [
+        f"{h},{a:.5f},{d:.5f}"
+        for h, a, d in zip(rows.hip, np.degrees(ri - origins) % 360.0, np.degrees(di), strict=True)
+    ]
+    path.write_text("hip,ra,dec\n" + "\n".join(lines) + "\n")
+    ran = colure("audit", "--table", str(path), "--at", "2026-06-01T00:00:00 UTC", "--claim", "icrs")
+    assert ran.code == 0
+    assert "true equator and equinox of date, apparent [B5]" in ran.out
+    assert (
+        f"mend: colure convert --table {path} --from equator/true/date --to icrs --at '2026-06-01T00:00:00 UTC'"
+        in ran.out
+    )
+
+
+def test_the_residual_is_given_on_equator_ecliptic_and_along_the_motion(colure) -> None:
+    words = ("audit", "17h46m45.64s -23°57.1′", "--against", "mars", "--at", "2024-01-01T00:00:00 UTC")
+    ran = colure(*words, "--claim", "equator/true/date", "--rounding", "6", "--format", "json")
+    first = ran.records[0]
+    # Precession in 24 years: 24.0 × 50.29″ in longitude, times cos β (−0.5°), less 18″ of aberration.
+    assert first["off_lon_arcsec"] == pytest.approx(-24.0 * 50.29, abs=20.0)
+    assert abs(first["off_lat_arcsec"]) < 12.5  # what the ecliptic turned
+    assert np.hypot(first["off_ra_arcsec"], first["off_dec_arcsec"]) == pytest.approx(
+        np.hypot(first["off_lon_arcsec"], first["off_lat_arcsec"]), rel=1e-9
+    )
+    assert np.hypot(first["off_along_arcsec"], first["off_across_arcsec"]) == pytest.approx(
+        np.hypot(first["off_ra_arcsec"], first["off_dec_arcsec"]), rel=1e-4
+    )
+
+
 # Bad input
 
 
