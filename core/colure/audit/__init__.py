@@ -12,6 +12,7 @@ from colure.audit.mending import Mending, mend
 from colure.audit.numbers import Numbers, last_digit, read
 from colure.audit.orientation import Turn, TurnPredictions, View, offsets, position_angles
 from colure.audit.reference import Question, Stars
+from colure.audit.residuals import Residual, from_claim
 from colure.audit.search import Found, audit_unknown
 from colure.audit.tablefile import date_table, half_digit_deg, moments, star_rows
 from colure.audit.tablefit import SURE_COST, Model, TableFit, fit_identified, fit_unidentified
@@ -33,6 +34,7 @@ __all__ = [
     "Numbers",
     "Predictions",
     "Question",
+    "Residual",
     "Separation",
     "Stars",
     "TableFit",
@@ -48,6 +50,7 @@ __all__ = [
     "fit_identified",
     "fit_unidentified",
     "fits",
+    "from_claim",
     "half_digit_deg",
     "joint",
     "judge",

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from colure import angles
-from colure.arrays import Float
+from colure.arrays import Float, Int
 from colure.errors import AngleError
 from colure.wording import one_line
 
@@ -49,7 +49,7 @@ class Numbers:
     def __len__(self) -> int:
         return len(self.x)
 
-    def take(self, rows: Float | slice) -> "Numbers":
+    def take(self, rows: Int | slice) -> "Numbers":
         """Return some of the pairs."""
         return Numbers(self.x[rows], self.y[rows], self.half_x[rows], self.half_y[rows])
 

@@ -5,7 +5,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from colure import frames
-from colure.arrays import DEG, Float, cartesian
+from colure.arrays import DEG, Float, Int, cartesian
 from colure.ephemeris import BODIES
 from colure.errors import BodyError, FrameError, MomentError
 from colure.frames import Frame
@@ -37,7 +37,7 @@ class Stars:
         return cls(np.asarray(position), np.asarray(motion), rows.parallax_mas / 1000.0 / 3600.0 * DEG, EPOCH, name)
 
     @classmethod
-    def of_ids(cls, ids: Float | list[int], name: str = "") -> "Stars":
+    def of_ids(cls, ids: Int | list[int], name: str = "") -> "Stars":
         """Return stars by their row numbers in the catalogue."""
         return cls.of_rows(catalogue().rows(np.asarray(ids)), name)
 

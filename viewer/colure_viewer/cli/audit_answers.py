@@ -5,13 +5,12 @@ from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
-import click
 import numpy as np
 
 from colure import audit, lookup
 from colure.angles import MINUS
-from colure.audit import Audit, Question, Stars, TableFit
-from colure.errors import AngleError, FrameError, MomentError, TargetError
+from colure.audit import Audit, Question, Stars
+from colure.errors import AngleError, FrameError, TargetError
 from colure.frames import Frame
 from colure.moment import Moment
 from colure.sites import Site
@@ -69,11 +68,11 @@ def answer(asked: Asked) -> Found:
         raise AngleError("--true: belongs to --pa or --offset; name the reference of a position with --against")
     if asked.claim is not None:
         Frame.parse(asked.claim)
-    from colure_viewer.cli import audit_turns
+    from colure_viewer.cli import audit_tables, audit_turns
 
     by_kind: dict[str, Callable[[Asked], Found]] = {
         "position": _position,
-        "table": _table,
+        "table": audit_tables.table,
         "pa": audit_turns.position_angle,
         "offset": audit_turns.offset,
     }
@@ -94,7 +93,8 @@ def held_against(asked: Asked, moment: Moment | None) -> str | Stars:
     return Stars.point(target.lon_deg, target.lat_deg, target.frame, moment)
 
 
-def _question(asked: Asked, reference: str | Stars, moment: Moment | None) -> Question:
+def question_of(asked: Asked, reference: str | Stars, moment: Moment | None) -> Question:
+    """Return the question on a reference."""
     return Question(reference, moment, asked.ground, asked.claim, asked.place, asked.origin, asked.exposure)
 
 
@@ -110,17 +110,18 @@ def _position(asked: Asked) -> Found:
     numbers = _numbers(asked)
     if asked.against is None:
         return _unknown(asked, numbers, moment)
-    found = audit.ask(numbers, _question(asked, held_against(asked, moment), moment))
-    return _code(found), Answer(_records(found, asked), lambda: _text(found, asked, _head(found, asked)))
+    found = audit.ask(numbers, question_of(asked, held_against(asked, moment), moment))
+    return exit_code(found), Answer(records_of(found, asked), lambda: worded(found, asked, heading(found, asked)))
 
 
-def _code(found: Audit) -> int:
+def exit_code(found: Audit) -> int:
+    """Return 1 where nothing explains the numbers, else 0."""
     return 1 if found.status == "none" else 0
 
 
 def _unknown(asked: Asked, numbers: Any, moment: Moment | None) -> Found:
     stars = audit.audit_unknown(numbers, moment, site=asked.ground, claim=asked.claim, place=asked.place)
-    records = [{"star": one.name, **record} for one in stars for record in _records(one.audit, asked)]
+    records = [{"star": one.name, **record} for one in stars for record in records_of(one.audit, asked)]
 
     def text() -> str:
         if not stars:
@@ -128,18 +129,21 @@ def _unknown(asked: Asked, numbers: Any, moment: Moment | None) -> Found:
         parts = []
         for one in stars:
             chance = f"accidental meeting {one.audit.chance:.2g}"
-            parts.append(_text(one.audit, asked, f"{one.name} ({chance})"))
+            parts.append(worded(one.audit, asked, f"{one.name} ({chance})"))
         return "\n\n".join(parts)
 
     return (0 if stars else 1), Answer(records, text)
 
 
-def _head(found: Audit, asked: Asked) -> str:
+def heading(found: Audit, asked: Asked) -> str:
+    """Return what was asked, in one line."""
     numbers = found.numbers
-    halves = " × ".join(_arcsec(float(half) * 3600.0) for half in (numbers.half_x[0], numbers.half_y[0]))
+    halves = " × ".join(size_text(float(half) * 3600.0) for half in (numbers.half_x[0], numbers.half_y[0]))
     parts = [f"{asked.position or asked.table}", f"± {halves}"]
     reference = found.question.reference
-    parts.append(f"against {reference if isinstance(reference, str) else reference.name or asked.against}")
+    parts.append(
+        f"against {reference if isinstance(reference, str) else reference.name or asked.against or 'its stars'}"
+    )
     if found.question.moment is not None and found.question.moment.size == 1:
         parts.append(f"at {found.question.moment[0].text()}")
     if found.question.site is not None:
@@ -148,13 +152,14 @@ def _head(found: Audit, asked: Asked) -> str:
     return " · ".join(parts)
 
 
-def _arcsec(value: float) -> str:
+def size_text(value: float) -> str:
+    """Return an angle in arcseconds or degrees."""
     if value >= 3600.0:
         return f"{value / 3600.0:.3g}°"
     return f"{value:.3g}″"
 
 
-def _records(found: Audit, asked: Asked) -> list[dict[str, Any]]:
+def records_of(found: Audit, asked: Asked) -> list[dict[str, Any]]:
     """Return one record for each explanation listed: the hypotheses by distance, then the fits."""
     dated = found.question.moment is not None and found.question.moment.size == 1
     echo: dict[str, Any] = {"status": found.status, "verdict": found.verdict, "claim": found.question.claim}
@@ -162,6 +167,16 @@ def _records(found: Audit, asked: Asked) -> list[dict[str, Any]]:
         echo |= moment_keys(found.question.moment[0])
     if found.question.site is not None:
         echo["site"] = str(found.question.site)
+    off = audit.from_claim(found.numbers, found.question) if len(found.numbers) == 1 else None
+    if off is not None:
+        echo |= {
+            "off_ra_arcsec": off.ra,
+            "off_dec_arcsec": off.dec,
+            "off_lon_arcsec": off.lon,
+            "off_lat_arcsec": off.lat,
+            "off_along_arcsec": off.along,
+            "off_across_arcsec": off.across,
+        }
     records = []
     for rank, one in enumerate(found.candidates[: max(asked.most, len(found.members))], 1):
         hypothesis = one.hypothesis
@@ -178,7 +193,7 @@ def _records(found: Audit, asked: Asked) -> list[dict[str, Any]]:
                 "in_class": one in found.members,
                 "frame": hypothesis.axes.frame or "",
                 "place": hypothesis.sight,
-                "mend": "; ".join(found.mending.commands) if one is found.simplest else "",
+                "mend": "; ".join(_mending(found, asked)[0]) if one is found.simplest else "",
             }
         )
     for fit in found.fits:
@@ -199,15 +214,17 @@ def _records(found: Audit, asked: Asked) -> list[dict[str, Any]]:
     return records
 
 
-def _text(found: Audit, asked: Asked, head: str) -> str:
-    lines = [head, f"{found.status}: {found.verdict}"]
+def worded(found: Audit, asked: Asked, head: str) -> str:
+    """Return the answer in words, under a heading."""
+    lines = [head, f"{found.status}: {found.verdict}", *_residual_lines(found)]
     if len(found.members) > 1 and found.settled:
         lines.append("settled: " + "; ".join(f"{name} {value}" for name, value in found.settled.items()))
     if found.separation is not None:
         lines.append(f"to decide: {found.separation.text}")
-    lines += [f"mend: {command}" for command in found.mending.commands]
-    if found.mending.note:
-        lines.append(f"note: {found.mending.note}")
+    commands, note = _mending(found, asked)
+    lines += [f"mend: {command}" for command in commands]
+    if note:
+        lines.append(f"note: {note}")
     rows = []
     for one in found.candidates[: max(asked.most, min(len(found.members), 20))]:
         inside = "·" if one in found.members else ""
@@ -215,7 +232,7 @@ def _text(found: Audit, asked: Asked, head: str) -> str:
             [
                 inside,
                 f"{one.n_sigma:.1f}" if one.n_sigma < 1e4 else f"{one.n_sigma:.0e}",
-                *(_offset_text(part) for part in (one.off_lon_arcsec, one.off_lat_arcsec)),
+                *(offset_text(part) for part in (one.off_lon_arcsec, one.off_lat_arcsec)),
                 one.hypothesis.code,
                 one.hypothesis.words,
             ]
@@ -226,112 +243,44 @@ def _text(found: Audit, asked: Asked, head: str) -> str:
     return "\n".join([*lines, "", table])
 
 
-def _offset_text(arcsec: float) -> str:
+def _mending(found: Audit, asked: Asked) -> tuple[tuple[str, ...], str]:
+    """Return the commands that mend, and a note: of a table the whole file, where its axes have a name."""
+    if asked.table is None or not found.members:
+        return found.mending.commands, found.mending.note
+    best, target = found.simplest.hypothesis, asked.claim or "icrs"
+    if best.axes.frame is None or best.reading.key != "read" or best.shift is not None:
+        return (), "no conversion of the file mends this; the first row is: " + "; ".join(found.mending.commands)
+    wanted = found.question.default_place(target.endswith("/date"))
+    note = "" if best.sight == wanted else f"the axes alone change; the places stay {best.sight}, not {wanted}"
+    if best.axes.frame == target:
+        return (), note
+    moves = [name for name in (best.axes.frame, target) if Frame.parse(name).needs_moment]
+    at = f" --at '{asked.at}'" if moves and asked.at else ""
+    if moves and not asked.at:
+        return (), f"every row is of its own moment, so the file cannot be converted at once. {note}".strip()
+    return (f"colure convert --table {asked.table} --from {best.axes.frame} --to {target}{at}",), note
+
+
+def _residual_lines(found: Audit) -> list[str]:
+    off = audit.from_claim(found.numbers, found.question) if len(found.numbers) == 1 else None
+    if off is None:
+        return []
+    from_what = f"off {off.frame}, {off.place}"
+    if not np.isfinite(off.ra):
+        return [f"{from_what}: {off.distance / 3600.0:.1f}°"]
+    parts = [
+        f"Δα cos δ {offset_text(off.ra)}, Δδ {offset_text(off.dec)}",
+        f"Δλ cos β {offset_text(off.lon)}, Δβ {offset_text(off.lat)}",
+    ]
+    if np.isfinite(off.along):
+        parts.append(f"along the motion {offset_text(off.along)}, across {offset_text(off.across)}")
+    return [f"{from_what}: " + "; ".join(parts)]
+
+
+def offset_text(arcsec: float) -> str:
+    """Return a signed angle in arcseconds or degrees."""
     if not np.isfinite(arcsec):
         return "?"
     sign = MINUS if arcsec < 0.0 else "+"
     size = abs(arcsec)
     return sign + (f"{size / 3600.0:.3f}°" if size >= 3600.0 else (f"{size:.3g}″" if size < 100.0 else f"{size:.0f}″"))
-
-
-# Tables
-
-
-def _table(asked: Asked) -> Found:
-    from colure.tables import read_positions
-
-    assert asked.table is not None
-    equatorial = asked.claim is None or Frame.parse(asked.claim).is_equatorial
-    read = read_positions(
-        asked.table, lon=asked.lon_name, lat=asked.lat_name, equatorial=equatorial, skip_bad=asked.skip_bad
-    )
-    for line in (*read.notes, *read.rejected):
-        click.echo(f"colure: {asked.table}: {line}", err=True)
-    if asked.against is not None:
-        return _body_table(asked, read)
-    half = asked.rounding
-    fit, notes = audit.date_table(read, identifiers=asked.id_name, magnitudes=asked.mag_name, half_arcsec=half)
-    records = _fit_records(fit, asked)
-    return 0, Answer(records, lambda: _fit_text(fit, asked, notes))
-
-
-def _body_table(asked: Asked, read: Any) -> Found:
-    """Explain the positions of one body at many moments together."""
-    from colure.audit.tablefile import DATES, pick
-
-    column = pick(read.table, asked.time_name, DATES)
-    if column is None and asked.at is None:
-        raise MomentError(f"table '{asked.table}': no column of moments is known by its name; name it with --time")
-    moment = audit.moments(column) if column is not None else asked.moment
-    if asked.rounding is not None:
-        half_x = half_y = asked.rounding / 3600.0
-    else:
-        half_x = audit.half_digit_deg(read.table.column(read.lon_name))
-        half_y = audit.half_digit_deg(read.table.column(read.lat_name))
-    numbers = audit.Numbers.of(read.lon_deg, read.lat_deg, half_x, half_y)
-    found = audit.ask(numbers, _question(asked, held_against(asked, moment), moment))
-    head = _head(found, asked) + f" · {len(numbers)} rows together"
-    return _code(found), Answer(_records(found, asked), lambda: _text(found, asked, head))
-
-
-def _fit_records(fit: TableFit, asked: Asked) -> list[dict[str, Any]]:
-    outliers = (np.flatnonzero((fit.rows >= 0) & ~fit.good) + 1).tolist()
-    return [
-        {
-            "rank": rank,
-            "frame": model.frame,
-            "kind": model.kind,
-            "equinox": model.year,
-            "equinox_sigma": model.sigma,
-            "epoch": fit.epoch,
-            "epoch_sigma": fit.epoch_sigma,
-            "rows": len(fit.rows),
-            "matched": int((fit.rows >= 0).sum()),
-            "agreeing": int(fit.good.sum()),
-            "sigma_arcsec": model.sigma_row_arcsec,
-            "left_x_arcsec": model.left_arcsec[0],
-            "left_y_arcsec": model.left_arcsec[1],
-            "left_z_arcsec": model.left_arcsec[2],
-            "obliquity_error_arcsec": fit.obliquity_arcsec,
-            "obliquity_error_sigma_arcsec": fit.obliquity_sigma_arcsec,
-            "cost": model.cost,
-            "disagreeing_rows": outliers if rank == 1 else [],
-            "mend": f"colure convert --table {asked.table} --from {model.frame} --to {asked.claim or 'icrs'}",
-        }
-        for rank, model in enumerate(fit.models, 1)
-    ]
-
-
-def _fit_text(fit: TableFit, asked: Asked, notes: tuple[str, ...]) -> str:
-    best = fit.best
-    lines = [f"{asked.table} · {len(fit.rows)} rows", *notes]
-    letter = "B" if best.kind == "fk4" else "J"
-    plane = {"fk4": "FK4 mean equator", "equator": "mean equator", "ecliptic": "mean ecliptic"}[best.kind]
-    lines.append(f"equinox {letter}{_pm(best.year, best.sigma)} ({plane} and equinox), as {best.frame}")
-    for other in fit.models[1:]:
-        apart = other.cost - best.cost
-        said = "these rows cannot tell the two apart" if apart < audit.SURE_COST else "fits worse"
-        lines.append(f"or {other.frame} ({_pm(other.year, other.sigma)}): {said} (Δχ² {apart:.1f})")
-    agree = f"{int(fit.good.sum())} of {int((fit.rows >= 0).sum())} stars agree"
-    lines.append(f"{agree}, scatter {_arcsec(fit.sigma_arcsec)} in a coordinate")
-    left = ", ".join(
-        f"{axis} {_offset_text(value)} ± {_arcsec(sigma)}"
-        for axis, value, sigma in zip("xyz", best.left_arcsec, best.left_sigma_arcsec, strict=True)
-    )
-    lines.append(f"turn that no equinox explains, about the table's axes: {left}")
-    if np.isfinite(fit.obliquity_arcsec):
-        error = f"{_offset_text(fit.obliquity_arcsec)} ± {_arcsec(fit.obliquity_sigma_arcsec)}"
-        lines.append(f"error of the obliquity that the table implies: {error}")
-    if np.isfinite(fit.epoch_sigma):
-        lines.append(f"mean epoch of the places by proper motion: {_pm(fit.epoch, fit.epoch_sigma)}")
-    bad = np.flatnonzero((fit.rows >= 0) & ~fit.good) + 1
-    if len(bad):
-        shown = ", ".join(map(str, bad[:20])) + (f" … {len(bad)} in all" if len(bad) > 20 else "")
-        lines.append(f"rows that do not agree with their star: {shown}")
-    lines.append(f"mend: colure convert --table {asked.table} --from {best.frame} --to {asked.claim or 'icrs'}")
-    return "\n".join(lines)
-
-
-def _pm(value: float, sigma: float) -> str:
-    decimals = 4 if sigma < 1e-3 else 3 if sigma < 0.01 else 2 if sigma < 0.1 else 1 if sigma < 2.0 else 0
-    return f"{value:.{decimals}f} ± {sigma:.{decimals}f}".replace("-", MINUS)
