@@ -9,6 +9,7 @@ from colure import audit, names
 from colure.arrays import DEG, spherical
 from colure.audit import Numbers, Question, Stars
 from colure.audit.verdict import judge
+from colure.bodies import longitudes
 from colure.errors import AngleError, BodyError, ColureError, FrameError, MomentError, TargetError
 from colure.moment import Moment
 from colure.reduction import Observer, reduce_bodies
@@ -177,6 +178,18 @@ def test_random_points_are_never_certain_against_the_catalogue() -> None:
         numbers = Numbers.of(rng.uniform(0.0, 360.0), np.degrees(np.arcsin(rng.uniform(-1, 1))), 1e-4, 1e-4)
         for found in audit.audit_unknown(numbers, Moment.parse("2026-06-01")):
             assert found.audit.status != "certain"
+
+
+@pytest.mark.parametrize("when", ["-2999-02-01", "-1200-03-30", "-0001-01-01", "1582-10-15", "2999-12-20"])
+def test_any_year_that_the_ephemeris_reaches_can_be_asked_about(when: str) -> None:
+    at = Moment.parse(when)
+    lon, lat = (np.atleast_1d(part) / DEG for part in longitudes(("mars",), at, frame="equator/true/date"))
+    lon, lat = lon.reshape(1), lat.reshape(1)
+    answer = audit.ask(Numbers.of(lon, lat, 0.01, 0.01), Question("mars", at, claim="equator/true/date"))
+    assert answer.simplest.hypothesis.steps == 0
+    assert answer.simplest.n_sigma < 1e-3
+    star = audit.ask(Numbers.of(12.3, 4.5, 0.01, 0.01), Question(aldebaran(), at, DEMO, "equator/true/date"))
+    assert star.candidates
 
 
 # Bad questions

@@ -13,7 +13,7 @@ from colure.audit.numbers import Numbers
 from colure.audit.reference import Question
 from colure.audit.sights import Sky
 from colure.ephemeris import default
-from colure.errors import SpanError
+from colure.errors import MomentError, SpanError
 from colure.reduction import C_AU_DAY, observer_state
 
 YEARS = (-1000.0, 2300.0)
@@ -172,7 +172,7 @@ def _times(numbers: Numbers, question: Question) -> list[Fit]:
         for function, code, words in attempts:
             try:
                 best = _minimum(numbers, function, grid)
-            except SpanError:
+            except (SpanError, MomentError):
                 continue
             if best is None:
                 continue

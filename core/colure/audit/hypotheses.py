@@ -5,7 +5,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from colure.arrays import Bool, Float, norm
+from colure import precession
+from colure.arrays import Bool, Float, norm, unit
 from colure.audit import shifts as time_shifts
 from colure.audit.axes import AXES, BY_KEY, EQUINOXES, Axes, of_claim
 from colure.audit.numbers import Numbers
@@ -21,6 +22,10 @@ MODEL_ARCSEC = 0.005
 """What rotations and star places may be wrong by: interpolated nutation, places of the catalogue at its epoch."""
 NATURAL = ("icrs", "equator/true/date", "ecliptic/mean/J2000", "ecliptic/true/date")
 """The axes on which mistakes of origin and time are tried where nothing is claimed."""
+FK4_YEARS = (1700.0, 2100.0)
+"""Years of observation that FK4's slow turn is carried to."""
+SURE_CLOCK_S = 0.01
+"""ΔT known to this moves nothing by what anybody's digits show (the Moon by 0.006″)."""
 HOUR_ANGLE_AXES = ("equator/true/date", "equator/mean/date", "icrs")
 
 
@@ -117,9 +122,7 @@ def plan(question: Question) -> tuple[Hypothesis, ...]:
     claim = None if question.claim is None else of_claim(question.claim)
     made = _Plan(question, claim)
     dated = question.moment is not None
-    usable = [
-        axes for axes in (*AXES, *((claim,) if claim and claim.key not in BY_KEY else ())) if dated or not axes.of_date
-    ]
+    usable = _usable(question, claim)
     origins = ["", *_other(question)]
     # Equinox alone and with the place, and for a body with the origin.
     places = PLACES if dated else ("astrometric",)
@@ -152,6 +155,22 @@ def plan(question: Question) -> tuple[Hypothesis, ...]:
                     codes = (code, "D1" if origin else "", shift.code)
                     made.add(AS_READ, axes, sight, shift, codes, 1 + bool(origin))
     return tuple(made.found)
+
+
+def _usable(question: Question, claim: Axes | None) -> list[Axes]:
+    """Return the axes that can be set up: those of date need a moment, and old models do not reach every year."""
+    every = (*AXES, claim) if claim is not None and claim.key not in BY_KEY else AXES
+    if question.moment is None:
+        return [axes for axes in every if not axes.of_date]
+    years = np.asarray(question.moment.julian_year)
+
+    def reaches(axes: Axes) -> bool:
+        first, last = precession.SPANS.get(axes.key.partition("@")[2], (-np.inf, np.inf))
+        if axes.key == "fk4-now":
+            first, last = FK4_YEARS
+        return bool(years.min(initial=last) >= first and years.max(initial=first) <= last)
+
+    return [axes for axes in every if axes is claim or reaches(axes)]
 
 
 def _other(question: Question) -> list[str]:
@@ -237,6 +256,10 @@ def _shifted(chosen: Sequence[Hypothesis], question: Question, lon: Float, lat: 
     every = {shift.key: shift.days for shift in shifts if shift is not None}
     order = list(every)
     days = np.stack([np.broadcast_to(every[key], (question.moment.size,)) for key in order])
+    # At the ends of the ephemeris a year more or less may be missing: such a mistake is then not tried.
+    first, last = default().span
+    here = np.asarray(question.moment.jd_tt)
+    days = np.where((here + days > first + 1.0) & (here + days < last - 1.0), days, np.nan)
     moved = question.moment[None].shifted(np.where(np.isnan(days), 0.0, days))
     flat = Sky(question.at(Moment(np.ravel(moved.tt1), np.ravel(moved.tt2), moved.scale, moved.calendar)))
     for (_, sight), rows in groups.items():
@@ -244,6 +267,29 @@ def _shifted(chosen: Sequence[Hypothesis], question: Question, lon: Float, lat: 
         for target, values in zip((lon, lat), found, strict=True):
             table = np.where(np.isnan(days), np.nan, values.reshape(days.shape))
             target[rows] = table[[order.index(chosen[at].shift.key) for at in rows if chosen[at].shift]]  # type: ignore[union-attr]
+
+
+def _clock_doubt(question: Question) -> Float:
+    """Return what the uncertainty of ΔT moves a body by (n,), arcsec.
+
+    Its motion counts if the moment is in UT, its parallax at a site if it is in TT.
+    """
+    assert question.moment is not None
+    assert isinstance(question.reference, str)
+    sigma = np.broadcast_to(np.asarray(question.moment.delta_t_sigma_s), question.moment.shape)
+    if question.moment.scale in ("UTC", "UT1"):
+        if float(np.max(sigma, initial=0.0)) < SURE_CLOCK_S:
+            return np.zeros(question.moment.shape)
+        names = (question.reference, "earth")
+        days = 1.0 / 24.0
+        ends = [default().position(names, *question.moment.shifted(by).tdb) for by in (-days, days)]
+        lines = [unit(place[0] - place[1]) for place in ends]
+        return np.asarray(norm(lines[1] - lines[0]) / (2.0 * days * 86400.0) * sigma * 648000.0 / np.pi)
+    if question.observer.origin != "site":
+        return np.zeros(question.moment.shape)
+    place = default().position((question.reference, "earth"), *question.moment.tdb)
+    # 8.794″ of horizontal parallax at 1 au, turning with the Earth at 7.29e-5 rad/s.
+    return np.asarray(8.794 / norm(place[0] - place[1]) * 7.29e-5 * sigma)
 
 
 def _floor(question: Question, count: int) -> tuple[Float, dict[str, Float]]:
@@ -256,7 +302,7 @@ def _floor(question: Question, count: int) -> tuple[Float, dict[str, Float]]:
     if isinstance(question.reference, str) and question.moment is not None:
         body = question.reference
         doubt = default().uncertainty_arcsec((body,), *question.moment.tdb)[0]
-        floor = np.hypot(floor, np.broadcast_to(doubt, (count,)))
+        floor = np.hypot(floor, np.broadcast_to(np.hypot(doubt, _clock_doubt(question)), (count,)))
         names = tuple(dict.fromkeys((body, "earth", "sun")))
         place = dict(zip(names, default().position(names, *question.moment.tdb), strict=True))
         far = norm(place[body] - place["earth"])

@@ -135,7 +135,11 @@ def hour_angles(moment: Moment, site: Site) -> tuple[Reading, ...]:
     lon = site.lon_deg * DEG
     gast, gmst = (np.atleast_1d(sidereal.gast(moment)), np.atleast_1d(sidereal.gmst(moment)))
     delta = np.atleast_1d(np.asarray(moment.delta_t_s, dtype=np.float64))
-    late = delta * SIDEREAL_TURN * TWO_PI / 86400.0
+    turn = SIDEREAL_TURN * TWO_PI / 86400.0
+    late = delta * turn
+    # In TT the instant is certain, and how far the Earth has turned is not.
+    certain = moment.scale in ("UTC", "UT1")
+    doubt = np.zeros(delta.shape) if certain else np.atleast_1d(np.asarray(moment.delta_t_sigma_s)) * turn
     times = [
         ("ha", "A8", "local hour angle", gast + lon),
         ("ha-mean", "B17", "local hour angle without the equation of the equinoxes", gmst + lon),
@@ -150,12 +154,13 @@ def hour_angles(moment: Moment, site: Site) -> tuple[Reading, ...]:
         times.append(
             ("ha-utc", "E1", "local hour angle with UTC taken for UT1", gast + lon - dut1 * SIDEREAL_TURN * TWO_PI)
         )
-    return tuple(Reading(key, code, words, _hour_angle(local)) for key, code, words, local in times)
+    return tuple(Reading(key, code, words, _hour_angle(local, doubt)) for key, code, words, local in times)
 
 
-def _hour_angle(local: Float) -> Callable[[Numbers], Read]:
+def _hour_angle(local: Float, doubt: Float) -> Callable[[Numbers], Read]:
     def apply(n: Numbers) -> Read:
         every = np.ones(len(n), dtype=np.bool_)
-        return Read(local - n.x * DEG, n.y * DEG, n.half_x * DEG, n.half_y * DEG, every & _lat(n.y * DEG))
+        sigma = np.hypot(n.half_x * DEG, doubt)
+        return Read(local - n.x * DEG, n.y * DEG, sigma, n.half_y * DEG, every & _lat(n.y * DEG))
 
     return apply

@@ -11,6 +11,7 @@ from colure.audit.hypotheses import Hypothesis, Predictions, plan, predict
 from colure.audit.numbers import Numbers
 from colure.audit.reference import Question, Stars
 from colure.audit.sights import SIGHTS
+from colure.errors import MomentError, SpanError
 
 WITHIN = 3.0
 """σ within which a prediction belongs to the class."""
@@ -177,12 +178,18 @@ def _another_date(hypotheses: list[Hypothesis], numbers: Numbers, question: Ques
     reference = question.reference
     if isinstance(reference, Stars) and len(reference.place) > 1:
         return "", 0.0
-    later = question.at(first.shifted(days))
-    same = _same(hypotheses, later)
+    try:
+        later = question.at(first.shifted(days))
+        same = _same(hypotheses, later)
+    except (SpanError, MomentError):
+        return "", 0.0
     if len(same) < len(hypotheses):
         return "", 0.0
     many = Numbers.of(np.zeros(SAMPLES), 0.0, 1.0, 1.0)
-    gap = _least(_apart(predict(many, later, same)) / ARCSEC)
+    try:
+        gap = _least(_apart(predict(many, later, same)) / ARCSEC)
+    except SpanError:
+        return "", 0.0
     at = int(np.argmax(gap))
     when = str(later.moment[at].text()) if later.moment is not None else ""
     return f"the same rounding on {when[:10]} ({gap[at]:.3g}″ apart)", float(gap[at])
