@@ -383,7 +383,10 @@ def projector(
     if projection.unrolled:
         # The centre's latitude is a shift along the meridian, kept within what the projection can reach.
         up = float(np.clip(centre @ pole, -np.sin(projection.edge), np.sin(projection.edge)))
+        top_of_map = np.array([0.0, np.sin(projection.edge), np.cos(projection.edge)])
         at = np.array([0.0, up, np.sqrt(1.0 - up * up)])
-        x, y = projection.forward(at[:, None])
-        middle = middle - plane @ np.array([x[0], y[0]])
+        x, y = projection.forward(np.stack([at, top_of_map], axis=1))
+        # A map that is no higher than its page stands in the middle: a shift would only cut one edge off.
+        room = max(float(y[1]) - 0.5 * (bottom - top) / scale, 0.0)
+        middle = middle - plane @ np.array([x[0], np.clip(y[0], -room, room)])
     return Projector(projection, camera, plane, middle, scale, centre)

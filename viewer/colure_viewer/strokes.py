@@ -119,11 +119,32 @@ SHAPES: dict[str, F64] = {
     "point": np.concatenate([_ring(16, 0.45), _rays(0.45, 1.0)]),
 }
 """Each map symbol as strokes x1 y1 x2 y2 within the unit square, first axis along +x."""
+ROUND = ("open_cluster", "galaxy", "ring")
+LARGE, ARC = 24.0, 4.0
+"""Half an axis in pixels from which on a ring is drawn in strokes of ARC pixels instead of a fixed number."""
 
 
 def symbols(kind: str, xy: F64, size: F64, angle: F64) -> F64:
     """Return the strokes (K, 4) of one kind of symbol at `xy` (N, 2), with half-axes (N, 2), turned clockwise."""
-    shape = SHAPES.get(kind, SHAPES["ring"])
+    large = size.max(axis=1, initial=0.0) > LARGE
+    if kind in ROUND and large.any():
+        # A ring of a field of its own needs more strokes to be round, and dots as fine as on a small one.
+        rings = [
+            _placed(
+                _large_ring(kind, float(size[row].max())), xy[row : row + 1], size[row : row + 1], angle[row : row + 1]
+            )
+            for row in np.flatnonzero(large)
+        ]
+        return np.concatenate([symbols(kind, xy[~large], size[~large], angle[~large]), *rings])
+    return _placed(SHAPES.get(kind, SHAPES["ring"]), xy, size, angle)
+
+
+def _large_ring(kind: str, half_axis: float) -> F64:
+    count = 2 * int(np.ceil(np.pi * half_axis / ARC))
+    return _ring(count)[::2] if kind == "open_cluster" else _ring(count)
+
+
+def _placed(shape: F64, xy: F64, size: F64, angle: F64) -> F64:
     c, s = np.cos(angle)[:, None], np.sin(angle)[:, None]
     out = np.empty((len(xy), len(shape), 4))
     for column in (0, 2):

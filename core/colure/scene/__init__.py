@@ -28,6 +28,7 @@ _ORDER = (
     "stars",
     "overlays",
     "points",
+    "outline",
     "bodies",
     "labels",
     "rim",
@@ -46,6 +47,7 @@ def build(sky: Sky, size: tuple[int, int], ratio: float = 1.0, previous: Scene |
     ctx = context(sky, size, kept)
     has = sky.layers
     ctx.layer("sky", ctx.page_key, lambda: (zones.sky_disc(ctx), None))
+    ctx.layer("outline", ctx.page_key, lambda: (zones.outline(ctx), None))
     if "milky way" in has:
         ctx.layer("milky way", (sky.key("milky way"), ctx.view_key), lambda: (zones.milky_way(ctx), None))
     lined: list[tuple[str, object, Callable[[], Strokes]]] = [

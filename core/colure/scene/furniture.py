@@ -151,7 +151,7 @@ def _legend(faintest_shown: float, stars: bool, right: float, y_text: float, y_d
     scale = scale_of(faintest_shown)
     limit = f"stars to {faintest_shown:.1f} mag".replace("-", MINUS)
     if stars and y_discs != y_text:
-        limit += f" · area × {scale.area_ratio:.2f} for each"
+        limit += f" · area × {scale.area_ratio:.2f} a magnitude"
     width = width_px(limit, LEGEND_PT, "legend")
     marks: list[Mark] = [
         Labels(

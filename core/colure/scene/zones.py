@@ -29,9 +29,17 @@ def sky_disc(ctx: Context) -> Layer:
         marks.append(Areas("sky", box, np.array([0, 4], np.int32)))
     else:
         marks.append(Areas("sky", ring, np.array([0, len(ring)], np.int32)))
-        closed = np.concatenate([ring, ring[:1]])
-        marks.append(Lines("rim", closed, np.array([0, len(closed)], np.int32), GRID))
     return Layer("sky", tuple(marks), ctx.page_key)
+
+
+def outline(ctx: Context) -> Layer:
+    """Return the layer of the sky's outline where that shows on the page: over everything that ends there."""
+    marks: tuple[Mark, ...] = ()
+    ring = rim_ring(ctx.window)
+    if ring is not None:
+        closed = np.concatenate([ring, ring[:1]])
+        marks = (Lines("rim", closed, np.array([0, len(closed)], np.int32), GRID),)
+    return Layer("outline", marks, ctx.page_key)
 
 
 def milky_way(ctx: Context) -> Layer:
