@@ -280,7 +280,23 @@ def axes(key: str, p: Any, when: When) -> tuple[Any, Any]:
     if key == "galactic":
         lon, lat = erfa.icrs2g(*erfa.c2s(p))
         return lon % (2.0 * np.pi), lat
-    raise KeyError(key)
+    return _astropy_axes(key, p)
+
+
+def _astropy_axes(key: str, p: Any) -> tuple[Any, Any]:
+    """Return longitude and latitude on axes that ERFA has no function for, by astropy."""
+    from astropy import units
+    from astropy.coordinates import FK4, FK4NoETerms, SkyCoord, Supergalactic
+
+    lon, lat = _lonlat(p)
+    frame: Any = {
+        "supergalactic": lambda: Supergalactic(),
+        "equator/fk4-no-e/B1950": lambda: FK4NoETerms(equinox="B1950", obstime="B1950"),
+        "equator/fk4/B1900": lambda: FK4(equinox="B1900", obstime="B1900"),
+        "equator/fk4/B1875": lambda: FK4(equinox="B1875", obstime="B1875"),
+    }[key]()
+    found = SkyCoord(lon * units.rad, lat * units.rad, frame="icrs").transform_to(frame).spherical
+    return found.lon.rad % (2.0 * np.pi), found.lat.rad
 
 
 def local_sidereal(when: When, kind: str) -> Any:

@@ -139,6 +139,11 @@ STARS: list[tuple[str, str, str, str]] = [
     ("read", "wrong-way-date", "astrometric", "ecliptic/mean/J2000"),
     ("read", "icrs", "astrometric", "ecliptic/mean/J2000"),  # C10: equatorial numbers said to be ecliptic
     ("read", "galactic", "astrometric", "icrs"),
+    ("read", "supergalactic", "astrometric", "icrs"),
+    ("read", "equator/fk4-no-e/B1950", "astrometric", "icrs"),
+    ("read", "equator/fk4/B1900", "astrometric", "icrs"),
+    ("read", "equator/fk4/B1875", "astrometric", "icrs"),
+    ("read", "equator/true/date", "no-parallax-apparent", "equator/true/date"),
     ("read", "equator/true/date", "no-deflection", "equator/true/date"),
     ("read", "equator/true/date", "no-diurnal", "equator/true/date"),
     ("read", "icrs", "no-parallax", "icrs"),
@@ -162,11 +167,11 @@ def star_case(rng: Any, reading: str, axes: str, sight: str, claim: str) -> tupl
     span = {"sign-lost": (-0.95, -0.05), "minutes-added": (-80.0, -1.2)}.get(reading, (-85.0, 85.0))
     rows = truth.star_rows(rng, count, span)
     when = truth.When.of(at, site)
-    skip = {"no-deflection": "deflection", "no-diurnal": "diurnal", "no-parallax": "parallax"}.get(sight, "")
+    skip = {"no-deflection": "deflection", "no-diurnal": "diurnal"}.get(sight, "")
     if sight.startswith("epoch-"):
         seen = truth.star(rows, when, epoch=float(sight.removeprefix("epoch-")))
-    elif sight == "no-parallax":
-        seen = truth.star(rows, when, "astrometric", skip=skip)
+    elif sight.startswith("no-parallax"):
+        seen = truth.star(rows, when, "apparent" if sight.endswith("apparent") else "astrometric", skip="parallax")
     else:
         seen = truth.star(rows, when, "astrometric" if sight == "astrometric" else "apparent", skip=skip)
     if sight == "refracted":

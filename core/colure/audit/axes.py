@@ -76,10 +76,6 @@ def _backwards(at: Moment) -> Float:
     return np.swapaxes(_mean(at), -1, -2)
 
 
-def _old_true(at: Moment) -> Float:
-    return frames.rotation("equator/true/date@iau1976", at).matrix
-
-
 def _wrong_obliquity(at: Moment) -> Float:
     return rotation_x(obliquity.mean(at))
 

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from colure.arrays import MAS, TWO_PI, Bool, Float, Int, spherical
 from colure.starfiles import COARSE_MOTION, SLOW, TURN
-from colure.stars import EPOCH, Rows, catalogue
+from colure.stars import EPOCH, catalogue
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,8 +128,3 @@ def _windows(tier: Sorted, lon: Float, lat: Float, radius: float) -> tuple[Int, 
         np.concatenate([base + low, base[left] + (a[left] + turn).astype(np.int64), base[right]]),
         np.concatenate([base + high, base[left] + (1 << 32) - 1, base[right] + (b[right] - turn).astype(np.int64)]),
     )
-
-
-def rows_of(matches: Matches) -> Rows:
-    """Return the matched stars, in the order of the positions that have one."""
-    return catalogue().rows(matches.rows[matches.found])

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from colure import precession
-from colure.arrays import Float, dot, norm, rotate, unit
+from colure.arrays import Float, dot, norm, unit
 from colure.audit.reference import Question, Stars
 from colure.ephemeris import default
 from colure.reduction import C_AU_DAY, Observer, observer_state, reduce_bodies
@@ -31,7 +31,7 @@ FAR = 1e9
 
 @dataclass(frozen=True, slots=True)
 class Sight:
-    """One way of reducing: key, code in the list of hypotheses, words, and whether the frames are all tried with it."""
+    """One way of reducing: key, code in the list of hypotheses, and words."""
 
     key: str
     code: str
@@ -115,7 +115,7 @@ class Sky:
         self._held: dict[str, Float] = {}
 
     def __getitem__(self, key: str) -> Float:
-        """Return the unit vectors (n, 3) of a sight, or (1, n, 3)-free: n is the number of moments or of stars."""
+        """Return the unit vectors (n, 3) of a sight; n is the number of moments, or of stars."""
         if key not in self._held:
             make = _body if self.question.is_body else _star
             self._held[key] = make(self.question, key)
@@ -250,8 +250,3 @@ def _star(question: Question, key: str) -> Float:
         assert state.zenith is not None
         seen = refracted(seen, state.zenith.T, observer.atmosphere)
     return unit(seen.T)
-
-
-def turned(vectors: Float, matrix: Float) -> Float:
-    """Return vectors (n, 3) turned by matrices (3, 3) or (n, 3, 3)."""
-    return vectors @ matrix.T if matrix.ndim == 2 else rotate(matrix, vectors)
