@@ -332,6 +332,24 @@ def test_sizes_of_tables_in_a_header_are_bounded(tmp_path: Path, key: str, value
         opening.open_file(path, store=Store())
 
 
+@pytest.mark.parametrize(
+    ("old", "new", "key"),
+    [
+        # The first made the projection library overwrite its memory and abort the program.
+        ("AMDY20  =  0.0000000000000E+00", "AMDY20  =  0.0000000000000s+00", "AMDY20"),
+        ("CRVAL1  =  2.1748416404790E+02", "CRVAL1  =  2.1748416404790s+02", "CRVAL1"),
+        ("CD1_1   = -4.7315219425681E-04", "CD1_1   =                  NaN", "CD1_1"),
+    ],
+)
+def test_a_card_that_should_be_a_number_is_named(tmp_path: Path, old: str, new: str, key: str) -> None:
+    text = gzip.decompress((DATA / "wcs/tests/data/dss.14.29.56-62.41.05.fits.gz").read_bytes())
+    assert old.encode() in text
+    path = tmp_path / "plate.fits"
+    path.write_bytes(text.replace(old.encode(), new.encode()))
+    with pytest.raises(OverlayError, match=f"{key} is '.*'; expected a number"):
+        opening.open_file(path, store=Store())
+
+
 def test_all_chips_of_a_camera_can_be_opened() -> None:
     path = DATA / "io/fits/tests/data/test0.fits"
     places = images.places(path)

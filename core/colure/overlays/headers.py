@@ -165,7 +165,7 @@ def _begins_well(data: bytes) -> bool:
 
 
 def parse(text: str) -> dict[str, Any]:
-    """Return keyword → value of the cards that can be read; the first of each keyword counts."""
+    """Return keyword → value of the cards; the first of each keyword counts. What is no value comes as its text."""
     from astropy.io import fits
 
     cards: dict[str, Any] = {}
@@ -176,11 +176,12 @@ def parse(text: str) -> dict[str, Any]:
             break
         if not key or image[8:9] != "=" or key in cards:
             continue
+        image = "".join(c if " " <= c <= "~" else "?" for c in image)
+        value: Any
         try:
-            card = fits.Card.fromstring("".join(c if " " <= c <= "~" else "?" for c in image))
-            value = card.value
-        except Exception:
-            continue
+            value = fits.Card.fromstring(image).value
+        except Exception:  # whatever a card holds that is no value, it spoils no other
+            value = image[10:].partition("/")[0].strip()
         if isinstance(value, str | bool | int | float):
             cards[key] = value.strip() if isinstance(value, str) else value
     return cards

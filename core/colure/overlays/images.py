@@ -15,6 +15,7 @@ from colure.arrays import unit as normed
 from colure.overlays.fitsrules import PAIRS, Ruling, decide
 from colure.overlays.headers import MOST_UNPACKED, Headers, HeaderText, read_headers
 from colure.overlays.model import OverlayError
+from colure.overlays.projectioncards import projection_cards
 from colure.wording import one_line
 
 EDGE_POINTS = 33
@@ -175,7 +176,7 @@ def _wcs(path: Path | str, found: ImageHeader) -> tuple[Any, tuple[str, ...]]:
             raise OverlayError(f"image '{path}': {key} is {one_line(str(value), 20)}; expected 0 to {most}")
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # what is odd about the frame is said in our own words
-        header = fits.Header.fromstring("".join(c if " " <= c <= "~" else " " for c in found.unit.text))
+        header = fits.Header.fromstring(projection_cards(found.unit, f"image '{path}'"))
         tabled = any(key.startswith(("CPDIS", "CQDIS", "D2IMDIS", "DP1", "D2IMEXT")) for key in cards)
         tabled |= any("-TAB" in str(value) for key, value in cards.items() if key.startswith("CTYPE"))
         if tabled:
