@@ -16,7 +16,7 @@ from colure.errors import BodyError, ColureError, FrameError, SessionError, near
 from colure.frames import Frame
 from colure.moment import Moment
 from colure.overlays.model import Overlay
-from colure.sites import Site
+from colure.sites import DEMO, Site
 
 FORMAT = 1
 PLACES = ("geometric", "astrometric", "apparent", "observed")
@@ -256,7 +256,7 @@ class Session:
         """Return the session that an empty start opens: the evening belt at an invented site."""
         return cls(
             moment=Moment.parse("2026-12-01 21:36:00 UTC"),
-            site=demo_site(),
+            site=DEMO,
             view=View(centre=Centre("ecliptic/mean/date", 75.0, 6.0)),
             circles=(
                 Circle("equator/mean/date", colour="#0072B2"),
@@ -267,8 +267,3 @@ class Session:
                 Circle("invariable", colour="#B08A00", visible=False, graduated=False),
             ),
         )
-
-
-def demo_site() -> Site:
-    """Return Quern Hill, an invented site: no observatory is near."""
-    return Site("Quern Hill", 129.40, -25.90, 710.0)

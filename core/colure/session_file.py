@@ -15,7 +15,6 @@ A key that this version does not know is kept, written back by `dumps`, and name
 
 import math
 import os
-import tempfile
 import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import fields
@@ -26,6 +25,7 @@ from typing import Any, TypeVar
 import tomli_w
 
 from colure.errors import ColureError, SessionError
+from colure.files import atomic_write, read_bounded
 from colure.moment import Moment
 from colure.overlays.model import Overlay
 from colure.session import FORMAT, Belt, Centre, Circle, Layers, Session, View
@@ -130,15 +130,7 @@ def read(path: str | os.PathLike[str]) -> tuple[Session, tuple[str, ...]]:
     """Return the session in a file and the names of unknown keys; raise SessionError that names the file."""
     where = Path(path)
     try:
-        with where.open("rb") as handle:
-            data = handle.read(LARGEST + 1)
-    except (OSError, ValueError) as fault:
-        reason = fault.strerror if isinstance(fault, OSError) and fault.strerror else str(fault)
-        raise SessionError(f"session '{where}': cannot be read: {reason}") from fault
-    if len(data) > LARGEST:
-        raise SessionError(f"session '{where}': larger than {LARGEST} bytes, so no session")
-    try:
-        return loads(data.decode("utf-8"))
+        return loads(read_bounded(where, LARGEST).decode("utf-8"))
     except UnicodeDecodeError as fault:
         raise SessionError(f"session '{where}': not UTF-8 text (byte {fault.start})") from fault
     except ColureError as fault:
@@ -147,20 +139,7 @@ def read(path: str | os.PathLike[str]) -> tuple[Session, tuple[str, ...]]:
 
 def write(session: Session, path: str | os.PathLike[str]) -> None:
     """Write a session to a temporary neighbour and rename it, so that an interrupted save leaves the old file whole."""
-    where = Path(path)
-    text = dumps(session)
-    temporary = ""
-    try:
-        with tempfile.NamedTemporaryFile(
-            "w", encoding="utf-8", dir=where.parent, prefix=f".{where.name}.", suffix=".part", delete=False
-        ) as handle:
-            temporary = handle.name
-            handle.write(text)
-        Path(temporary).replace(where)
-    except OSError as fault:
-        if temporary:
-            Path(temporary).unlink(missing_ok=True)
-        raise SessionError(f"session '{where}': cannot be written: {fault.strerror}") from fault
+    atomic_write(Path(path), dumps(session))
 
 
 class _Reader:

@@ -7,14 +7,14 @@ import pytest
 from colure import everyframe
 from colure.arrays import DEG, cartesian
 from colure.moment import Moment
-from colure.session import demo_site
+from colure.sites import DEMO
 
 MOMENT = Moment.parse("2026-12-01 21:36:00 UTC")
 DIRECTION = cartesian(61.0 * DEG, 20.6 * DEG)
 
 
 def rows(**more):
-    return {row.frame: row for row in everyframe.table(DIRECTION, MOMENT, site=demo_site(), **more)}
+    return {row.frame: row for row in everyframe.table(DIRECTION, MOMENT, site=DEMO, **more)}
 
 
 def test_rows_agree_with_erfa():
@@ -36,7 +36,7 @@ def test_rows_agree_with_erfa():
 
 
 def test_every_listed_frame_has_an_answer_and_the_users_own_come_after():
-    found = everyframe.table(DIRECTION, MOMENT, site=demo_site(), also=("ecliptic/mean/-1000", "icrs"))
+    found = everyframe.table(DIRECTION, MOMENT, site=DEMO, also=("ecliptic/mean/-1000", "icrs"))
     names = [row.frame for row in found]
     assert names == [*everyframe.FRAMES, "ecliptic/mean/-1000"]
     assert not any(row.fault for row in found)
@@ -69,7 +69,7 @@ def test_near_a_pole_a_longitude_is_worth_less():
 
 
 def test_text_for_the_clipboard():
-    text = everyframe.as_text(everyframe.table(DIRECTION, MOMENT, site=demo_site()), "Heading")
+    text = everyframe.as_text(everyframe.table(DIRECTION, MOMENT, site=DEMO), "Heading")
     lines = text.split("\n")
     assert lines[0] == "Heading"
     assert lines[1].startswith("icrs\tα 04h04m00")

@@ -9,6 +9,7 @@ from hypothesis import strategies as st
 
 from colure import session_file
 from colure.errors import BodyError, ColureError, SessionError
+from colure.files import FileError
 from colure.moment import Moment
 from colure.session import BODIES, PROJECTIONS, Belt, Centre, Circle, Layers, Session, View
 from colure.sites import Site
@@ -169,7 +170,7 @@ def test_a_save_that_fails_leaves_the_old_file_whole(tmp_path):
     path = tmp_path / "mine.toml"
     session_file.write(Session.demo(), path)
     old = path.read_text(encoding="utf-8")
-    with pytest.raises(SessionError, match="cannot be written"):
+    with pytest.raises(FileError, match="cannot be written"):
         session_file.write(Session.demo(), tmp_path / "no such folder" / "mine.toml")
     assert path.read_text(encoding="utf-8") == old
     assert [p.name for p in tmp_path.iterdir()] == ["mine.toml"]
