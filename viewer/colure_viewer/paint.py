@@ -3,10 +3,11 @@
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from functools import cache
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF, QRect
+from PySide6.QtCore import QPointF, QRect, Qt
 from PySide6.QtGui import QBrush, QColor, QImage, QPaintEngine, QPainter, QPen
 
 from colure import marks
@@ -15,14 +16,15 @@ from colure_viewer import strokes
 from colure_viewer.atlas import StarAtlas, TextAtlas, measured
 from colure_viewer.bodyshapes import draw_bodies
 from colure_viewer.fonts import CAP_MIDDLE, PX_PER_PT, family
-from colure_viewer.primitives import Batch, fragments, lines, path
-from colure_viewer.themes import Theme
+from colure_viewer.primitives import Batch, fragments, lines, path, polygon
+from colure_viewer.themes import Theme, mix
 
 F64 = NDArray[np.float64]
 
 MAX_STAR_ATLASES = 12
 FEW_STARS = 1500
 FEW_POINTS = 200
+FEW_LINES = 12
 BAND_BYTES = 262144
 """Bytes of a picture that stay in the second-level cache of common processors, with room beside them."""
 LARGE_STAR = 4
@@ -91,6 +93,8 @@ class _Raster:
         self.scene, self.theme, self.painter, self.kit = scene, theme, painter, kit
         self.ratio = scene.ratio
         self.memory: NDArray[np.uint64] | None = None
+        self.ground: QColor | None = None
+        """The colour of the sky while nothing else is painted on it."""
         self.pens: dict[str, QPen] = {}
         self.prepared: dict[int, tuple[NDArray[np.intp] | None, NDArray[np.intp] | None, NDArray[np.bool_]]] = {}
         self.methods: dict[type, Callable[..., None]] = {
@@ -152,12 +156,23 @@ class _Raster:
         # Smooth edges cost ten times as much: these are hidden under a line, or too faint to show their steps.
         plain = mark.role.startswith(PLAIN_AREAS)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing, not plain)
+        if mark.role == "sky":
+            self.ground = colour
+        elif self.ground is not None and mark.role == "belt":
+            # Over the bare sky the mixture is one colour, and an opaque fill costs a third of a blended one.
+            colour = QColor(mix(self.ground.name(), colour.name(), mark.alpha))
+        else:
+            self.ground = None
+        painter.setPen(Qt.PenStyle.NoPen)
+        painter.setBrush(colour)
         points = mark.points * np.float32(self.ratio)
-        if mark.even_odd and len(mark.starts) > 2:
-            painter.fillPath(path(points, mark.starts), colour)
+        if mark.even_odd and len(mark.starts) > FEW_LINES:
+            painter.drawPath(path(points, mark.starts))
+        elif mark.even_odd:
+            painter.drawPolygon(polygon(strokes.bridged(points, mark.starts)))
         else:
             for a, b in zip(mark.starts[:-1].tolist(), mark.starts[1:].tolist(), strict=True):
-                painter.fillPath(path(points[a:b], np.array([0, b - a], dtype=np.int32)), colour)
+                painter.drawPolygon(polygon(points[a:b]))
 
     def lines(self, mark: marks.Lines) -> None:
         """Draw polylines as parallels one pixel wide, or as short strokes where they are dashed."""
@@ -181,7 +196,14 @@ class _Raster:
             return
         places = strokes.offsets(mark.weight, self.ratio)
         normal = strokes.normals(points, mark.starts) if len(places) > 1 else None
-        if normal is None:
+        if len(mark.starts) <= FEW_LINES:
+            # To fill a polygon costs a tenth of making a path; but each is a call of its own.
+            ends = mark.starts.tolist()
+            for place in places:
+                moved = points if normal is None else points + place * normal
+                for a, b in pairwise(ends):
+                    self.painter.drawPolyline(polygon(moved[a:b]))
+        elif normal is None:
             self.painter.drawPath(path(points, mark.starts))
         else:
             # All parallels are one path: to make a path costs more than to draw it.

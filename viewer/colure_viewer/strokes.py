@@ -1,5 +1,7 @@
 """Turns polylines and symbols into what a fast painter can draw: parallels for weight, dashes, straight strokes."""
 
+from itertools import pairwise
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -56,6 +58,17 @@ def is_level(points: F64, starts: NDArray[np.int32]) -> bool:
     return bool(along.all())
 
 
+def bridged(points: NDArray[np.floating], starts: NDArray[np.int32]) -> NDArray[np.floating]:
+    """Return rings laid out as in colure.marks.Areas as one ring (N, 2) that fills alike under the odd-even rule.
+
+    Each ring is closed and joined to the first point of all, and the joins are run over once more on the way back.
+    """
+    if len(starts) <= 2:
+        return points
+    parts = [part for a, b in pairwise(starts.tolist()) for part in (points[a:b], points[a : a + 1])]
+    return np.concatenate([*parts, points[starts[-3:0:-1]]])
+
+
 def dashes(points: F64, starts: NDArray[np.int32], stroke: float, gap: float) -> F64:
     """Return straight strokes (K, 4) of length `stroke` every `stroke + gap` along polylines, measured along each."""
     if len(points) < 2:
@@ -75,14 +88,15 @@ def dashes(points: F64, starts: NDArray[np.int32], stroke: float, gap: float) ->
     order = np.arange(counts.sum()) - np.repeat(np.cumsum(counts) - counts, counts)
     start = begin[which] + order * period
     stop = np.minimum(start + stroke, end[which])
-    out = np.empty((len(start), 4))
     # Where two polylines meet in `travelled` the position is ambiguous: look just inside each stroke's own line.
     grow = 1e-9 * (1.0 + travelled[-1])
     increasing = travelled + np.arange(len(travelled)) * grow / max(len(travelled), 1)
-    for column in (0, 1):
-        out[:, column] = np.interp(start + grow, increasing, points[:, column])
-        out[:, 2 + column] = np.interp(np.maximum(stop - grow, start + grow), increasing, points[:, column])
-    return out
+    ends = np.empty((len(start), 2))
+    ends[:, 0] = start + grow
+    ends[:, 1] = np.maximum(stop - grow, ends[:, 0])
+    # A point as one complex number is found by one search for both of its coordinates.
+    plane = np.ascontiguousarray(points).view(np.complex128)[:, 0]
+    return np.interp(ends.ravel(), increasing, plane).view(np.float64).reshape(-1, 4)
 
 
 def _ring(count: int, radius: float = 1.0) -> F64:
