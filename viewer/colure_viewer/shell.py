@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from colure_viewer.hand import Hand
     from colure_viewer.panels.sides import LeftSide, RightSide, TopBar
 
-LEFT, RIGHT, TOP, FOOT = 270, 318, 68, 26
+LEFT, RIGHT, TOP, FOOT = 270, 350, 68, 26
 """Room kept for the panels before they are there, in logical pixels."""
 NOTICE_MS = 8000
 

@@ -46,6 +46,7 @@ class Window(Acting):
         self.hand = Hand(self.desk, self.chart)
         self.hand.hovered.connect(self._hovered)
         self.hand.measured.connect(self.right.measure.show_text)
+        self.right.ledger.attach(self.chart)
         self.chart.use_jobs(self.jobs)
         self.chart.setFocus()
         self.progress = Progress(self.jobs)

@@ -20,6 +20,7 @@ from colure_viewer.jobs import Jobs
 from colure_viewer.panels.belt import BeltPanel
 from colure_viewer.panels.circles import CirclesPanel
 from colure_viewer.panels.direction import DirectionPanel, MeasurePanel
+from colure_viewer.panels.ledger import LedgerPanel
 from colure_viewer.panels.momentbar import MomentBar, SiteBar
 from colure_viewer.panels.search import SearchBar
 from colure_viewer.panels.show import BodiesPanel, LayersPanel
@@ -98,12 +99,14 @@ class LeftSide(_Column):
 
 
 class RightSide(_Column):
-    """The selected direction in every frame, and the measurement."""
+    """The ledger of the selected direction, the direction in every frame, and the measurement."""
 
     def __init__(self, desk: Desk, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self.ledger = LedgerPanel(desk)
         self.direction = DirectionPanel(desk)
         self.measure = MeasurePanel(desk)
+        self.add("", self.ledger)
         self.add("", self.direction)
         self.add("Measure", self.measure)
         self.close_up()
