@@ -23,6 +23,7 @@ from colure.arrays import ARCSEC, DEG, Float, cartesian, separation, spherical
 from colure.ephemeris import KM_PER_AU
 from colure.moment import Moment
 from colure.reduction import C_AU_DAY, Observer, reduce_bodies, space_motion, space_velocity
+from colure.reduction.steps import GM_SUN
 from colure.sites import Site
 
 SECOND = 15.0 * ARCSEC
@@ -334,7 +335,12 @@ def days(row: Row) -> Any:
     return (ends[1][0] - ends[0][0]) + (ends[1][1] - ends[0][1])
 
 
+def _gaussian_constant(_: Row) -> float:
+    return float(np.sqrt(GM_SUN))
+
+
 FUNCTIONS: dict[str, Callable[[Row], Any]] = {
+    "gaussian_constant": _gaussian_constant,
     **{
         function.__name__: function
         for function in (
