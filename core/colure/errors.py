@@ -15,7 +15,6 @@ ColureError
 └── ResourceError       a shipped data file that is missing or damaged
 """
 
-import difflib
 from collections.abc import Iterable
 
 
@@ -84,6 +83,8 @@ def near_names(wrong: str, known: Iterable[str], most: int = 3) -> str:
 
     Comparison ignores case; the spelling returned is that of `known`.
     """
+    import difflib  # late: no use before the first mistake
+
     spelling = {name.casefold(): name for name in known}
     found = difflib.get_close_matches(wrong.casefold(), spelling, n=most, cutoff=0.6)
     if not found:

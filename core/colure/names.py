@@ -7,7 +7,7 @@ letters, few Flamsteed numbers (counts in the resource's PROVENANCE.toml). Catal
 import re
 from dataclasses import dataclass
 from functools import cache
-from typing import Literal
+from typing import Literal, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,8 +16,6 @@ from colure import designations, resources, stars
 from colure.errors import ResourceError, TargetError, near_names
 
 Kind = Literal["proper", "bayer", "flamsteed"]
-_HIP_END = 200_000
-"""The table's numbers are Hipparcos numbers below this and Gaia numbers above it."""
 _HIP = re.compile(r"hip\s*(\d{1,12})", re.IGNORECASE)
 _TYCHO = re.compile(r"tyc\s*(\d{1,5})[\s-]+(\d{1,5})[\s-]+(\d{1,2})", re.IGNORECASE)
 _GAIA = re.compile(r"gaia(?:\s*dr3)?\s*(\d{1,30})", re.IGNORECASE)
@@ -48,8 +46,7 @@ class Names:
         return self.every[0] if self.every else f"star {self.row}"
 
 
-@dataclass(frozen=True, slots=True)
-class _Table:
+class _Table(NamedTuple):
     rows: NDArray[np.int64]
     proper: tuple[str, ...]
     bayer: tuple[str, ...]
@@ -61,29 +58,17 @@ class _Table:
 @cache
 def _table() -> _Table:
     """Read the table, the brightest star first, so that the first of a name is the one that is meant."""
-    catalogue = stars.catalogue()
     try:
         lines = resources.path("names/names.tsv").read_text(encoding="utf-8").splitlines()[1:]
-        fields = [line.split("\t") for line in lines]
-        numbers = np.array([int(f[0]) for f in fields], dtype=np.int64)
-        columns = list(zip(*[(f[1], f[2], f[3], f[4]) for f in fields], strict=True))
-    except (ValueError, IndexError) as fault:
+        numbers, proper, bayer, flamsteed, also = zip(*(line.split("\t") for line in lines), strict=True)
+        rows = np.array(numbers, dtype=np.int64)
+    except ValueError as fault:
         raise ResourceError(f"data file 'names/names.tsv': {fault}; run 'colure selfcheck'") from fault
-    hip_rows, hip_numbers = catalogue.hip
-    row_of = np.full(_HIP_END + 1, -1, dtype=np.int64)
-    row_of[hip_numbers] = hip_rows
-    rows = row_of[np.clip(numbers, 0, _HIP_END)]
-    for k in np.flatnonzero(numbers > _HIP_END).tolist():
-        row = catalogue.by_gaia(int(numbers[k]))
-        rows[k] = -1 if row is None else row
-    if (rows < 0).any():
-        raise ResourceError(f"data file 'names/names.tsv': star {numbers[rows < 0][0]} is not in the star catalogue")
-    bright = np.argsort(catalogue.rows(rows).vmag, kind="stable").tolist()
-    proper, bayer, flamsteed, also = ([column[k] for k in bright] for column in columns)
+    size = len(stars.catalogue())
+    if rows.min() < 0 or rows.max() >= size:
+        raise ResourceError(f"data file 'names/names.tsv': row {rows.max()} is not in the star catalogue of {size}")
     more = tuple(tuple(text.split(";")) if text else () for text in also)
-    rows = rows[bright]
-    at = {int(row): k for k, row in enumerate(rows)}
-    return _Table(rows, tuple(proper), tuple(bayer), tuple(flamsteed), more, at)
+    return _Table(rows, proper, bayer, flamsteed, more, {row: k for k, row in enumerate(rows.tolist())})
 
 
 @cache

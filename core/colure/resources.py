@@ -1,7 +1,5 @@
 """Find, map and verify the data files that are shipped in `colure_resources`."""
 
-import hashlib
-import tomllib
 from dataclasses import dataclass
 from functools import cache
 from importlib.util import find_spec
@@ -43,6 +41,8 @@ def load_array(relative: str, *, mmap: bool = True) -> NDArray[Any]:
 
 def read_toml(relative: str) -> dict[str, Any]:
     """Return a shipped TOML file as a dictionary."""
+    import tomllib  # late: most of what is shipped is arrays, and the first chart reads no TOML
+
     try:
         return tomllib.loads(path(relative).read_text(encoding="utf-8"))
     except (tomllib.TOMLDecodeError, UnicodeDecodeError) as fault:
@@ -62,6 +62,8 @@ class Check:
 
 def verify() -> tuple[Check, ...]:
     """Compare every shipped data file with the sha256 in its PROVENANCE.toml; files without an entry are faults."""
+    import hashlib  # late: it loads a cryptographic library of 3 MiB
+
     base = root()
     checks: list[Check] = []
     listed: set[Path] = set()

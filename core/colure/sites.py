@@ -2,7 +2,6 @@
 
 import os
 import re
-import tomllib
 from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
@@ -276,6 +275,8 @@ def _read_sites(where: Path, changed: int, size: int) -> tuple[Site, ...]:
     del changed
     if size > FILE_LIMIT:
         raise SiteError(f"file of sites '{where}': {size} bytes; expected at most {FILE_LIMIT}")
+    import tomllib  # late: most sessions read no file of sites
+
     try:
         data = tomllib.loads(where.read_text(encoding="utf-8"))
     except (tomllib.TOMLDecodeError, UnicodeDecodeError, RecursionError) as fault:

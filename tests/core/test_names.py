@@ -142,7 +142,7 @@ def test_a_damaged_table_is_one_clear_line(tmp_path, monkeypatch: pytest.MonkeyP
     constellations()
     broken = tmp_path / "names.tsv"
     monkeypatch.setattr(resources, "path", lambda _: broken)
-    for text in ("number\tproper\n12\tonly two", "number\nx\t\t\t\t", "number\n13\tA\t\t\t\n999998\tB\t\t\t\n"):
+    for text in ("row\tproper\n12\tonly two", "row\nx\t\t\t\t", "row\n13\tA\t\t\t\n99999998\tB\t\t\t\n"):
         broken.write_text(text)
         names._table.cache_clear()
         with pytest.raises(ResourceError, match=r"names/names\.tsv"):

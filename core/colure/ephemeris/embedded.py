@@ -9,7 +9,6 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from colure.arrays import ARCSEC, Float, Int, rotation_x
-from colure.ephemeris import uncertainty
 from colure.ephemeris.protocol import BODIES, Days, check_bodies, check_each, check_span
 from colure.ephemeris.tables import Table, basis, combine, index, slopes, tables
 
@@ -76,6 +75,8 @@ class Embedded:
         `distance` is the geocentric distance in au, a scalar or (bodies, *shape); without it the least that the body
         can have is taken. Terms: see `colure.ephemeris.uncertainty`.
         """
+        from colure.ephemeris import uncertainty  # late: a chart shows directions only
+
         check_bodies(bodies, BODIES, self.name)
         jd = np.asarray(tdb1, dtype=np.float64) + np.asarray(tdb2, dtype=np.float64)
         return uncertainty.bound(bodies, jd, distance, fitted=True)

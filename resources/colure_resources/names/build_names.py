@@ -1,11 +1,12 @@
-"""Builds names.tsv: IAU proper names, Bayer and Flamsteed designations by Hipparcos number; prints the counts.
+"""Builds names.tsv: IAU proper names, Bayer and Flamsteed designations by catalogue row; prints the counts.
 
     pip install colure[data]
     apt-get download swe-basic-data; dpkg-deb -x swe-basic-data_*.deb FOLDER        (…/libswe/ephe/sefstars.txt)
     python build_names.py --sefstars sefstars.txt
 
-Needs the built star catalogue. From pyephemera (MIT): 410 proper names with Hipparcos number and designation. From
-sefstars.txt (CC0-1.0 in Debian), read as text: designations, places and magnitudes, matched to the catalogue.
+Needs the built star catalogue, and is run again after each build of it: a name stands beside the row of its star. From
+pyephemera (MIT): 410 proper names with Hipparcos number and designation. From sefstars.txt (CC0-1.0 in Debian), read as
+text: designations, places and magnitudes, matched to the catalogue.
 """
 
 import argparse
@@ -21,6 +22,8 @@ from colure_resources import _provenance
 
 HERE = Path(__file__).parent
 DATE = "2026-12-01"
+HIP_END = 200_000
+"""Numbers are Hipparcos numbers below this and Gaia numbers above it."""
 SLIPS = {"etOri": ["05", "24", "28.61672", "-02", "23", "49.7311"]}
 """Places mistyped in sefstars.txt: η Orionis stands there at 05h 42m, where there is no star."""
 
@@ -101,8 +104,13 @@ def main():
         else:
             row[kind] = code
     # Three naked-eye stars have no solution in Hipparcos-2: they go by their Gaia number, which is far greater.
-    lines = ["number\tproper\tbayer\tflamsteed\talso"]
-    lines += [f"{hip}\t{p}\t{b}\t{f}\t{';'.join(also)}" for hip, (p, b, f, also) in sorted(table.items())]
+    row_of = {n: everything.by_hip(n) if n < HIP_END else everything.by_gaia(n) for n in table}
+    # Rows, brightest first: whoever reads the file has no number to look up and no magnitude to fetch.
+    bright = sorted(table, key=lambda n: (everything.rows([row_of[n]]).vmag[0], n))
+    lines = ["row\tproper\tbayer\tflamsteed\talso"]
+    for number in bright:
+        p, b, f, also = table[number]
+        lines.append(f"{row_of[number]}\t{p}\t{b}\t{f}\t{';'.join(also)}")
     (HERE / "names.tsv").write_text("\n".join(lines) + "\n", encoding="utf-8")
     proper, bayer, flamsteed = (sum(bool(row[k]) for row in table.values()) for k in range(3))
     greek = sum(row[1][:1] > "z" for row in table.values())
