@@ -3,19 +3,19 @@
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from functools import cache
-from itertools import pairwise
+from itertools import groupby, pairwise
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF, QRect, Qt
+from PySide6.QtCore import QRect, Qt
 from PySide6.QtGui import QBrush, QColor, QImage, QPaintEngine, QPainter, QPen
 
 from colure import marks
 from colure.marks import Scene
 from colure_viewer import strokes
-from colure_viewer.atlas import StarAtlas, TextAtlas, measured
+from colure_viewer.atlas import StarAtlas
 from colure_viewer.bodyshapes import draw_bodies
-from colure_viewer.fonts import CAP_MIDDLE, PX_PER_PT, family
+from colure_viewer.lettering import Lettering
 from colure_viewer.primitives import Batch, fragments, lines, path, polygon
 from colure_viewer.themes import Theme, mix
 
@@ -38,7 +38,7 @@ class Kit:
     """What a painter keeps between frames: pictures of stars and labels, and blocks of primitives."""
 
     stars: dict[tuple[object, ...], StarAtlas] = field(default_factory=dict)
-    text: TextAtlas = field(default_factory=TextAtlas)
+    texts: Lettering = field(default_factory=Lettering)
     fragments: Batch[QPainter.PixmapFragment] = field(default_factory=fragments)
     lines: Batch = field(default_factory=lines)  # type: ignore[type-arg]
 
@@ -81,11 +81,6 @@ def _memory(device: object) -> NDArray[np.uint64] | None:
     return words.reshape(device.height(), device.bytesPerLine() // 8)
 
 
-def _is_passing(mark: marks.Labels) -> bool:
-    """Return whether texts change from frame to frame, as the date does: not worth a place in the atlas."""
-    return mark.role.startswith("title") and not mark.halo and not mark.angle.any()
-
-
 class _Raster:
     """One frame on a raster device, in device pixels."""
 
@@ -96,7 +91,6 @@ class _Raster:
         self.ground: QColor | None = None
         """The colour of the sky while nothing else is painted on it."""
         self.pens: dict[str, QPen] = {}
-        self.prepared: dict[int, tuple[NDArray[np.intp] | None, NDArray[np.intp] | None, NDArray[np.bool_]]] = {}
         self.methods: dict[type, Callable[..., None]] = {
             marks.Areas: self.areas,
             marks.Lines: self.lines,
@@ -104,14 +98,11 @@ class _Raster:
             marks.Discs: self.discs,
             marks.Symbols: self.symbols,
             marks.Bodies: self.bodies,
-            marks.Labels: self.labels,
         }
 
     def draw(self) -> None:
         """Paint the page, then the layers from back to front."""
         painter, ratio, scene = self.painter, self.ratio, self.scene
-        if self.kit.text.full:
-            self.kit.text.clear()
         painter.save()
         painter.resetTransform()
         own = painter.device().devicePixelRatioF()
@@ -124,11 +115,8 @@ class _Raster:
         left, top, right, bottom = (round(v * ratio) for v in scene.frame)
         frame = QRect(left, top, right - left, bottom - top)
         clipped = False
-        # Every missing label is drawn before any is used, so that the growing picture is handed to Qt once a frame.
-        for layer in scene.layers:
-            for mark in layer.marks:
-                if isinstance(mark, marks.Labels) and not _is_passing(mark):
-                    self.prepare(mark)
+        texts = self.kit.texts
+        texts.prepare(scene.layers, self.theme, ratio)
         for layer in scene.layers:
             if layer.clip != clipped:
                 clipped = layer.clip
@@ -136,8 +124,12 @@ class _Raster:
                     painter.setClipRect(frame)
                 else:
                     painter.setClipping(False)
-            for mark in layer.marks:
-                self.methods[type(mark)](mark)
+            for lettered, run in groupby(layer.marks, lambda mark: isinstance(mark, marks.Labels)):
+                if lettered:
+                    texts.draw(list(run), self.theme, ratio, painter, self.kit.fragments)  # type: ignore[arg-type]
+                    continue
+                for mark in run:
+                    self.methods[type(mark)](mark)
         painter.restore()
 
     def _pen(self, colour: str) -> None:
@@ -302,76 +294,3 @@ class _Raster:
         """Draw Sun, Moon and planets with their phases."""
         self.painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
         draw_bodies(self.painter, mark, self.theme, self.ratio)
-
-    def _tiles(self, mark: marks.Labels, turned: bool) -> NDArray[np.intp]:
-        """Return the tile of each text of a mark, drawing those that are missing."""
-        scale = self.ratio * (2.0 if turned else 1.0)
-        face = (family(mark.role), mark.size_pt * PX_PER_PT, mark.italic, mark.bold)
-        halo = self.theme.colour("sky") if mark.halo else None
-        return self.kit.text.tiles(mark.texts, face, self.theme.text(mark.role, mark.colour), halo, scale)
-
-    def prepare(self, mark: marks.Labels) -> None:
-        """Find or draw the texts of a mark, level or turned as they are needed."""
-        turned = mark.angle != 0.0
-        if not len(mark.index):
-            self.prepared[id(mark)] = (None, None, turned)
-            return
-        some, every = turned.any(), turned.all()
-        self.prepared[id(mark)] = (
-            None if every else self._tiles(mark, False),
-            self._tiles(mark, True) if some else None,
-            turned,
-        )
-
-    def labels(self, mark: marks.Labels) -> None:
-        """Draw texts from the atlas: level ones on whole pixels, turned ones from a finer picture."""
-        if _is_passing(mark):
-            self._write(mark)
-            return
-        level, turned, which = self.prepared[id(mark)]
-        if level is not None:
-            self._texts(mark, level, None if turned is None else ~which, 1.0)
-        if turned is not None:
-            self._texts(mark, turned, None if level is None else which, 2.0)
-
-    def _write(self, mark: marks.Labels) -> None:
-        """Draw texts straight on to the page."""
-        painter, ratio = self.painter, self.ratio
-        em = mark.size_pt * PX_PER_PT
-        face, metrics = measured(family(mark.role), em * ratio, mark.italic, mark.bold)
-        painter.setFont(face)
-        painter.setPen(QColor(self.theme.text(mark.role, mark.colour)))
-        for number, (x, y) in zip(mark.index.tolist(), (mark.xy * ratio).tolist(), strict=True):
-            text = mark.texts[number]
-            left, base = x - metrics.horizontalAdvance(text) / 2.0, y + CAP_MIDDLE * em * ratio
-            painter.drawText(QPointF(round(left), round(base)), text)
-
-    def _texts(
-        self, mark: marks.Labels, tiles: NDArray[np.intp], chosen: NDArray[np.bool_] | None, fineness: float
-    ) -> None:
-        index, xy, angle = mark.index, mark.xy, mark.angle
-        if chosen is not None:
-            index, xy, angle = index[chosen], xy[chosen], angle[chosen]
-        table = self.kit.text.table[tiles[index]]
-        count = len(index)
-        rows = self.kit.fragments.rows(count)
-        rows[:, 2:6] = table[:, :4]
-        rows[:, 6] = rows[:, 7] = 1.0 / fineness
-        rows[:, 9] = 1.0
-        half = table[:, 2:4] / 2.0
-        # From the anchor to the centre of the tile, in device pixels.
-        reach = (half - table[:, 4:6]) / fineness
-        turned = fineness != 1.0
-        if turned:
-            c, s = np.cos(angle), np.sin(angle)
-            rows[:, 0] = xy[:, 0] * self.ratio + reach[:, 0] * c - reach[:, 1] * s
-            rows[:, 1] = xy[:, 1] * self.ratio + reach[:, 0] * s + reach[:, 1] * c
-            rows[:, 8] = np.degrees(angle)
-        else:
-            rows[:, :2] = np.rint(xy * self.ratio + reach - half) + half
-            rows[:, 8] = 0.0
-        painter = self.painter
-        painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
-        painter.setRenderHint(QPainter.RenderHint.SmoothPixmapTransform, turned)
-        painter.drawPixmapFragments(self.kit.fragments.first(), count, self.kit.text.pixmap)
-        painter.setRenderHint(QPainter.RenderHint.SmoothPixmapTransform, False)

@@ -10,8 +10,10 @@ from colure.frames import Frame
 from colure.graduation import figure
 from colure.marks import Discs, Labels, Layer, Mark
 from colure.scene.context import Context
+from colure.scene.layout import Layout
 from colure.scene.stars import scale_of
-from colure.session import Centre
+from colure.session import Centre, View
+from colure.sites import Site
 
 TITLE_PT, LEGEND_PT = 10.0, 9.0
 MINUS = "\N{MINUS SIGN}"
@@ -89,39 +91,50 @@ def title(ctx: Context) -> Layer:
     if rows == 0:
         return Layer("title", (), key, clip=False)
     left, right = ctx.frame[0] - 7.0, ctx.frame[2] + 7.0
-    moment = str(session.moment.text())
-    where = f"{session.site.name} · {session.site.coordinates()}" if session.site.name else session.site.coordinates()
-    seen_from = f"from {session.site.name or 'the site'}" if session.from_site else "from the Earth’s centre"
-    without = f", without {', '.join(session.omitted)}" if session.omitted else ""
-    hand = "east left" if view.east_left else "east right, a map"
+    # The moment apart from the rest: while time runs, nothing else of the block changes.
+    moment = _block((("left", 0, str(session.moment.text())),), page, left, right)
+    steady = _block(
+        _steady_lines(session.site, session.from_site, session.place, session.omitted, view), page, left, right
+    )
+    legend = _legend(ctx.limit, "stars" in ctx.sky.layers, right, page.below[rows - 1], page.below[0])
+    return Layer("title", (moment, steady, *legend), key, clip=False)
+
+
+@lru_cache(maxsize=16)
+def _steady_lines(
+    site: Site, from_site: bool, place: str, omitted: tuple[str, ...], view: View
+) -> tuple[tuple[str, int, str], ...]:
+    """Return the lines of the block but the moment's: side, row (0 the uppermost, −1 the first at the foot), text."""
+    where = f"{site.name} · {site.coordinates()}" if site.name else site.coordinates()
+    seen_from = f"from {site.name or 'the site'}" if from_site else "from the Earth’s centre"
+    without = f", without {', '.join(omitted)}" if omitted else ""
     across = f"{angle_across(view.width_deg)} across"
-    lines_of_text = [
-        ("left", 0, moment),
+    return (
         ("right", 0, f"{projection_label(view.projection)} · {up_label(view.up, view.rotation_deg)} · {across}"),
         ("left", -1, centre_label(view.centre, view.width_deg)),
-    ]
-    if rows > 1:
-        lines_of_text += [
-            ("left", 1, where),
-            ("right", 1, hand),
-            ("left", -2, f"{session.place} places, {seen_from}{without}"),
-        ]
-    marks: list[Mark] = []
+        ("left", 1, where),
+        ("right", 1, "east left" if view.east_left else "east right, a map"),
+        ("left", -2, f"{place} places, {seen_from}{without}"),
+    )
+
+
+@lru_cache(maxsize=16)
+def _block(lines: tuple[tuple[str, int, str], ...], page: Layout, left: float, right: float) -> Labels:
+    """Return the mark of lines of the title block, those that the page has a row for."""
+    rows = len(page.above)
     texts: list[str] = []
     places: list[tuple[float, float]] = []
-    for side, row, text in lines_of_text:
-        y = page.above[row] if row >= 0 else page.below[-1 - row] if -1 - row < rows else page.below[-1]
+    for side, row, text in lines:
+        if row >= rows or row < -rows:
+            continue
         # Row −1 is nearest the map at the foot of the page.
-        if row < 0:
-            y = page.below[rows + row]
+        y = page.above[row] if row >= 0 else page.below[rows + row]
         fitted, width = _fitted(text, 0.56 * (right - left) if side == "left" else 0.43 * (right - left))
         texts.append(fitted)
         places.append((left + 0.5 * width if side == "left" else right - 0.5 * width, y))
     xy = np.array(places, np.float32)
     index = np.arange(len(texts), dtype=np.int32)
-    marks.append(Labels("title", tuple(texts), index, xy, np.zeros(len(texts), np.float32), TITLE_PT, halo=False))
-    marks += _legend(ctx.limit, "stars" in ctx.sky.layers, right, page.below[rows - 1], page.below[0])
-    return Layer("title", tuple(marks), key, clip=False)
+    return Labels("title", tuple(texts), index, xy, np.zeros(len(texts), np.float32), TITLE_PT, halo=False)
 
 
 def title_key(ctx: Context) -> object:
