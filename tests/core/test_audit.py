@@ -42,6 +42,13 @@ def test_numbers_and_their_rounding(text: str, x: float, y: float, half_x: float
     assert (found.half_x[0], found.half_y[0]) == pytest.approx((half_x, half_y), rel=1e-12)
 
 
+def test_numbers_written_with_units_are_no_radians_and_no_packed_digits() -> None:
+    bare = audit.audit("10.00 20.00", Stars.point(10.0, 20.0), claim="icrs")
+    spelt = audit.audit("10°00′ 20°00′", Stars.point(10.0, 20.0), claim="icrs")
+    assert "A3" in {code for one in bare.candidates for code in one.hypothesis.codes}
+    assert not {"A2", "A3"} & {code for one in spelt.candidates for code in one.hypothesis.codes}
+
+
 def test_an_unknown_coordinate() -> None:
     found = audit.read("? -5.6")
     assert np.isnan(found.x[0])

@@ -10,7 +10,7 @@ from colure.arrays import Bool, Float, norm, unit
 from colure.audit import shifts as time_shifts
 from colure.audit.axes import AXES, BY_KEY, EQUINOXES, Axes, of_claim
 from colure.audit.numbers import Numbers
-from colure.audit.readings import AS_READ, READINGS, Read, Reading, hour_angles
+from colure.audit.readings import AS_READ, BARE, READINGS, Read, Reading, hour_angles
 from colure.audit.reference import Question
 from colure.audit.shifts import Shift
 from colure.audit.sights import SIGHTS, Sky, keys
@@ -227,6 +227,8 @@ def predict(numbers: Numbers, question: Question, hypotheses: Sequence[Hypothesi
         off_lon[rows], off_lat[rows], s_lon[rows], s_lat[rows], n_sigma[rows] = _compare(
             read, lon[rows], lat[rows], floors[rows]
         )
+        if numbers.spelt and chosen[rows[0]].reading.key in BARE:
+            n_sigma[rows] = np.inf
     return Predictions(chosen, lon, lat, off_lon, off_lat, n_sigma, s_lon, s_lat)
 
 

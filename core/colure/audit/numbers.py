@@ -22,13 +22,15 @@ LARGEST = 1e7
 class Numbers:
     """Pairs as read, in degrees: `x`, `y` (n,), and half the last digit of each, `half_x`, `half_y` (n,).
 
-    `y` or `x` is NaN where the coordinate is not known: it then decides nothing.
+    `y` or `x` is NaN where the coordinate is not known: it then decides nothing. `spelt` says that they were written
+    with degrees, hours and minutes, so that they are neither radians nor packed digits nor bare hours.
     """
 
     x: Float
     y: Float
     half_x: Float
     half_y: Float
+    spelt: bool = False
 
     @classmethod
     def of(cls, x: Float | float, y: Float | float, half_x: Float | float, half_y: Float | float) -> "Numbers":
@@ -44,14 +46,14 @@ class Numbers:
                 raise AngleError(f"audit: a {name} is {value[np.argmax(np.abs(value))]:g}; expected a coordinate")
         if np.any(np.isnan(parts[0]) & np.isnan(parts[1])):
             raise AngleError("audit: neither coordinate of a position is known; expected one at least")
-        return cls(*(np.array(part) for part in parts))
+        return cls(np.array(parts[0]), np.array(parts[1]), np.array(parts[2]), np.array(parts[3]))
 
     def __len__(self) -> int:
         return len(self.x)
 
     def take(self, rows: Int | slice) -> "Numbers":
         """Return some of the pairs."""
-        return Numbers(self.x[rows], self.y[rows], self.half_x[rows], self.half_y[rows])
+        return Numbers(self.x[rows], self.y[rows], self.half_x[rows], self.half_y[rows], self.spelt)
 
     def rounded_to(self, arcsec: float) -> "Numbers":
         """Return the same pairs with another uncertainty, arcseconds in either coordinate."""
@@ -71,13 +73,14 @@ def read(text: str, *, equatorial: bool = True) -> Numbers:
     if len(text) > 200:
         raise AngleError(f"position '{shown}': {len(text)} characters long; expected LON LAT")
     plain = text.translate({ord("−"): "-"})
-    if found := _PLAIN.match(plain):
+    found = _PLAIN.match(plain)
+    if found:
         pairs = [_decimal(part) for part in found.groups()]
     else:
         lon_text, lat_text = _halves(plain, shown)
         pairs = [_half(lon_text, True, equatorial), _half(lat_text, False, equatorial)]
     (x, half_x), (y, half_y) = pairs
-    return Numbers.of(x, y, half_x, half_y)
+    return replace(Numbers.of(x, y, half_x, half_y), spelt=found is None)
 
 
 def last_digit(text: str) -> float:

@@ -128,6 +128,8 @@ READINGS = (
     Reading("mirrored", "A8", "longitude counted westward", _mirrored),
 )
 """Readings of numbers that need nothing but the numbers."""
+BARE = ("hours", "radians", "packed-hours", "packed-degrees")
+"""Readings that numbers written with their units cannot have."""
 
 
 def hour_angles(moment: Moment, site: Site) -> tuple[Reading, ...]:

@@ -217,8 +217,13 @@ def records_of(found: Audit, asked: Asked) -> list[dict[str, Any]]:
 def worded(found: Audit, asked: Asked, head: str) -> str:
     """Return the answer in words, under a heading."""
     lines = [head, f"{found.status}: {found.verdict}", *_residual_lines(found)]
-    if len(found.members) > 1 and found.settled:
-        lines.append("settled: " + "; ".join(f"{name} {value}" for name, value in found.settled.items()))
+    settled = [
+        f"{name} {value}"
+        for name, value in found.settled.items()
+        if name != "moment" or found.question.moment is not None
+    ]
+    if len(found.members) > 1 and settled:
+        lines.append("settled: " + "; ".join(settled))
     if found.separation is not None:
         lines.append(f"to decide: {found.separation.text}")
     commands, note = _mending(found, asked)
