@@ -47,7 +47,14 @@ def window(session: Session | None = None, path: Path | None = None, settings: Q
     size = settings.value("size")
     shown.resize(size if isinstance(size, QSize) else DEFAULT_SIZE)
     desk.setParent(shown)
+    shown.chart.painted.connect(_started)
     return shown
+
+
+def _started() -> None:
+    """Let the collector of garbage begin, on what is made from now on: what is alive by now stays with the window."""
+    gc.freeze()
+    gc.enable()
 
 
 def run(path: str | Path | None = None) -> int:
@@ -66,7 +73,5 @@ def run(path: str | Path | None = None) -> int:
     shown = window(session, path)
     if report:
         shown.note("; ".join(report))
-    # What is alive by now lives as long as the window: the collector need not look at it again while time runs.
-    shown.chart.painted.connect(gc.freeze)
     shown.show()
     return made.exec()

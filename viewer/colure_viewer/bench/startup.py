@@ -30,10 +30,12 @@ window.show()
 application.exec()
 """
 COLURE = """
+import gc
+gc.disable()  # as the command does before it opens the window
+from colure_viewer.app import application, window
 from dataclasses import replace
 from PySide6.QtCore import QSettings
 from colure.session import Session
-from colure_viewer.app import application, window
 from colure_viewer.chart import ChartWidget
 
 paint = ChartWidget.paintEvent

@@ -4,6 +4,7 @@ Exit codes: 0 done; 1 understood, but no answer exists; 2 not understood, contra
 Each subcommand is a module of this package, imported only when it is asked for.
 """
 
+import gc
 import os
 import sys
 from collections.abc import Sequence
@@ -103,6 +104,9 @@ class Colure(click.Group):
 @click.argument("session", required=False)
 def _window(session: str | None) -> None:
     """Open the window on a session."""
+    # Until the first chart nearly all that is made is kept: to search it for garbage would take a tenth of the time.
+    # The window starts the collector again.
+    gc.disable()
     from colure_viewer.app import run
 
     sys.exit(run(session))
