@@ -4,11 +4,11 @@ from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
-from PySide6.QtCore import QPointF
-from PySide6.QtGui import QBrush, QColor, QPainter, QPainterPath, QPen
+from PySide6.QtCore import QPointF, Qt
+from PySide6.QtGui import QColor, QPainter, QPen
 
 from colure.marks import Bodies
-from colure_viewer.primitives import path
+from colure_viewer.primitives import polygon
 from colure_viewer.themes import Theme, mix
 
 F64 = NDArray[np.float64]
@@ -44,24 +44,24 @@ def _colours(theme: Theme, name: str) -> tuple[QColor, QColor, QColor]:
 
 def draw_bodies(painter: QPainter, mark: Bodies, theme: Theme, scale: float) -> None:
     """Draw the discs; `scale` is painter units per logical pixel."""
-    painter.setBrush(QBrush())
     places = (mark.xy * scale).tolist()
     radii = (mark.radius * scale).tolist()
     for row, name in enumerate(mark.names):
         colour, bright, night = _colours(theme, name)
         (x, y), radius, lit = places[row], radii[row], float(mark.lit[row])
         full = lit >= 0.999 or radius < 2.0 * scale
-        painter.fillPath(_disc(x, y, radius), bright if full else night)
+        centre = QPointF(x, y)
+        painter.setBrush(bright if full else night)
         if not full and lit > 0.001:
-            shape = lit_shape(radius, lit, float(mark.limb[row]), x, y)
-            painter.fillPath(path(shape, np.array([0, len(shape)], dtype=np.int32)), bright)
+            # The rim goes over both sides.
+            painter.setPen(Qt.PenStyle.NoPen)
+            painter.drawEllipse(centre, radius, radius)
+            painter.setBrush(bright)
+            painter.drawPolygon(polygon(lit_shape(radius, lit, float(mark.limb[row]), x, y)))
+            painter.setBrush(Qt.BrushStyle.NoBrush)
         painter.setPen(QPen(colour, OUTLINE * scale))
-        painter.drawEllipse(QPointF(x, y), radius, radius)
+        painter.drawEllipse(centre, radius, radius)
         if name == "sun" and not mark.true_size[row]:
-            painter.fillPath(_disc(x, y, 1.6 * scale), QColor(theme.colour("sky")) if theme.dark else colour)
-
-
-def _disc(x: float, y: float, radius: float) -> QPainterPath:
-    disc = QPainterPath()
-    disc.addEllipse(QPointF(x, y), radius, radius)
-    return disc
+            painter.setPen(Qt.PenStyle.NoPen)
+            painter.setBrush(QColor(theme.colour("sky")) if theme.dark else colour)
+            painter.drawEllipse(centre, 1.6 * scale, 1.6 * scale)

@@ -267,12 +267,16 @@ class _Raster:
         code = atlas.codes(fine, mark.size, mark.tint)
         atlas.fill(rows, code.take(order), fine.take(order, axis=0))
         ends = np.cumsum(np.bincount(band, minlength=bands)).tolist()
+        # A sky is rarely as wide as its page; two pixels are a word.
+        left, right = (int(v) >> (atlas.bits + 1) for v in (fine[:, 0].min(), fine[:, 0].max()))
+        left = min(max(left - LARGE_STAR, 0), memory.shape[1] - 1)
+        columns = slice(left, max(right + LARGE_STAR, left + 1), 8)
         painter, block, pixmap, start = self.painter, self.kit.fragments, atlas.pixmap, 0
         for number, end in enumerate(ends):
             if end > start:
                 top = max((number << shift) - LARGE_STAR, 0)
                 # One word of each cache line is enough to have it fetched, and in this order it is fetched ahead.
-                memory[top : ((number + 1) << shift) + LARGE_STAR, ::8].max()
+                memory[top : ((number + 1) << shift) + LARGE_STAR, columns].max()
                 painter.drawPixmapFragments(block.at(start), end - start, pixmap)
                 start = end
         if count > small:
