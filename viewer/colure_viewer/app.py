@@ -47,12 +47,14 @@ def window(session: Session | None = None, path: Path | None = None, settings: Q
     size = settings.value("size")
     shown.resize(size if isinstance(size, QSize) else DEFAULT_SIZE)
     desk.setParent(shown)
-    shown.chart.painted.connect(_started)
     return shown
 
 
-def _started() -> None:
-    """Let the collector of garbage begin, on what is made from now on: what is alive by now stays with the window."""
+def start_collector() -> None:
+    """Let the collector of garbage begin, on what is made from now on.
+
+    What is alive by now lives as long as the one window of the program: it need not be searched while time runs.
+    """
     gc.freeze()
     gc.enable()
 
@@ -73,5 +75,6 @@ def run(path: str | Path | None = None) -> int:
     shown = window(session, path)
     if report:
         shown.note("; ".join(report))
+    shown.chart.painted.connect(start_collector)
     shown.show()
     return made.exec()

@@ -32,7 +32,7 @@ application.exec()
 COLURE = """
 import gc
 gc.disable()  # as the command does before it opens the window
-from colure_viewer.app import application, window
+from colure_viewer.app import application, start_collector, window
 from dataclasses import replace
 from PySide6.QtCore import QSettings
 from colure.session import Session
@@ -51,6 +51,7 @@ made = application()
 demo = Session.demo()
 settings = QSettings("{settings}", QSettings.Format.IniFormat)
 shown = window(replace(demo, view=replace(demo.view, limit_mag=6.5)), settings=settings)
+shown.chart.painted.connect(start_collector)
 shown.resize(1920, 1080)
 shown.show()
 made.exec()

@@ -105,7 +105,7 @@ class Colure(click.Group):
 def _window(session: str | None) -> None:
     """Open the window on a session."""
     # Until the first chart nearly all that is made is kept: to search it for garbage would take a tenth of the time.
-    # The window starts the collector again.
+    # `run` starts the collector again.
     gc.disable()
     from colure_viewer.app import run
 
