@@ -25,7 +25,7 @@ MAX_STAR_ATLASES = 12
 FEW_STARS = 1500
 FEW_POINTS = 200
 FEW_LINES = 12
-BAND_BYTES = 262144
+BAND_BYTES = 524288
 """Bytes of a picture that stay in the second-level cache of common processors, with room beside them."""
 LARGE_STAR = 4
 """Radius in device pixels from which a disc is drawn after the bands."""
