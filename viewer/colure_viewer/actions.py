@@ -29,6 +29,8 @@ COMMANDS = (
     Command("&File", "save_session", "&Save session", S.Save),
     Command("&File", "save_session_as", "Save session &as…", "Ctrl+Shift+S"),
     RULE,
+    Command("&File", "open_overlay", "Open o&verlay…", "Ctrl+Shift+O"),
+    RULE,
     Command("&File", "export_chart", "&Export chart…", "Ctrl+E"),
     Command("&File", "print_chart", "&Print chart…", S.Print),
     RULE,

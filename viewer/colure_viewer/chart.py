@@ -79,6 +79,11 @@ class ChartWidget(QWidget):
 
     # What is drawn
 
+    def renew(self) -> None:
+        """Compose the chart anew at the next look: what lies outside the session, such as a file, has changed."""
+        self._composed = None
+        self.update()
+
     @property
     def chart(self) -> Chart:
         """The chart of the session as the widget shows it, composed now if need be."""

@@ -57,7 +57,8 @@ def sheet(theme: Theme) -> str:
         selection-background-color: {c("accent")}; selection-color: {c("on.accent")}; }}
     QLineEdit:focus, QComboBox:focus, QDoubleSpinBox:focus, QTableView:focus, QListView:focus {{
         border: 1px solid {c("accent")}; }}
-    QLineEdit[fault="true"] {{ border: 1px solid {c("fault")}; color: {c("fault")}; }}
+    QComboBox QLineEdit, QComboBox QLineEdit:focus {{ border: 0; padding: 0; min-height: 18px; }}
+    QLineEdit[fault="true"], QComboBox QLineEdit[fault="true"] {{ border: 1px solid {c("fault")}; color: {c("fault")}; }}
     QComboBox QAbstractItemView {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")};
         selection-background-color: {c("accent")}; selection-color: {c("on.accent")}; }}
     QPushButton, QToolButton {{ background: {c("panel")}; color: {c("ink")}; border: 1px solid {c("rule")};

@@ -47,6 +47,7 @@ class Window(Acting):
         self.hand.hovered.connect(self._hovered)
         self.hand.measured.connect(self.right.measure.show_text)
         self.right.ledger.attach(self.chart)
+        self.left.overlays.attach(self.jobs, self.chart)
         self.chart.use_jobs(self.jobs)
         self.chart.setFocus()
         self.progress = Progress(self.jobs)
@@ -84,6 +85,11 @@ class Window(Acting):
         self._check("toggle_deep_sky", layers.deep_sky)
         self._check("toggle_grid", layers.grid is not None)
         self._retitle()
+
+    def open_overlay(self) -> None:
+        """Ask for a table or an image header and lay it on the chart."""
+        if self.left is not None:
+            self.left.overlays.open()
 
     # Focus, looks, help
 

@@ -12,7 +12,7 @@ from colure.ledger.entries import Entry, Ledger
 from colure.marks import Scene
 
 GOAL_PX, MOST_PX, LEAST_PX = 150.0, 320.0, 2.0
-"""Length that the step which sets the factor is given; the lengths beyond and below which an arrow is not laid."""
+"""Length that the step which sets the factor is given; the lengths beyond and below which an arrow is not laid. On a small map the first two are less."""
 TINY = 10.0 * ARCSEC
 """Angle by which directions on the page and the scale there are found."""
 MOST_FACTOR = 1e8
@@ -75,20 +75,22 @@ def lay(
     # A straight arrow on the page, as long as the map's scale at the foot makes the step.
     moves = (ends - np.array([x, y])) / TINY * size[:, None]
     pixels = np.hypot(moves[:, 0], moves[:, 1])
+    room = min(right - left, bottom - top)
+    most, goal = min(MOST_PX, 0.4 * room), min(GOAL_PX, 0.25 * room)
     if factor is None:
-        factor = _factor([one for _, one in rows], pixels, chosen)
+        factor = _factor([one for _, one in rows], pixels, chosen, goal, most)
     drawn, long, short = [], [], []
     for (number, one), move, length in zip(rows, moves * factor, pixels * factor, strict=True):
         if not length >= LEAST_PX:
             short.append(number)
-        elif length > MOST_PX:
+        elif length > most:
             long.append(number)
         else:
             drawn.append(Arrow(number, one.step, float(move[0]), float(move[1]), one.is_turn))
     return Arrows(x, y, factor, tuple(drawn), tuple(long), tuple(short))
 
 
-def _factor(entries: Sequence[Entry], pixels: Float, chosen: str | None) -> float:
+def _factor(entries: Sequence[Entry], pixels: Float, chosen: str | None, goal: float, most: float) -> float:
     """Return the factor that gives the chosen step a good length, or else the one with which most steps are seen."""
     mine = [at for at, one in enumerate(entries) if one.step == chosen]
     longest = [float(pixels[at]) for at in mine or range(len(entries)) if pixels[at] > 0.0]
@@ -96,10 +98,10 @@ def _factor(entries: Sequence[Entry], pixels: Float, chosen: str | None) -> floa
         return 1.0
 
     def seen(length: float) -> int:
-        factor = nice(GOAL_PX / length)
-        return int(((pixels * factor >= LEAST_PX) & (pixels * factor <= MOST_PX)).sum())
+        factor = nice(goal / length)
+        return int(((pixels * factor >= LEAST_PX) & (pixels * factor <= most)).sum())
 
-    return nice(GOAL_PX / max(sorted(longest, reverse=True), key=seen))
+    return nice(goal / max(sorted(longest, reverse=True), key=seen))
 
 
 def carried(arrows: Float, direction: Float) -> Float:

@@ -1,6 +1,6 @@
 """A clear sheet over the chart on which the steps of a ledger are drawn as arrows."""
 
-from PySide6.QtCore import QEvent, QObject, QPointF, Qt
+from PySide6.QtCore import QEvent, QObject, QPointF, QRectF, Qt
 from PySide6.QtGui import QColor, QPainter, QPaintEvent, QPen, QPolygonF
 from PySide6.QtWidgets import QWidget
 
@@ -63,6 +63,8 @@ class StepArrows(QWidget):
         if laid is None or not (laid.drawn or laid.long):
             return
         painter = QPainter(self)
+        left, top, right, bottom = self._chart.scene.frame
+        painter.setClipRect(QRectF(left, top, right - left, bottom - top))
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
         painter.setFont(font(SANS, TEXT_PX))
         foot = QPointF(laid.x, laid.y)

@@ -22,6 +22,7 @@ from colure.stepnames import STEPS
 from colure_viewer.chart import ChartWidget
 from colure_viewer.desk import Desk
 from colure_viewer.entry import Entry
+from colure_viewer.panels import labels
 from colure_viewer.panels.arrows import StepArrows
 from colure_viewer.panels.direction import frame_words
 from colure_viewer.panels.steps import StepsModel, StepsView
@@ -275,10 +276,7 @@ class LedgerPanel(QWidget):
         for part in (self.frames, self.place, *self._names):
             part.setVisible(subject is not None)
         name = "muted" if subject is None else "notice" if fault else ""
-        if self.detail.objectName() != name:
-            self.detail.setObjectName(name)
-            self.detail.style().unpolish(self.detail)
-            self.detail.style().polish(self.detail)
+        labels.dress(self.detail, name)
         # While the pointer is followed the Sun is not looked for at every move: the chart has its own caution.
         self.caution.setVisible(found is not None and self._pointer is None and near_sun(found))
         if found is None:

@@ -22,6 +22,7 @@ from colure_viewer.panels.circles import CirclesPanel
 from colure_viewer.panels.direction import DirectionPanel, MeasurePanel
 from colure_viewer.panels.ledger import LedgerPanel
 from colure_viewer.panels.momentbar import MomentBar, SiteBar
+from colure_viewer.panels.overlays import OverlaysPanel
 from colure_viewer.panels.search import SearchBar
 from colure_viewer.panels.show import BodiesPanel, LayersPanel
 from colure_viewer.panels.viewbar import ViewBar
@@ -80,7 +81,7 @@ class _Column(QScrollArea):
 
 
 class LeftSide(_Column):
-    """Circles, belt, bodies and layers."""
+    """Circles, belt, bodies, layers and overlays."""
 
     def __init__(self, desk: Desk, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -88,11 +89,13 @@ class LeftSide(_Column):
         self.belt = BeltPanel(desk)
         self.bodies = BodiesPanel(desk)
         self.layers = LayersPanel(desk)
+        self.overlays = OverlaysPanel(desk)
         for title, panel in (
             ("Circles", self.circles),
             ("Belt", self.belt),
             ("Bodies", self.bodies),
             ("Layers", self.layers),
+            ("Overlays", self.overlays),
         ):
             self.add(title, panel)
         self.close_up()
