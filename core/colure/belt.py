@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colure import constellations
-from colure.arrays import DEG, TWO_PI, Bool, Float, cartesian, unit
+from colure.arrays import DEG, TWO_PI, Bool, Float, cartesian, cross, unit
 from colure.ephemeris import Ephemeris
 from colure.moment import Moment
 from colure.reduction import reduce_bodies
@@ -100,8 +100,8 @@ def cardinal_points(ecliptic: Float, equator: Float) -> Marks:
     longitude 0. `equator` is the matrix (3, 3) from ICRS axes to the equatorial frame.
     """
     pole, equator_pole = ecliptic[2], equator[2]
-    equinox = unit(np.cross(equator_pole, pole))
-    solstice = np.cross(pole, equinox)
+    equinox = unit(cross(equator_pole, pole))
+    solstice = cross(pole, equinox)
     return Marks(
         labels=("♈", "♋", "♎", "♑", "NEP", "SEP", "NCP", "SCP"),
         names=(

@@ -13,7 +13,7 @@ from itertools import pairwise
 
 import numpy as np
 
-from colure.arrays import Bool, Float, Int
+from colure.arrays import Bool, Float, Int, cross
 from colure.clipping import FAR, Rect, Window, cut_segments
 from colure.marks import F32, I32
 
@@ -309,7 +309,7 @@ def inside(point: Float, camera: Float, starts: I32, outside: Float) -> bool:
 
 
 def _odd(p: Float, q: Float, camera: Float, starts: I32) -> bool:
-    normal = np.cross(p, q)
+    normal = cross(p, q)
     side = normal @ camera >= 0.0
     after = following(camera.shape[1], starts)
     at = np.flatnonzero(side != side[after])

@@ -19,6 +19,7 @@ ASCENT, DESCENT = 0.78, 0.22
 _SERIF_ROLES = ("title", "label.circle", "label.constellation", "label.star", "label.belt")
 
 
+@lru_cache(maxsize=256)
 def face_of(role: str, *, italic: bool = False, bold: bool = False) -> int:
     """Return the place in FACES of the face that a role is set in; the sans face has no italic."""
     if any(role == serif or role.startswith(serif + ".") for serif in _SERIF_ROLES):

@@ -1,5 +1,6 @@
 """The turn of the Earth: rotation angle, sidereal times, and the matrix from ICRS axes to the ground."""
 
+from functools import lru_cache
 from typing import Protocol
 
 import erfa
@@ -75,6 +76,20 @@ def terrestrial_matrix(moment: Moment, *, polar_motion: bool = True, model: str 
 
     By the equinox: polar motion × sidereal time × nutation × precession × bias; equal to ERFA's `c2t06a` to 0.01 mas.
     """
+    if isinstance(moment.tt1, float):
+        return _ground(moment.tt1, float(moment.tt2), polar_motion, model)
+    return _terrestrial(moment, polar_motion, model)
+
+
+@lru_cache(maxsize=64)
+def _ground(tt1: float, tt2: float, polar_motion: bool, model: str) -> Float:
+    # One moment asks twice at least: for the observer's place and for its horizon.
+    matrix = _terrestrial(Moment(tt1, tt2), polar_motion, model)
+    matrix.flags.writeable = False
+    return matrix
+
+
+def _terrestrial(moment: Moment, polar_motion: bool, model: str) -> Float:
     turned = ofdate.turned(ofdate.true_equator_matrix(moment, model), gast(moment, model))
     return np.asarray(polar_motion_matrix(moment) @ turned if polar_motion else turned)
 

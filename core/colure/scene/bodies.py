@@ -4,7 +4,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from colure.arrays import Float
+from colure.arrays import Float, cross
 from colure.marks import F32, Bodies, Layer
 from colure.scene.context import Context, in_page
 
@@ -64,7 +64,7 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
 def _laid(ctx: Context, vectors: Float, towards_sun: Float) -> tuple[Float, Float, Float]:
     """Return page positions (B, 2), the direction of the bright limb on the page, and pixels per radian there."""
     step = 1e-5
-    here = np.concatenate([vectors, vectors + step * towards_sun, vectors + step * np.cross(vectors, towards_sun)])
+    here = np.concatenate([vectors, vectors + step * towards_sun, vectors + step * cross(vectors, towards_sun)])
     here /= np.sqrt((here * here).sum(axis=1))[:, None]
     x, y = ctx.projector.to_page(ctx.projector.to_camera(np.ascontiguousarray(here.T)))
     page = np.stack([x, y], axis=1).reshape(3, -1, 2)
