@@ -1,8 +1,7 @@
 """Read and write the text of moments: ISO 8601 with signed years, Julian dates, epochs, scale and calendar names."""
 
 import re
-from dataclasses import dataclass
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -24,8 +23,7 @@ _EPOCH = re.compile(r"(?P<kind>[JB])\s*(?P<year>[+-]?\d{1,9}(?:\.\d*)?)\Z", re.I
 _PLAIN_SIGNS = str.maketrans({"−": "-", "‐": "-", "‑": "-", "–": "-", "\u00a0": " ", "\u202f": " "})
 
 
-@dataclass(frozen=True, slots=True)
-class Parsed:
+class Parsed(NamedTuple):
     """What a text says, with nothing looked up yet: `kind` is civil, jd, epoch or now."""
 
     kind: str
@@ -113,7 +111,8 @@ def _civil(found: "re.Match[str]", shown: str, scale: str | None, calendar: str 
         raise fail(f"year '{found['year']}' has fewer than three digits; expected four, or a sign before it")
     if found["sign"] == "-":
         year = -year
-    if not -5000 < year < 5000:
+    # The first weeks of −4999 (Julian) are days of −5000 in the Gregorian calendar; Moment holds the exact limit.
+    if not (-5001 if calendar == "gregorian" else -5000) < year < 5000:
         raise fail(f"year {calendars.year_text(year)} is out of reach; expected −4999 to 4999")
     seconds, offset = 0.0, 0.0
     if found["hour"] is not None:

@@ -7,7 +7,7 @@ import pickle
 import erfa
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from colure import leapseconds, orientation
@@ -119,6 +119,7 @@ def test_near_dates_are_read_back_or_refused(text: str) -> None:
 
 
 @settings(max_examples=200)
+@example(-104787.0, 0.0, "UTC", "gregorian")  # a day of −5000 in that calendar
 @given(
     st.floats(FIRST_JD + 10.0, LAST_JD - 10.0),
     st.floats(0.0, 1.0),

@@ -176,15 +176,18 @@ def test_a_save_that_fails_leaves_the_old_file_whole(tmp_path):
     assert [p.name for p in tmp_path.iterdir()] == ["mine.toml"]
 
 
-values = st.recursive(
+leaves = (
     st.none().map(lambda _: "x")
     | st.booleans()
     | st.integers(-(2**62), 2**62)
     | st.floats()
     | st.text(max_size=12)
-    | st.sampled_from(FRAMES),
-    lambda inner: st.lists(inner, max_size=4) | st.dictionaries(st.text(max_size=6), inner, max_size=4),
-    max_leaves=8,
+    | st.sampled_from(FRAMES)
+)
+values = (
+    leaves
+    | st.lists(leaves | st.lists(leaves, max_size=3), max_size=4)
+    | st.dictionaries(st.text(max_size=6), leaves | st.lists(leaves, max_size=3), max_size=4)
 )
 KEYS = sorted(
     {f.name for kind in (Session, View, Centre, Circle, Belt, Layers, Site) for f in fields(kind)} | {"tt_jd"}
