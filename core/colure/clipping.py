@@ -152,9 +152,11 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
         ends = np.stack([cx[::2], cy[::2], cx[1::2], cy[1::2]], axis=1)[seen]
         owner = owner[seen]
     # Painters lose large coordinates: the few segments that reach far out are cut at the rectangle.
-    far = np.flatnonzero(whole)
-    far = far[_far(window.rect, x[far], y[far]) | _far(window.rect, x[far + 1], y[far + 1])] if len(far) else far
-    if len(far):
+    left, top, right, bottom = window.rect
+    reach = max(left - x.min(), x.max() - right, top - y.min(), y.max() - bottom)
+    if not reach <= FAR:  # nor is nan
+        far = np.flatnonzero(whole)
+        far = far[_far(window.rect, x[far], y[far]) | _far(window.rect, x[far + 1], y[far + 1])]
         whole[far] = False
         more = np.stack([x[far], y[far], x[far + 1], y[far + 1]], axis=1).astype(np.float64)
         ends, owner = np.concatenate([ends, more]), np.concatenate([owner, far])
@@ -313,6 +315,8 @@ def _cut_cap(
     a: Float, b: Float, which: NDArray[np.intp], axis: int, level: float
 ) -> tuple[Float, Float, NDArray[np.intp]]:
     """Return the parts of arcs where the component `axis` of the direction is at least `level`."""
+    if min(a[axis].min(initial=1.0), b[axis].min(initial=1.0)) >= level:
+        return a, b, which
     t0, t1 = cap_interval(a, b, axis, level)
     shown = t1 > t0
     a, b, t0, t1 = a[:, shown], b[:, shown], t0[shown], t1[shown]

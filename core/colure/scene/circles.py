@@ -22,21 +22,36 @@ _TICKS = np.array(TICKS, np.float32)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class Curves:
-    """The reference circles on the page, point after point, circle after circle.
+class Scale:
+    """The graduation of circles, which does not depend on where they are.
 
-    `circles` (C,) those that are shown and `numbers` (C,) their places in the session's list; `graduated` (C,), and
-    `major` (C,) the spacing of their figures in arcseconds. For every point, (N,): `row` which of the circles it is on,
-    `arcsec` its longitude as a whole number, `xy` (N, 2) its pixel, `tangent` and `north` (N, 2) unit vectors on the
-    page towards growing longitude and towards the north side, `shown` whether it is on the map.
+    For every circle, (C,): whether it is `graduated`, and `major`, the spacing of its figures in arcseconds. For every
+    point, (N,): `row` which of the circles it is on, `arcsec` its longitude as a whole number. Of the points, `ticks`
+    are those with a tick, `lengths` in pixels, `figures` those with a figure and `between` those halfway.
     """
 
-    circles: tuple[Circle, ...]
-    numbers: Int
     graduated: Bool
     major: Int
     row: NDArray[np.intp]
     arcsec: Int
+    ticks: NDArray[np.intp]
+    lengths: F32
+    figures: NDArray[np.intp]
+    between: NDArray[np.intp]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Curves:
+    """The reference circles on the page, point after point, circle after circle.
+
+    `circles` (C,) those that are shown and `numbers` (C,) their places in the session's list, `scale` their graduation.
+    For every point, (N,): `xy` (N, 2) its pixel, `tangent` and `north` (N, 2) unit vectors on the page towards growing
+    longitude and towards the north side, `shown` whether it is on the map.
+    """
+
+    circles: tuple[Circle, ...]
+    numbers: Int
+    scale: Scale
     xy: F32
     tangent: F32
     north: F32
@@ -103,26 +118,34 @@ def _finish(
     """Return the layer of circles, and their curves for the labels."""
     if not parts:
         return Layer("circles", (), key(ctx)), None
-    row = np.repeat(np.arange(len(parts)), np.diff(starts))
+    scale = _scale(
+        tuple(
+            (
+                int(part[3][0]),
+                int(part[3][-1]),
+                len(part[3]),
+                part[4].minor,
+                part[4].middle,
+                part[4].major,
+                part[1].graduated,
+            )
+            for part in parts
+        )
+    )
+    row = scale.row
     tangent, valid = _tangents(drawn)
     valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
     xy = np.empty((len(row), 2), np.float32)
     xy[:, 0], xy[:, 1] = drawn.x, drawn.y
-    arcsec = np.concatenate([part[3] for part in parts])
     # North is to the left of growing longitude seen from outside the sphere; a sky chart is seen from inside, and the
     # horizon counts its azimuths the other way round.
     side = 1.0 if ctx.view.east_left else -1.0
     hand = np.array([-side if part[2].left_handed else side for part in parts], np.float32)[row]
     north = np.empty_like(tangent)
     north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
-    minor, middle, major = (
-        np.array([getattr(part[4], name) for part in parts]) for name in ("minor", "middle", "major")
-    )
-    graduated = np.array([part[1].graduated for part in parts])
-    at = np.flatnonzero(valid & graduated[row] & (arcsec % minor[row] == 0))
-    here, which = arcsec[at], row[at]
-    length = _TICKS[(here % major[which] == 0).astype(np.intp) + (here % middle[which] == 0)]
-    ticks = np.concatenate([xy[at], xy[at] + north[at] * length[:, None]], axis=1)
+    seen = valid[scale.ticks]
+    at = scale.ticks[seen]
+    ticks = np.concatenate([xy[at], xy[at] + north[at] * scale.lengths[seen, None]], axis=1)
     tick_at = np.searchsorted(at, starts)
     marks: list[Mark] = []
     for k, (points, ends) in enumerate(drawn.polylines(starts)):
@@ -134,16 +157,27 @@ def _finish(
     curves = Curves(
         tuple(part[1] for part in parts),
         np.array([part[0] for part in parts]),
-        graduated,
-        major,
-        row,
-        arcsec,
+        scale,
         xy,
         tangent,
         north,
         valid,
     )
     return Layer("circles", tuple(marks), key(ctx)), curves
+
+
+@lru_cache(maxsize=16)
+def _scale(circles: tuple[tuple[int, int, int, int, int, int, bool], ...]) -> Scale:
+    """Return the graduation of circles: first and last longitude, number of points, three steps, whether graduated."""
+    row = np.repeat(np.arange(len(circles)), [circle[2] for circle in circles])
+    arcsec = np.concatenate([np.linspace(first, last, n).round().astype(np.int64) for first, last, n, *_ in circles])
+    minor, middle, major, graduated = (np.array([circle[k] for circle in circles]) for k in range(3, 7))
+    ticks = np.flatnonzero(graduated[row] & (arcsec % minor[row] == 0))
+    here, which = arcsec[ticks], row[ticks]
+    large = here % major[which] == 0
+    lengths = _TICKS[large.astype(np.intp) + (here % middle[which] == 0)]
+    between = np.flatnonzero((arcsec - (major // 2)[row]) % major[row] == 0)
+    return Scale(graduated, major, row, arcsec, ticks, lengths, ticks[large], between)
 
 
 def _fine(minor: int) -> int:

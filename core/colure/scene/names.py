@@ -6,7 +6,7 @@ from typing import Any
 
 import numpy as np
 
-from colure.arrays import DEG, TWO_PI
+from colure.arrays import DEG, TWO_PI, Float, cartesian
 from colure.belt import DIVISION_GLYPHS
 from colure.fontmetrics import CAP_HEIGHT, PX_PER_PT, width_px
 from colure.graduation import TURN, figure
@@ -166,27 +166,26 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
         return None
     size = 10.0
     tall = height(size)
-    half_step = curves.major // 2
-    major = curves.major[curves.row]
-    at = np.flatnonzero(curves.shown & ((curves.arcsec - half_step[curves.row]) % major == 0))
+    scale = curves.scale
+    at = scale.between[curves.shown[scale.between]]
     count = len(curves.circles)
-    has = np.bincount(curves.row[at], minlength=count) > 0
-    bare = ~has & (np.bincount(curves.row[curves.shown], minlength=count) > 0)
-    if bare.any():
+    has = np.bincount(scale.row[at], minlength=count) > 0
+    if not has.all():
+        bare = ~has & (np.bincount(scale.row[curves.shown], minlength=count) > 0)
         # No such longitude is on the map: any point will do.
-        at = np.sort(np.concatenate([at, np.flatnonzero(curves.shown & bare[curves.row])[::5]]))
+        at = np.sort(np.concatenate([at, np.flatnonzero(curves.shown & bare[scale.row])[::5]]))
         has |= bare
     if not len(at):
         return None
     used = np.flatnonzero(has)
-    row = (np.cumsum(has) - 1)[curves.row[at]]
+    row = (np.cumsum(has) - 1)[scale.row[at]]
     circles = [curves.circles[i] for i in used.tolist()]
     texts = tuple(circle.name for circle in circles)
     widths = np.array([width_px(text, size, "label.circle", italic=True) for text in texts])
-    lift = (np.where(curves.graduated[used], TICKS[2], 0.0) + 4.0 + 0.5 * tall).astype(np.float32)
+    lift = (np.where(scale.graduated[used], TICKS[2], 0.0) + 4.0 + 0.5 * tall).astype(np.float32)
     angle = upright(curves.tangent[at])
     # A spot's number belongs to its longitude, so that a name stays there while the view moves over it.
-    number = (curves.arcsec[at] // major[at]) % NAME_SPOTS
+    number = (scale.arcsec[at] // scale.major[scale.row[at]]) % NAME_SPOTS
     centres = np.full((len(used), NAME_SPOTS, 2), np.nan, np.float32)
     angles = np.zeros((len(used), NAME_SPOTS), np.float32)
     halves = np.zeros((len(used), NAME_SPOTS, 2), np.float32)
@@ -195,8 +194,8 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     halves[row, number] = turned_half(widths[row], tall, angle)
     # Best left of the middle and above it, where nothing else begins.
     left, top, right, bottom = ctx.frame
-    away = np.nan_to_num(centres, nan=1e6) - np.array([0.6 * left + 0.4 * right, 0.6 * top + 0.4 * bottom], np.float32)
-    preference = np.argsort((away * away).sum(axis=2), axis=1)
+    dx, dy = centres[:, :, 0] - (0.6 * left + 0.4 * right), centres[:, :, 1] - (0.6 * top + 0.4 * bottom)
+    preference = np.argsort(dx * dx + dy * dy, axis=1)  # what is no number comes last
     # One box for all spots of a name: the largest that any of its angles needs.
     request = Request(_CIRCLE + curves.numbers[used], centres, halves.max(axis=1), preference)
     return Wanted(
@@ -217,12 +216,12 @@ def _figures(curves: Curves | None) -> Wanted | None:
         return None
     size = 9.0
     tall = height(size)
-    row = curves.row
-    at = np.flatnonzero(curves.shown & (curves.arcsec % curves.major[row] == 0) & curves.graduated[row])
-    arcsec = curves.arcsec[at] % TURN
+    row = curves.scale.row
+    at = curves.scale.figures[curves.shown[curves.scale.figures]]
+    arcsec = curves.scale.arcsec[at] % TURN
     ids = _FIGURE + (curves.numbers[row[at]] << 32) + arcsec
     # A circle that closes has its first point twice.
-    once = np.append(np.diff(ids) != 0, True) & ~((arcsec == 0) & (curves.arcsec[at] > 0))
+    once = np.append(np.diff(ids) != 0, True) & ~((arcsec == 0) & (curves.scale.arcsec[at] > 0))
     if not once.all():
         at, arcsec, ids = at[once], arcsec[once], ids[once]
     if not len(at):
@@ -360,17 +359,25 @@ def _belt(ctx: Context) -> Wanted | None:
     if "belt" not in ctx.sky.layers or not ctx.sky.session.belt.divisions:
         return None
     axes: FrameAxes = ctx.sky["belt"]
-    half_width = ctx.sky.session.belt.half_width_deg * DEG
-    lon = np.asarray((np.arange(12) + 0.5) * (TWO_PI / 12.0), dtype=np.float64)
     size = 11.0
-    spots = [on_page(ctx, axes.columns(lon, lat * half_width), 0.0) for lat in (0.8, -0.8)]
-    at = np.flatnonzero(spots[0][1] | spots[1][1])
+    lon, lat, columns = _sign_places(ctx.sky.session.belt.half_width_deg)
+    xy, on = on_page(ctx, axes.columns(lon, lat) if axes.matrix is None else axes.matrix @ columns, 0.0)
+    xy[~on] = np.nan
+    at = np.flatnonzero(on[:12] | on[12:])
     if not len(at):
         return None
-    centres = np.stack([np.where(on[:, None], xy, np.nan) for xy, on in spots], axis=1)[at].astype(np.float32)
+    centres = np.stack([xy[at], xy[at + 12]], axis=1)
     texts = tuple(DIVISION_GLYPHS[i] for i in at.tolist())
     half = np.array([[0.5 * width_px(t, size, "label.belt"), 0.5 * height(size)] for t in texts], np.float32)
     n = np.arange(len(at), dtype=np.int32)
     return Wanted(
         "label.belt", Request(_BELT + at.astype(np.int64), centres, half), texts, n, np.zeros(len(at), np.float32), size
     )
+
+
+@lru_cache(maxsize=8)
+def _sign_places(half_width_deg: float) -> tuple[Float, Float, Float]:
+    """Return longitudes, latitudes (24,) and directions (3, 24) of the signs near the north edge, then the south."""
+    lon = np.tile((np.arange(12) + 0.5) * (TWO_PI / 12.0), 2)
+    lat = np.repeat([0.8, -0.8], 12) * (half_width_deg * DEG)
+    return lon, lat, cartesian(lon, lat).T
