@@ -58,7 +58,8 @@ def sheet(theme: Theme) -> str:
     QLineEdit:focus, QComboBox:focus, QDoubleSpinBox:focus, QTableView:focus, QListView:focus {{
         border: 1px solid {c("accent")}; }}
     QComboBox QLineEdit, QComboBox QLineEdit:focus {{ border: 0; padding: 0; min-height: 18px; }}
-    QLineEdit[fault="true"], QComboBox QLineEdit[fault="true"] {{ border: 1px solid {c("fault")}; color: {c("fault")}; }}
+    QLineEdit[fault="true"], QComboBox QLineEdit[fault="true"] {{
+        border: 1px solid {c("fault")}; color: {c("fault")}; }}
     QComboBox QAbstractItemView {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")};
         selection-background-color: {c("accent")}; selection-color: {c("on.accent")}; }}
     QPushButton, QToolButton {{ background: {c("panel")}; color: {c("ink")}; border: 1px solid {c("rule")};

@@ -12,7 +12,7 @@ from colure.ledger.entries import Entry, Ledger
 from colure.marks import Scene
 
 GOAL_PX, MOST_PX, LEAST_PX = 150.0, 320.0, 2.0
-"""Length that the step which sets the factor is given; the lengths beyond and below which an arrow is not laid. On a small map the first two are less."""
+"""Length of the step that sets the factor; beyond and below the others an arrow is not laid. Less on a small map."""
 TINY = 10.0 * ARCSEC
 """Angle by which directions on the page and the scale there are found."""
 MOST_FACTOR = 1e8
