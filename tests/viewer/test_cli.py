@@ -2,7 +2,6 @@
 
 import csv
 import io
-import json
 import math
 import subprocess
 import sys
@@ -11,27 +10,6 @@ from pathlib import Path
 import erfa
 import numpy as np
 import pytest
-
-from colure_viewer.cli.main import main
-
-
-class Ran:
-    def __init__(self, code: int, out: str, err: str) -> None:
-        self.code, self.out, self.err = code, out, err
-
-    @property
-    def records(self) -> list[dict]:
-        return json.loads(self.out)
-
-
-@pytest.fixture
-def colure(capsys: pytest.CaptureFixture[str]):
-    def run(*words: str) -> Ran:
-        code = main(list(words))
-        out, err = capsys.readouterr()
-        return Ran(code, out, err)
-
-    return run
 
 
 def test_help_lists_every_command_and_imports_none(colure):

@@ -2,7 +2,6 @@
 
 import csv
 import io
-import json
 import re
 import shlex
 from pathlib import Path
@@ -17,27 +16,6 @@ from colure.arrays import ARCSEC, DEG, cartesian, separation
 from colure.audit import Numbers, Question, Stars
 from colure.moment import Moment
 from colure.stars import catalogue
-from colure_viewer.cli.main import main
-
-
-class Ran:
-    def __init__(self, code: int, out: str, err: str) -> None:
-        self.code, self.out, self.err = code, out, err
-
-    @property
-    def records(self) -> list[dict]:
-        return json.loads(self.out)
-
-
-@pytest.fixture
-def colure(capsys: pytest.CaptureFixture[str]):
-    def run(*words: str) -> Ran:
-        code = main(list(words))
-        out, err = capsys.readouterr()
-        return Ran(code, out, err)
-
-    return run
-
 
 # Verdicts
 

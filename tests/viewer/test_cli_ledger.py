@@ -12,29 +12,15 @@ import numpy as np
 import pytest
 
 from colure import names
-from colure_viewer.cli.main import main
-
-
-class Ran:
-    def __init__(self, code: int, out: str, err: str) -> None:
-        self.code, self.out, self.err = code, out, err
-
-    @property
-    def records(self) -> list[dict]:
-        return json.loads(self.out)
-
-    def step(self, name: str) -> dict:
-        return next(record for record in self.records if record["step"] == name)
 
 
 @pytest.fixture
-def colure(capsys: pytest.CaptureFixture[str]):
-    def run(*words: str) -> Ran:
-        code = main(["ledger", *words])
-        out, err = capsys.readouterr()
-        return Ran(code, out, err)
+def ledger(colure):
+    return lambda *words: colure("ledger", *words)
 
-    return run
+
+def step(ran, name: str) -> dict:
+    return next(record for record in ran.records if record["step"] == name)
 
 
 AT = ("--at", "2026-12-01 21:36")
@@ -42,8 +28,8 @@ JSON = ("--format", "json")
 BARNARD = ("269.452 4.6934", "--epoch", "J2000", "--pm", "-798.6", "10328.1", "--parallax", "548.3", "--rv", "-110.5")
 
 
-def test_json_carries_the_keys_of_the_documentation(colure):
-    ran = colure("mars", *AT, *JSON)
+def test_json_carries_the_keys_of_the_documentation(ledger):
+    ran = ledger("mars", *AT, *JSON)
     assert ran.code == 0
     keys = {"step", "size_arcsec", "pa_deg", "model", "uncertainty_arcsec", "lon_deg", "lat_deg", "frame", "place"}
     for record in ran.records:
@@ -62,13 +48,13 @@ def test_json_carries_the_keys_of_the_documentation(colure):
         (["--site", "Quern Hill"], "astrometric", "site"),
     ],
 )
-def test_defaults_follow_frame_and_origin(colure, words, place, origin):
-    record = colure("venus", *AT, *JSON, *words).records[0]
+def test_defaults_follow_frame_and_origin(ledger, words, place, origin):
+    record = ledger("venus", *AT, *JSON, *words).records[0]
     assert (record["place"], record["origin"]) == (place, origin)
 
 
-def test_every_step_of_the_observed_place_in_its_order(colure):
-    ran = colure("Aldebaran", *AT, *JSON, "--frame", "horizon", "--site", "Quern Hill")
+def test_every_step_of_the_observed_place_in_its_order(ledger):
+    ran = ledger("Aldebaran", *AT, *JSON, "--frame", "horizon", "--site", "Quern Hill")
     assert [record["step"] for record in ran.records] == [
         "catalogue position",
         "space motion",
@@ -90,19 +76,19 @@ def test_every_step_of_the_observed_place_in_its_order(colure):
 
 
 @pytest.mark.parametrize("target", ["HIP 87937", "TYC", "Gaia"])
-def test_a_star_by_any_of_its_numbers(colure, target):
+def test_a_star_by_any_of_its_numbers(ledger, target):
     known = names.identify(names.find("HIP 87937"))
     text = {"TYC": known.tycho, "Gaia": known.gaia}.get(target, target)
     assert text.startswith(target)
-    records = colure(text, *AT, *JSON).records
+    records = ledger(text, *AT, *JSON).records
     assert records[0]["kind"] == "star"
     # Barnard's star moves 10.36″ a year; 10.92 years from J2016.0.
     assert records[1]["size_arcsec"] == pytest.approx(10.39 * 10.92, rel=5e-3)
 
 
-def test_a_position_with_motion_meets_erfa(colure):
+def test_a_position_with_motion_meets_erfa(ledger):
     # ERFA's atci13 at the same TDB: its Earth is good to 1 mas here, which is what this allows; then its eo06a.
-    ran = colure(*BARNARD, *AT, *JSON, "--frame", "cirs", "--place", "apparent")
+    ran = ledger(*BARNARD, *AT, *JSON, "--frame", "cirs", "--place", "apparent")
     last = ran.records[-1]
     dec = np.deg2rad(4.6934)
     ri, di, _ = erfa.atci13(
@@ -114,68 +100,68 @@ def test_a_position_with_motion_meets_erfa(colure):
     assert (last["pm_lon_mas_yr"], last["epoch"]) == (-798.6, "J2000.0000")
 
 
-def test_a_covariance_is_carried_to_the_end(colure):
+def test_a_covariance_is_carried_to_the_end(ledger):
     words = ("10 20", *AT, "--pm", "0", "0", "--epoch", "J2016.0", "--covariance", "4 0 0 0 9 0 0 1 0 1")
-    record = colure(*words, *JSON).records[-1]
+    record = ledger(*words, *JSON).records[-1]
     years = (record["tt_jd"] - 2457388.5) / 365.25
     assert record["sigma_lon_arcsec"] == pytest.approx(1e-3 * np.sqrt(4.0 + years**2), rel=1e-3)
     assert record["sigma_lat_arcsec"] == pytest.approx(1e-3 * np.sqrt(9.0 + years**2), rel=1e-3)
-    assert "covariance carried" in colure(*words).out
+    assert "covariance carried" in ledger(*words).out
 
 
-def test_steps_can_be_left_out(colure):
+def test_steps_can_be_left_out(ledger):
     words = ("mars", *AT, *JSON, "--frame", "equator/true/date")
-    full, short = colure(*words), colure(*words, "--omit", "nutation", "--omit", "deflection")
-    assert full.step("nutation")["size_arcsec"] > 1.0
-    assert (short.step("nutation")["size_arcsec"], short.step("nutation")["omitted"]) == (0.0, True)
+    full, short = ledger(*words), ledger(*words, "--omit", "nutation", "--omit", "deflection")
+    assert step(full, "nutation")["size_arcsec"] > 1.0
+    assert (step(short, "nutation")["size_arcsec"], step(short, "nutation")["omitted"]) == (0.0, True)
     assert short.records[-1]["lon_deg"] != full.records[-1]["lon_deg"]
 
 
-def test_matrices_on_request(colure):
-    ran = colure("mars", *AT, *JSON, "--frame", "ecliptic/true/date", "--matrices")
+def test_matrices_on_request(ledger):
+    ran = ledger("mars", *AT, *JSON, "--frame", "ecliptic/true/date", "--matrices")
     product = np.eye(3)
     for record in ran.records:
         if record["matrix"] is not None:
             product = np.array(record["matrix"]) @ product
     assert np.abs(product @ product.T - np.eye(3)).max() < 1e-13
-    assert colure("mars", *AT, "--frame", "ecliptic/true/date", "--matrices").out.count("components before it") == 5
+    assert ledger("mars", *AT, "--frame", "ecliptic/true/date", "--matrices").out.count("components before it") == 5
 
 
-def test_csv_reads_back_to_the_json_figures(colure):
+def test_csv_reads_back_to_the_json_figures(ledger):
     words = ("moon", *AT, "--site", "Quern Hill", "--frame", "horizon")
-    rows = list(csv.DictReader(line for line in io.StringIO(colure(*words, "--format", "csv").out) if line[0] != "#"))
-    for row, record in zip(rows, colure(*words, *JSON).records, strict=True):
+    rows = list(csv.DictReader(line for line in io.StringIO(ledger(*words, "--format", "csv").out) if line[0] != "#"))
+    for row, record in zip(rows, ledger(*words, *JSON).records, strict=True):
         assert row["step"] == record["step"]
         assert float(row["lon_deg"]) == record["lon_deg"]
 
 
-def test_a_position_read_off_a_mount_is_led_back(colure):
+def test_a_position_read_off_a_mount_is_led_back(ledger):
     words = (*AT, *JSON, "--seen", "apparent", "--from", "equator/true/date", "--frame", "equator/true/date")
-    ran = colure("120.5 -30.25", *words)
+    ran = ledger("120.5 -30.25", *words)
     assert "back from the apparent place" in [record["step"] for record in ran.records]
     assert ran.records[-1]["lon_deg"] == pytest.approx(120.5, abs=1e-10)
     assert ran.records[-1]["lat_deg"] == pytest.approx(-30.25, abs=1e-10)
 
 
-def test_every_frame_with_differences_and_a_carried_angle(colure):
+def test_every_frame_with_differences_and_a_carried_angle(ledger):
     words = ("mars", *AT, "--every-frame", "--site", "Quern Hill")
-    ran = colure(*words, *JSON, "--against", "ecliptic/mean/J2000", "--pa", "-10")
+    ran = ledger(*words, *JSON, "--against", "ecliptic/mean/J2000", "--pa", "-10")
     rows = {record["frame"]: record for record in ran.records}
     # 50.29″ a year of precession over 26.9 years.
     assert rows["ecliptic/mean/date"]["dlon_arcsec"] == pytest.approx(50.29 * 26.92, abs=2.0)
     assert rows["ecliptic/mean/J2000"]["pa_deg"] == pytest.approx(350.0)
     assert rows["horizon"]["along_arcsec"] is not None
-    text = colure(*words).out
+    text = ledger(*words).out
     assert "Δλ cos β" in text
     assert "along" in text
-    without = colure("12 30", *AT, "--every-frame")
+    without = ledger("12 30", *AT, "--every-frame")
     assert "needs a site" in without.out
     assert "along" not in without.out
 
 
-def test_output_goes_to_a_file(colure, tmp_path: Path):
+def test_output_goes_to_a_file(ledger, tmp_path: Path):
     out = tmp_path / "x.json"
-    assert colure("mars", *AT, *JSON, "-o", str(out)).code == 0
+    assert ledger("mars", *AT, *JSON, "-o", str(out)).code == 0
     assert json.loads(out.read_text())[0]["body"] == "mars"
 
 
@@ -229,9 +215,9 @@ BAD = [
 
 
 @pytest.mark.parametrize(("words", "code", "needle"), BAD, ids=[" ".join(words)[:60] for words, _, _ in BAD])
-def test_bad_input_gets_one_clear_line(colure, monkeypatch, tmp_path, words, code, needle):
+def test_bad_input_gets_one_clear_line(ledger, monkeypatch, tmp_path, words, code, needle):
     monkeypatch.chdir(tmp_path)
-    ran = colure(*words)
+    ran = ledger(*words)
     assert ran.code == code, ran.err
     assert ran.out == ""
     assert needle in ran.err

@@ -7,23 +7,13 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
+from colure.session import PLACES, PROJECTIONS
 from colure_viewer.cli.main import Command
+from colure_viewer.themes import THEMES
 
 if TYPE_CHECKING:
     from colure.session import Session
 
-PROJECTIONS = (
-    "stereographic",
-    "gnomonic",
-    "azimuthal-equidistant",
-    "azimuthal-equal-area",
-    "orthographic",
-    "hammer",
-    "plate-carree",
-    "mercator",
-)
-PLACES = ("geometric", "astrometric", "apparent", "observed")
-THEMES = ("paper", "slate", "lamp")
 _SIZE = re.compile(r"(\d{2,5})\s*[x×]\s*(\d{2,5})(?:\s*@\s*(\d+(?:\.\d+)?))?\Z")
 
 
@@ -48,12 +38,10 @@ _SIZE = re.compile(r"(\d{2,5})\s*[x×]\s*(\d{2,5})(?:\s*@\s*(\d+(?:\.\d+)?))?\Z"
     help="One more circle; repeatable.",
 )
 @click.option("--no-circles", is_flag=True, help="Begin with no circle.")
-@click.option("--theme", type=click.Choice(THEMES), default="paper", show_default=True)
+@click.option("--theme", type=click.Choice(tuple(THEMES)), default="paper", show_default=True)
 @click.option("--size", default="1600x1000", show_default=True, metavar="WxH[@RATIO]", help="Pixels, and pixel ratio.")
 def command(output: Path, size: str, theme: str, **wanted: Any) -> None:
     """Draw a chart of SESSION (a session file; by default the demo) to a file. Needs no display."""
-    from colure_viewer.themes import THEMES as known
-
     width, height, ratio = _size(size)
     session = _session(wanted)
     from colure_viewer import export
@@ -62,7 +50,7 @@ def command(output: Path, size: str, theme: str, **wanted: Any) -> None:
     export.kind(output)
     export.application()
     chart = compose(session, width, height, ratio)
-    export.write(chart.scene, known[theme], output)
+    export.write(chart.scene, THEMES[theme], output)
     for line in filter(None, (export.remarks(chart.scene),)):
         click.echo(line, err=True)
 
