@@ -89,8 +89,10 @@ def _refined(window: Window, camera: Float, starts: I32) -> tuple[Float, I32]:
     if not suspect.any():
         return camera, starts
     after = following(camera.shape[1], starts)
-    swing = np.abs(np.arctan2(u * v[after] - v * u[after], u * u[after] + v * v[after])) > 0.17
-    swing &= suspect | suspect[after]
+    swing = suspect | suspect[after]
+    a = np.flatnonzero(swing)
+    b = after[a]
+    swing[a] = np.abs(np.arctan2(u[a] * v[b] - v[a] * u[b], u[a] * u[b] + v[a] * v[b])) > 0.17
     if not swing.any():
         return camera, starts
     parts = np.where(swing, 48, 1)

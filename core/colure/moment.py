@@ -236,9 +236,13 @@ class Moment:
         return mjd + 2400000.5, seconds / leapseconds.day_length(mjd)
 
     def _utc_parts(self) -> tuple[Any, Any]:
-        if not np.all(self.has_utc):
+        if not self._all_utc:
             raise MomentError(f"UTC does not exist at {self.isot('UT1')!s:.60} UT: {timescales.utc_span()}")
         return leapseconds.split_tt(self.tt1, self.tt2)
+
+    @property
+    def _all_utc(self) -> bool:
+        return self._once("all utc", lambda: bool(np.all(self.has_utc)))
 
     @property
     def has_utc(self) -> Bool | bool:
@@ -319,7 +323,7 @@ class Moment:
     @property
     def shown_scale(self) -> str:
         """The scale really used in print: UT1 in place of UTC where some of the moments have no UTC."""
-        return "UT1" if self.scale == "UTC" and not np.all(self.has_utc) else self.scale
+        return "UT1" if self.scale == "UTC" and not self._all_utc else self.scale
 
     @property
     def calendar_used(self) -> NDArray[np.str_] | str:
@@ -366,7 +370,7 @@ class Moment:
     def scale_label(self) -> str:
         """Return the scale as people read it: UT1 is `UT` where it only stands in for UTC."""
         shown = self.shown_scale
-        return "UT" if shown == "UT1" and not np.all(self.has_utc) else shown
+        return "UT" if shown == "UT1" and not self._all_utc else shown
 
     def text(self, decimals: int = 0) -> Any:
         """Return `2026-12-01 21:36:00 UTC`, with the calendar's name where a reader could take it for another."""

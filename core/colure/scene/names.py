@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass, field
 from functools import lru_cache
+from itertools import groupby
 from typing import Any
 
 import numpy as np
@@ -53,17 +54,18 @@ class Wanted:
         if not self.colours:
             return [Labels(self.role, self.texts, self.index[shown], xy, angle, **style)]  # type: ignore[arg-type]
         # Rows of one colour follow each other, so each colour is a slice.
+        index = self.index[shown]
         return [
-            Labels(self.role, self.texts, self.index[shown][own], xy[own], angle[own], colour=colour, **style)  # type: ignore[arg-type]
-            for colour, own in self._by_colour(shown)
+            Labels(self.role, self.texts, index[own], xy[own], angle[own], colour=colour, **style)  # type: ignore[arg-type]
+            for colour, own in self._runs(shown)
         ]
 
-    def _by_colour(self, shown: Any) -> list[tuple[str | None, Any]]:
-        colours = [self.colours[i] for i in shown.tolist()]
-        groups: dict[str | None, list[int]] = {}
-        for i, colour in enumerate(colours):
-            groups.setdefault(colour, []).append(i)
-        return [(colour, np.array(own)) for colour, own in groups.items()]
+    def _runs(self, shown: Any) -> list[tuple[str | None, slice]]:
+        out: list[tuple[str | None, slice]] = []
+        at = 0
+        for colour, run in groupby(self.colours[i] for i in shown.tolist()):
+            out.append((colour, slice(at, at := at + sum(1 for _ in run))))
+        return out
 
 
 def height(size_pt: float) -> float:

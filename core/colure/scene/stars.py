@@ -86,7 +86,8 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
     if ctx.projector.projection.name == "mercator":
         shown &= ctx.projector.on_sky(camera)
     inside = np.flatnonzero(shown)
-    x, y = x[inside], y[inside]
+    if len(inside) < len(x):
+        x, y = x[inside], y[inside]
     keep = _thin(x - (ctx.frame[0] - 16.0), y - (ctx.frame[1] - 16.0), ctx.page.width + 32, ctx.page.height + 32)
     xy = np.empty((len(keep), 2), dtype=np.float32)
     xy[:, 0] = x[keep]
