@@ -128,11 +128,24 @@ class Trace:
             begins = firsts[first_at[k] : first_at[k + 1]] - point_at[k]
             mine = group == k
             if mine.any():
-                extra = self.cut_xy[np.repeat(mine, 2)]
-                begins = np.concatenate([begins, len(own) + np.arange(0, len(extra), 2)])
+                extra, first = _chained(self.cut_xy[np.repeat(mine, 2)])
+                begins = np.concatenate([begins, len(own) + first])
                 own = np.concatenate([own, extra])
             out.append((own, np.append(begins, len(own)).astype(np.int32)))
         return out
+
+
+def _chained(ends: F32) -> tuple[F32, NDArray[np.intp]]:
+    """Return pieces, given by their ends in pairs (2k, 2), as polylines: points, and the first point of each.
+
+    Pieces that meet become one polyline: a painter has far fewer to draw, and no joints show.
+    """
+    meets = np.zeros(len(ends), dtype=bool)
+    meets[2::2] = (ends[2::2] == ends[1:-1:2]).all(axis=1)
+    kept = np.flatnonzero(~meets)
+    first = np.zeros(len(ends), dtype=bool)
+    first[::2] = True
+    return ends[kept], np.flatnonzero(first[kept])
 
 
 def trace(window: Window, camera: Real, starts: I32) -> Trace:
