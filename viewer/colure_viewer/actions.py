@@ -42,6 +42,7 @@ COMMANDS = (
     Command("&Edit", "copy_direction", "Copy the direction in every &frame", "Ctrl+Alt+C"),
     RULE,
     Command("&Edit", "find_name", "&Find a name…", S.Find),
+    Command("&Edit", "open_audit", "&Which frame is this coordinate in?…", "Ctrl+Shift+A"),
     Command("&View", "zoom_in", "Zoom &in", "Ctrl++"),
     Command("&View", "zoom_out", "Zoom &out", "Ctrl+-"),
     Command("&View", "whole_sky", "&Whole sky", "Ctrl+0"),

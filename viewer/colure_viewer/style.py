@@ -55,10 +55,11 @@ def sheet(theme: Theme) -> str:
     QLineEdit, QComboBox, QDoubleSpinBox, QSpinBox, QPlainTextEdit {{
         background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")}; padding: 2px 5px; min-height: 20px;
         selection-background-color: {c("accent")}; selection-color: {c("on.accent")}; }}
-    QLineEdit:focus, QComboBox:focus, QDoubleSpinBox:focus, QTableView:focus, QListView:focus {{
+    QLineEdit:focus, QComboBox:focus, QDoubleSpinBox:focus, QPlainTextEdit:focus, QTableView:focus,
+    QListView:focus {{
         border: 1px solid {c("accent")}; }}
     QComboBox QLineEdit, QComboBox QLineEdit:focus {{ border: 0; padding: 0; min-height: 18px; }}
-    QLineEdit[fault="true"], QComboBox QLineEdit[fault="true"] {{
+    QLineEdit[fault="true"], QComboBox QLineEdit[fault="true"], QPlainTextEdit[fault="true"] {{
         border: 1px solid {c("fault")}; color: {c("fault")}; }}
     QComboBox QAbstractItemView {{ background: {c("field")}; color: {c("ink")}; border: 1px solid {c("rule")};
         selection-background-color: {c("accent")}; selection-color: {c("on.accent")}; }}

@@ -1,6 +1,7 @@
 """The window: its panels and menus, which come after the first chart, and the commands on its own looks."""
 
 from functools import partial
+from typing import TYPE_CHECKING
 
 from PySide6.QtCore import QSettings
 from PySide6.QtGui import QAction, QCloseEvent
@@ -11,12 +12,16 @@ from colure_viewer.acting import Acting
 from colure_viewer.desk import Desk
 from colure_viewer.themes import THEMES
 
+if TYPE_CHECKING:
+    from colure_viewer.panels.audit import AuditDialog
+
 
 class Window(Acting):
     """Colure's window over one desk; panels are made after the first chart is on the screen."""
 
     def __init__(self, desk: Desk, settings: QSettings | None = None) -> None:
         super().__init__(desk, settings)
+        self.audit: AuditDialog | None = None
         desk.changed.connect(self._changed)
         desk.themed.connect(self._themed)
         self.chart.painted.connect(self.finish)
@@ -90,6 +95,16 @@ class Window(Acting):
         """Ask for a table or an image header and lay it on the chart."""
         if self.left is not None:
             self.left.overlays.open()
+
+    def open_audit(self) -> None:
+        """Ask which frame a coordinate is in; the dialog may stay open beside the chart."""
+        from colure_viewer.panels.audit import AuditDialog
+
+        if self.audit is None:
+            self.audit = AuditDialog(self.desk, self.jobs, self)
+        self.audit.refresh()
+        self.audit.show()
+        self.audit.activateWindow()
 
     # Focus, looks, help
 
