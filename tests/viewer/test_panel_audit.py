@@ -51,7 +51,7 @@ def ask(qtbot, dialog, positions, against=""):
     dialog.positions.setPlainText(positions)
     type_into(qtbot, dialog.against, against)
     dialog.audit_button.click()
-    qtbot.waitUntil(lambda: not dialog._jobs.busy, timeout=20000)
+    qtbot.waitUntil(lambda: not dialog.jobs.busy, timeout=20000)
 
 
 def mars(moment, frame, place):
@@ -132,7 +132,7 @@ def test_a_bad_entry_is_marked_in_place_and_nothing_is_asked(qtbot, dialog, wher
     type_into(qtbot, field, text)
     assert needle.casefold() in field.fault.casefold()
     dialog.audit_button.click()
-    assert not dialog._jobs.busy
+    assert not dialog.jobs.busy
     assert dialog.answer is None
     qtbot.keyClick(field, Qt.Key.Key_Escape)
     assert field.fault is None

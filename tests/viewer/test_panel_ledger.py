@@ -102,6 +102,32 @@ def test_a_step_left_out_in_the_session_is_unticked(window, panel):
     assert panel.model.data(index, Qt.ItemDataRole.CheckStateRole) == Qt.CheckState.Checked
 
 
+def test_steps_left_out_that_this_ledger_has_not_are_said_and_can_be_taken_in(qtbot, window, panel):
+    assert not panel.left_out.isVisibleTo(panel)
+    type_into(qtbot, panel.frame, "galactic")
+    window.desk.put(replace(window.desk.session, omitted=("refraction",)), "test")
+    assert "refraction" not in [line.step for line in panel.model.lines]
+    assert "refraction" in panel.left_out.text()
+    window.desk.select(None)
+    assert panel.left_out.isVisibleTo(panel)
+    panel.take_in.click()
+    assert window.desk.session.omitted == ()
+    assert not panel.left_out.isVisibleTo(panel)
+    assert not panel.take_in.isVisibleTo(panel)
+
+
+def test_arrows_go_with_a_body_while_time_runs(window, panel):
+    window.desk.select(pointing.body(window.chart.sky, "moon"))
+    session = window.desk.session
+    view = replace(session.view, centre=replace(session.view.centre, body="uranus"), width_deg=360.0)
+    window.desk.put(replace(session, view=replace(view, projection="hammer")), "test")
+    window.desk.pass_by(replace(window.desk.session, moment=session.moment.shifted(0.5)), "run")
+    laid = panel._arrows.laid
+    there = window.chart.scene.projector.project(window.chart.sky["bodies"].vector("moon"))
+    assert (laid.x, laid.y) == pytest.approx(tuple(map(float, there)), abs=1e-6)
+    window.desk.settle()
+
+
 def test_a_line_that_cannot_be_left_out_has_no_box(qtbot, window, panel):
     index = panel.model.index(0, 0)
     assert panel.model.data(index, Qt.ItemDataRole.CheckStateRole) is None

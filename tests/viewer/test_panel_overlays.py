@@ -132,6 +132,19 @@ def test_a_file_that_is_no_table_is_reported_and_the_session_kept(qtbot, window,
     assert window.desk.session == before
 
 
+def test_reading_can_be_given_up_and_is_not_pushed_aside_by_other_work(qtbot, window, panel, stars):
+    before = window.desk.session
+    panel.open_path(stars)
+    assert panel.jobs.busy
+    window.jobs.run("other work", lambda: 1, lambda _: None, lambda _: None)
+    assert panel.jobs.busy
+    panel.jobs.cancel()
+    panel.jobs.wait()
+    qtbot.wait(50)
+    assert window.findChild(AskDialog) is None
+    assert window.desk.session == before
+
+
 def test_a_declared_frame_can_be_changed_and_moves_it(qtbot, window, panel, stars):
     add(qtbot, panel, stars, frame="icrs")
     before = window.chart.sky["overlays"][0].columns.copy()

@@ -52,7 +52,7 @@ class Window(Acting):
         self.hand.hovered.connect(self._hovered)
         self.hand.measured.connect(self.right.measure.show_text)
         self.right.ledger.attach(self.chart)
-        self.left.overlays.attach(self.jobs, self.chart)
+        self.left.overlays.attach(self.chart)
         self.chart.use_jobs(self.jobs)
         self.chart.setFocus()
         self.progress = Progress(self.jobs)
@@ -61,6 +61,7 @@ class Window(Acting):
         foot.setContentsMargins(10, 0, 10, 0)
         foot.addWidget(self._hover, 1)
         foot.addWidget(self.progress)
+        foot.addWidget(Progress(self.left.overlays.jobs))
         for name in ("toggle_left", "toggle_right"):
             self._check(name, True)
         self._changed(False)
@@ -101,7 +102,7 @@ class Window(Acting):
         from colure_viewer.panels.audit import AuditDialog
 
         if self.audit is None:
-            self.audit = AuditDialog(self.desk, self.jobs, self)
+            self.audit = AuditDialog(self.desk, self)
         self.audit.refresh()
         self.audit.show()
         self.audit.activateWindow()
@@ -212,5 +213,8 @@ class Window(Acting):
             return
         self._stop()
         self.jobs.wait()
+        for part in (self.audit, self.left.overlays if self.left is not None else None):
+            if part is not None:
+                part.jobs.wait()
         self.settings.setValue("size", self.size())
         event.accept()

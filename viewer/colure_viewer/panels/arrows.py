@@ -25,6 +25,7 @@ class StepArrows(QWidget):
         self._desk, self._chart = desk, chart
         self._ledger: Ledger | None = None
         self._direction: Float | None = None
+        self._body = ""
         self._chosen: str | None = None
         self._factor: float | None = None
         self.setAttribute(Qt.WidgetAttribute.WA_TransparentForMouseEvents)
@@ -47,12 +48,21 @@ class StepArrows(QWidget):
         chart = self._chart.current
         if self._ledger is None or self._direction is None or chart is None:
             return None
-        return lay(self._ledger, self._direction, chart.scene, chosen=self._chosen, factor=self._factor)
+        # While time runs a body moves at every frame, its figures only a few times a second.
+        moving = chart.sky["bodies"].vector(self._body) if self._body else None
+        direction = self._direction if moving is None else moving
+        return lay(self._ledger, direction, chart.scene, chosen=self._chosen, factor=self._factor)
 
     def show_ledger(
-        self, ledger: Ledger | None, direction: Float | None, chosen: str | None, factor: float | None
+        self,
+        ledger: Ledger | None,
+        direction: Float | None,
+        chosen: str | None,
+        factor: float | None,
+        body: str = "",
     ) -> None:
-        """Show the arrows of a ledger about a direction (3,), or none."""
+        """Show the arrows of a ledger about a direction (3,), or about a body of the chart, or none."""
+        self._body = body
         if (ledger, chosen, factor) != (self._ledger, self._chosen, self._factor) or direction is not self._direction:
             self._ledger, self._direction, self._chosen, self._factor = ledger, direction, chosen, factor
             self.update()

@@ -36,6 +36,7 @@ from colure_viewer.jobs import Jobs
 from colure_viewer.panels import auditing, labels
 from colure_viewer.panels.asking import parse_frame
 from colure_viewer.panels.auditing import Answer, Asked
+from colure_viewer.panels.sides import Progress
 
 HINT = (
     "Type one position as it was given to you, with all its digits, and what it should be the position of. Without a "
@@ -79,10 +80,12 @@ class PositionsEdit(QPlainTextEdit):
 class AuditDialog(QDialog):
     """Asks and answers; it may stay open beside the chart."""
 
-    def __init__(self, desk: Desk, jobs: Jobs, parent: QWidget | None = None) -> None:
+    def __init__(self, desk: Desk, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.setWindowTitle("Which frame is this coordinate in?")
-        self._desk, self._jobs = desk, jobs
+        self._desk = desk
+        # Work of its own: neither the chart's stars nor an export take its place.
+        self.jobs = Jobs(self)
         self._claim: str | None = None
         self._moment: Moment | None = None
         self._rounding: float | None = None
@@ -197,6 +200,7 @@ class AuditDialog(QDialog):
         foot = QHBoxLayout()
         foot.addWidget(self.site)
         foot.addStretch(1)
+        foot.addWidget(Progress(self.jobs, self))
         foot.addWidget(self.audit_button)
         mend = QHBoxLayout()
         mend.setSpacing(4)
@@ -334,7 +338,7 @@ class AuditDialog(QDialog):
         asked = Asked(
             numbers, self.overlay, self.against.value, self._at(), site, self._claim, self.place.currentData()
         )
-        self._jobs.run("Auditing", lambda: auditing.answer(asked), self._show, self._refused)
+        self.jobs.run("Auditing", lambda: auditing.answer(asked), self._show, self._refused)
 
     def _refused(self, reason: str) -> None:
         self._show(None)

@@ -1,7 +1,7 @@
 """The ledger of the selected direction: its steps with their sizes, switches and arrows, and copying."""
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from functools import partial
 
 import numpy as np
@@ -15,9 +15,7 @@ from colure.errors import ColureError
 from colure.everyframe import FRAMES
 from colure.ledger import Ledger
 from colure.ledger.printing import CAUTION, near_sun
-from colure.reduction import Observer
 from colure.session import PLACES, Session
-from colure.sky import observer_of
 from colure.stepnames import STEPS
 from colure_viewer.chart import ChartWidget
 from colure_viewer.desk import Desk
@@ -26,42 +24,12 @@ from colure_viewer.panels import labels
 from colure_viewer.panels.arrows import StepArrows
 from colure_viewer.panels.direction import frame_words
 from colure_viewer.panels.steps import StepsModel, StepsView
+from colure_viewer.panels.subject import Subject, reduced
 
 EMPTY = "Click a star, a body or any point of the chart to see every step of its reduction; or follow the pointer."
 FACTORS = (1.0, 10.0, 100.0, 1e3, 1e4, 1e5, 1e6)
 RUNNING_MS = 150
 """While time runs the figures follow a few times a second."""
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Subject:
-    """What the ledger is of: an object or a direction as the chart has it; `key` tells one from another."""
-
-    kind: str
-    row: int
-    name: str
-    vector: np.ndarray
-    sigma_arcsec: float
-
-    @property
-    def key(self) -> tuple[object, ...]:
-        """What its ledger depends on."""
-        moving = self.kind in (pointing.BODIES, pointing.STARS)
-        return (self.kind, self.row, self.name, None if moving else tuple(self.vector.tolist()))
-
-
-def reduced(subject: Subject, session: Session, frame: str, place: str | None) -> Ledger:
-    """Return the ledger of what a chart shows: a body and a star from their own data, all else led back first."""
-    observer: Observer = observer_of(session)
-    asked = {"observer": observer, "place": place, "frame": frame, "omitted": session.omitted}
-    if subject.kind == pointing.BODIES:
-        return ledger.body(subject.name.casefold(), session.moment, **asked)  # type: ignore[arg-type]
-    if subject.kind == pointing.STARS:
-        return ledger.star(subject.row, session.moment, name=subject.name, **asked)
-    return ledger.direction(
-        subject.vector, session.moment, seen=session.place, name=subject.name,
-        sigma_arcsec=subject.sigma_arcsec, **asked,  # type: ignore[arg-type]
-    )  # fmt: skip
 
 
 class LedgerPanel(QWidget):
@@ -142,6 +110,10 @@ class LedgerPanel(QWidget):
         self.scale = QLabel(self)
         self.scale.setObjectName("muted")
         self.scale.setWordWrap(True)
+        self.left_out = labels.lines(self, "Steps that are left out of the chart", "notice")
+        self.take_in = QPushButton("Take all in", self)
+        self.take_in.setToolTip("Take every step that is left out in again")
+        self.take_in.clicked.connect(self._take_all_in)
         self.matrices = QCheckBox("matrices", self)
         self.matrices.setToolTip("Copy the matrices of the turns as well, as text and as JSON")
         self.copies = {kind: QPushButton(text, self) for kind, text in _COPIES}
@@ -184,6 +156,8 @@ class LedgerPanel(QWidget):
         column.addWidget(self.table)
         column.addWidget(self.end)
         column.addWidget(self.caution)
+        column.addWidget(self.left_out)
+        column.addWidget(self.take_in, 0, Qt.AlignmentFlag.AlignLeft)
         column.addLayout(drawn)
         column.addWidget(self.scale)
         column.addWidget(self.follow)
@@ -253,7 +227,9 @@ class LedgerPanel(QWidget):
             subject.key, session.moment, session.site, session.from_site, session.place, session.omitted,
             self.frame_in_force, place,
         )  # fmt: skip
-        if key == self._key and key is not None:
+        if key is None:
+            self._show_left_out()
+        elif key == self._key:
             if subject is not None and self.subject is not None:
                 self.subject = subject
             self._show_arrows()
@@ -269,6 +245,7 @@ class LedgerPanel(QWidget):
 
     def _show(self, fault: str) -> None:
         found, subject = self.found, self.subject
+        self._show_left_out()
         self.title.setText("Ledger" if subject is None else f"Ledger · {subject.name}")
         for part in (self.table, self.end, self.arrows, self.factor, self.scale, self.matrices, self._copy_label,
                      *self.copies.values()):  # fmt: skip
@@ -290,6 +267,13 @@ class LedgerPanel(QWidget):
         self.table.fit()
         self._show_arrows()
 
+    def _show_left_out(self) -> None:
+        """Say what the whole chart does without: this ledger need not have those steps."""
+        omitted = self._desk.session.omitted
+        self.left_out.setText(f"The whole chart is without {', '.join(omitted)}." if omitted else "")
+        self.left_out.setVisible(bool(omitted))
+        self.take_in.setVisible(bool(omitted))
+
     def _show_arrows(self) -> None:
         if self._arrows is None:
             return
@@ -299,6 +283,7 @@ class LedgerPanel(QWidget):
             self.subject.vector if shown and self.subject is not None else None,
             self.table.step,
             self.factor.currentData(),
+            self.subject.name.casefold() if self.subject and self.subject.kind == pointing.BODIES else "",
         )
         self.factor.setEnabled(self.arrows.isChecked())
         text = ""
@@ -346,6 +331,11 @@ class LedgerPanel(QWidget):
             return replace(s, omitted=tuple(name for name in STEPS if name in left))
 
         reason = self._desk.edit(make, f"{'take in' if on else 'leave out'} {step}")
+        if reason is not None:
+            self._desk.faulted.emit(reason)
+
+    def _take_all_in(self) -> None:
+        reason = self._desk.edit(lambda s: replace(s, omitted=()), "take all steps in")
         if reason is not None:
             self._desk.faulted.emit(reason)
 

@@ -47,7 +47,8 @@ class OverlaysPanel(QWidget):
     def __init__(self, desk: Desk, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._desk = desk
-        self._jobs: Jobs | None = None
+        # Work of its own: neither the chart's stars nor an export take its place.
+        self.jobs = Jobs(self)
         self._chart: ChartWidget | None = None
         self._filling = False
         self._seen: object = None
@@ -152,9 +153,9 @@ class OverlaysPanel(QWidget):
         column.addLayout(buttons)
         column.addWidget(self.parts)
 
-    def attach(self, jobs: Jobs, chart: ChartWidget) -> None:
-        """Let slow work be done beside the window, and the chart be composed anew after it."""
-        self._jobs, self._chart = jobs, chart
+    def attach(self, chart: ChartWidget) -> None:
+        """Let a chart be composed anew when files have changed."""
+        self._chart = chart
 
     # Showing
 
@@ -232,7 +233,7 @@ class OverlaysPanel(QWidget):
         self.enlarge.setEnabled(overlay.arrows)
         found = stored.match(overlay)
         self.arrows.setEnabled(found is not None or overlay.arrows)
-        stale = " It was matched in another frame: match it again." if overlay.arrows else ""
+        stale = " Its residuals need a match in this frame and epoch: match it again." if overlay.arrows else ""
         self.result.setText(
             "Not matched to the catalogue." + stale if found is None else "\n".join(matched.lines(found))
         )
@@ -301,7 +302,7 @@ class OverlaysPanel(QWidget):
             else:
                 self.ask(found)
 
-        self._run(f"Reading {path.name}", work, done, self._desk.faulted.emit)
+        self.jobs.run(f"Reading {path.name}", work, done, self._desk.faulted.emit)
 
     def ask(self, found: Any) -> QDialog:
         """Ask for what a file leaves out; the form stays open until its answers do."""
@@ -314,7 +315,7 @@ class OverlaysPanel(QWidget):
                 self.add(overlay)
 
             work = partial(opening.declare, found, **answers)
-            self._run(f"Reading {Path(found.path).name}", work, done, dialog.refuse)
+            self.jobs.run(f"Reading {Path(found.path).name}", work, done, dialog.refuse)
 
         dialog = AskDialog(found, take, self.window())
         dialog.open()
@@ -366,13 +367,7 @@ class OverlaysPanel(QWidget):
                 self._change("match to the catalogue", now.index(overlay), arrows=True)
             self._renew()
 
-        self._run(f"Matching {overlay.title}", partial(matching.match, overlay), done, self._desk.faulted.emit)
-
-    def _run(
-        self, title: str, work: Callable[[], Any], done: Callable[[Any], None], failed: Callable[[str], None]
-    ) -> None:
-        assert self._jobs is not None
-        self._jobs.run(title, work, done, failed)
+        self.jobs.run(f"Matching {overlay.title}", partial(matching.match, overlay), done, self._desk.faulted.emit)
 
     def _renew(self) -> None:
         """Show what the store holds now."""
