@@ -74,6 +74,8 @@ def pole(jd1: Float | float, jd2: Float | float) -> tuple[Float, Float]:
     Outside the table, where the pole is not known, they fall to zero within a year (0.3″ is 10 m on the ground).
     """
     first, last = span()
+    if isinstance(jd1, float) and isinstance(jd2, float):
+        return _pole_once(jd1, jd2, first, last)
     j1, j2 = np.asarray(jd1, dtype=np.float64), np.asarray(jd2, dtype=np.float64)
     before, after = (first - j1) - j2, (j1 - last) + j2
     weight = np.clip(1.0 - np.maximum(before, after) / _FADE, 0.0, 1.0)
@@ -83,3 +85,15 @@ def pole(jd1: Float | float, jd2: Float | float) -> tuple[Float, Float]:
     scale = weight * (1e-6 * ARCSEC)
     x, y = ((row[index] + (row[index + 1] - row[index]) * part) * scale for row in (table[2], table[3]))
     return x, y
+
+
+def _pole_once(jd1: float, jd2: float, first: float, last: float) -> tuple[Float, Float]:
+    """Return the same for one moment in Python's numbers, three times as fast as arrays of no dimension."""
+    table = _table()
+    weight = min(max(1.0 - max((first - jd1) - jd2, (jd1 - last) + jd2) / _FADE, 0.0), 1.0)
+    days = (jd1 - MJD0 - int(table[0, 0])) + jd2
+    i = min(max(math.floor(days - 8e-4), 0), table.shape[1] - 2)
+    part = min(max(days - i - int(table[1, i]) * (1e-7 / _DAY), 0.0), 1.0)
+    scale = weight * (1e-6 * ARCSEC)
+    x, y = ((int(row[i]) + (int(row[i + 1]) - int(row[i])) * part) * scale for row in (table[2], table[3]))
+    return np.asarray(x), np.asarray(y)

@@ -62,8 +62,9 @@ def test_stars_move_by_parts_of_a_pixel(qapp):
         assert np.abs(np.array(places) - truth).max() < 0.2
 
 
-def test_many_stars_are_drawn_as_few_are(qapp):
+def test_many_stars_are_drawn_as_few_are(qapp, monkeypatch):
     """The bands of the fast path change nothing but the order of stars far apart."""
+    monkeypatch.setattr(paint, "FEW_STARS", 1500)
     rng = np.random.default_rng(5)
     count = 4000
     xy = (rng.random((count, 2)) * [600, 500]).astype(np.float32)

@@ -22,7 +22,8 @@ from colure_viewer.themes import Theme, mix
 F64 = NDArray[np.float64]
 
 MAX_STAR_ATLASES = 12
-FEW_STARS = 1500
+FEW_STARS = 12000
+"""Up to this many, fetching the page in bands costs more than the waiting."""
 FEW_POINTS = 200
 FEW_LINES = 12
 BAND_BYTES = 524288
