@@ -7,7 +7,7 @@ import pytest
 from PySide6.QtCore import QSettings, Qt
 from PySide6.QtWidgets import QDialogButtonBox
 
-from colure import frames, tables
+from colure import frames, session_file, tables
 from colure.arrays import DEG, spherical
 from colure.overlays import opening
 from colure.overlays.store import STORE
@@ -210,6 +210,25 @@ def test_a_missing_file_is_a_shown_state_and_can_come_back(qtbot, window, panel,
     panel.again_button.click()
     assert panel.table.item(0, 1).text() == "200 rows"
     assert not panel.again_button.isVisibleTo(panel)
+
+
+def test_a_session_with_overlays_opens_after_its_files_were_read(qtbot, window, panel, stars, tmp_path):
+    overlay = opening.open_file(stars, frame="icrs")
+    path = tmp_path / "saved.toml"
+    session_file.write(replace(window.desk.session, overlays=(overlay,)), path)
+    STORE.clear()
+    assert window.open_path(path)
+    assert panel.jobs.busy
+    assert window.desk.path is None
+    qtbot.waitUntil(lambda: window.desk.path == path)
+    assert panel.table.item(0, 1).text() == "200 rows"
+    # A file that has gone does not keep the session from opening.
+    window.new_session()
+    STORE.clear()
+    stars.unlink()
+    window.open_path(path)
+    qtbot.waitUntil(lambda: window.desk.path == path)
+    assert panel.table.item(0, 1).text() == "missing"
 
 
 def test_rows_that_fail_are_listed_by_number(qtbot, panel, tmp_path):

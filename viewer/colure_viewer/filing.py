@@ -38,6 +38,26 @@ class Filing(Shell):
 
         try:
             session, report = session_file.read(path)
+        except ColureError as fault:
+            self.say(str(fault))
+            self._forget(path)
+            return False
+        if session.overlays:
+            from colure_viewer.panels import stored
+
+            if not stored.ready(session) and self.left is not None:
+                # Other people's files may be large: they are read beside the window, and then the session is opened.
+                def done(_read: None) -> None:
+                    self._put_up(session, path, report)
+
+                work = partial(stored.read_all, session)
+                self.left.overlays.jobs.run(f"Reading overlays of {path.name}", work, done, self.say)
+                return True
+        return self._put_up(session, path, report)
+
+    def _put_up(self, session: Session, path: Path, report: tuple[str, ...]) -> bool:
+        """Show a session that was read; one that cannot be drawn is reported, and the old one stays."""
+        try:
             self.chart.check(session)
         except ColureError as fault:
             self.say(str(fault))
