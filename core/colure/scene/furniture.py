@@ -9,6 +9,7 @@ from colure.fontmetrics import PX_PER_PT, width_px
 from colure.frames import Frame
 from colure.graduation import figure
 from colure.marks import Discs, Labels, Layer, Mark
+from colure.moment import Moment
 from colure.scene.context import Context
 from colure.scene.layout import Layout
 from colure.scene.stars import scale_of
@@ -92,12 +93,18 @@ def title(ctx: Context) -> Layer:
         return Layer("title", (), key, clip=False)
     left, right = ctx.frame[0] - 7.0, ctx.frame[2] + 7.0
     # The moment apart from the rest: while time runs, nothing else of the block changes.
-    moment = _block((("left", 0, str(session.moment.text())),), page, left, right)
+    moment = _block((("left", 0, _moment_text(session.moment)),), page, left, right)
     steady = _block(
         _steady_lines(session.site, session.from_site, session.place, session.omitted, view), page, left, right
     )
     legend = _legend(ctx.limit, "stars" in ctx.sky.layers, right, page.below[rows - 1], page.below[0])
     return Layer("title", (moment, steady, *legend), key, clip=False)
+
+
+@lru_cache(maxsize=4)
+def _moment_text(moment: Moment) -> str:
+    """Return the moment as it is printed; kept while the view alone changes."""
+    return str(moment.text())
 
 
 @lru_cache(maxsize=16)
