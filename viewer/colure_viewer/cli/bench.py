@@ -26,6 +26,7 @@ FIGURES = {
     "audit_one": "audits",
     "audit_table_100k": "audits",
     "pointer_ledger": "ledgers",
+    "pointer_panel": "panels",
     "overlay_pan_100k": "overlays",
     "overlay_match_100k": "overlays",
 }

@@ -14,6 +14,8 @@ from colure.overlays.opening import FRAMES_OF, UNITS, Found, Missing
 from colure_viewer.entry import Entry
 
 CHOOSE = "choose…"
+SHOWN = 5
+"""Remarks on a file that are listed: a form must fit the screen."""
 WIDTH, PADDING = 440, 8
 NAMES = {
     "lon": "column of longitudes",
@@ -82,7 +84,9 @@ class AskDialog(QDialog):
             self.epoch = Entry("Epoch of the positions, a Julian year", self._typed_epoch, self)
             column.addWidget(self.epoch)
         said = [f"{NAMES.get(key, key)}: {rule}" for key, rule in found.rules.items() if key not in self._needed]
-        said += list(found.doubts)
+        said += found.doubts[:SHOWN]
+        if len(found.doubts) > SHOWN:
+            said.append(f"… and {len(found.doubts) - SHOWN} more remarks")
         if said:
             self._say(column, "What it says", "heading")
             self._say(column, "\n".join(said), "muted")

@@ -1,6 +1,7 @@
 """What the audit's dialog asks of the core, and the answer as lines; no widget here, so that it can run beside it."""
 
 import math
+import shlex
 from dataclasses import dataclass
 from typing import Any
 
@@ -219,7 +220,7 @@ def _of_fit(found: TableFit, notes: tuple[str, ...], asked: Asked, path: str) ->
     if len(bad):
         shown = ", ".join(map(str, bad[:20])) + (f" … {len(bad)} in all" if len(bad) > 20 else "")
         lines.append(f"rows that do not agree with their star: {shown}")
-    command = f"colure convert --table '{path}' --from {best.frame} --to {asked.claim or 'icrs'}"
+    command = f"colure convert --table {shlex.quote(path)} --from {best.frame} --to {asked.claim or 'icrs'}"
     return Answer("class" if unsure else "fitted", verdict, tuple(lines), (), (command,) if path else ())
 
 
