@@ -2,7 +2,7 @@
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from functools import cache
+from functools import cache, lru_cache
 from itertools import groupby, pairwise
 
 import numpy as np
@@ -16,7 +16,7 @@ from colure_viewer import strokes
 from colure_viewer.atlas import StarAtlas
 from colure_viewer.bodyshapes import draw_bodies
 from colure_viewer.lettering import Lettering
-from colure_viewer.primitives import Batch, fragments, lines, path, polygon
+from colure_viewer.primitives import Batch, fragments, lines, passing, path
 from colure_viewer.themes import Theme, mix
 
 F64 = NDArray[np.float64]
@@ -60,6 +60,12 @@ def _kit() -> Kit:
     return Kit()
 
 
+@lru_cache(maxsize=64)
+def _thin_pen(colour: str) -> QPen:
+    """Return the pen of a colour that draws one device pixel wide."""
+    return QPen(QColor(colour), 1.0)
+
+
 def draw(scene: Scene, theme: Theme, painter: QPainter, kit: Kit | None = None) -> None:
     """Paint a whole chart at the origin of the painter's device.
 
@@ -91,7 +97,6 @@ class _Raster:
         self.memory: NDArray[np.uint64] | None = None
         self.ground: QColor | None = None
         """The colour of the sky while nothing else is painted on it."""
-        self.pens: dict[str, QPen] = {}
         self.methods: dict[type, Callable[..., None]] = {
             marks.Areas: self.areas,
             marks.Lines: self.lines,
@@ -134,10 +139,7 @@ class _Raster:
         painter.restore()
 
     def _pen(self, colour: str) -> None:
-        pen = self.pens.get(colour)
-        if pen is None:
-            pen = self.pens[colour] = QPen(QColor(colour), 1.0)
-        self.painter.setPen(pen)
+        self.painter.setPen(_thin_pen(colour))
         self.painter.setBrush(NO_BRUSH)
         self.painter.setRenderHint(QPainter.RenderHint.Antialiasing, True)
 
@@ -162,10 +164,10 @@ class _Raster:
         if mark.even_odd and len(mark.starts) > FEW_LINES:
             painter.drawPath(path(points, mark.starts))
         elif mark.even_odd:
-            painter.drawPolygon(polygon(strokes.bridged(points, mark.starts)))
+            painter.drawPolygon(passing(strokes.bridged(points, mark.starts)))
         else:
             for a, b in zip(mark.starts[:-1].tolist(), mark.starts[1:].tolist(), strict=True):
-                painter.drawPolygon(polygon(points[a:b]))
+                painter.drawPolygon(passing(points[a:b]))
 
     def lines(self, mark: marks.Lines) -> None:
         """Draw polylines as parallels one pixel wide, or as short strokes where they are dashed."""
@@ -195,7 +197,7 @@ class _Raster:
             for place in places:
                 moved = points if normal is None else points + place * normal
                 for a, b in pairwise(ends):
-                    self.painter.drawPolyline(polygon(moved[a:b]))
+                    self.painter.drawPolyline(passing(moved[a:b]))
         elif normal is None:
             self.painter.drawPath(path(points, mark.starts))
         else:

@@ -5,6 +5,7 @@ shiboken is asked for a wrapper of the first struct at the array's address; noth
 """
 
 import ctypes
+from functools import lru_cache
 from typing import Any, Generic, TypeVar, cast
 
 import numpy as np
@@ -64,15 +65,34 @@ def fragments() -> Batch[QPainter.PixmapFragment]:
 
 def polygon(points: NDArray[np.floating]) -> QPolygonF:
     """Return a QPolygonF filled from points (N, 2) by one copy."""
-    shape = QPolygonF()
-    count = len(points)
-    if count:
-        shape.resize(count)
-        # A fresh polygon is shared with nobody, so its memory can be written directly.
-        address = shiboken6.getCppPointer(shape.data())[0]
-        memory = (ctypes.c_double * (2 * count)).from_address(address)
-        np.frombuffer(cast("memoryview[int]", memory), dtype=np.float64).reshape(count, 2)[...] = points
+    shape, memory = _shape(len(points))
+    memory[...] = points
     return shape
+
+
+def passing(points: NDArray[np.floating]) -> QPolygonF:
+    """Return a QPolygonF filled from points (N, 2), for one call of a raster painter, which keeps nothing of it.
+
+    The next polygon of as many points takes its place.
+    """
+    shape, memory = _kept_shape(len(points))
+    memory[...] = points
+    return shape
+
+
+def _shape(count: int) -> tuple[QPolygonF, NDArray[np.float64]]:
+    """Return a new polygon and its memory (count, 2)."""
+    shape = QPolygonF()
+    if not count:
+        return shape, np.empty((0, 2))
+    shape.resize(count)
+    # A fresh polygon is shared with nobody, so its memory can be written directly.
+    address = shiboken6.getCppPointer(shape.data())[0]
+    memory = (ctypes.c_double * (2 * count)).from_address(address)
+    return shape, np.frombuffer(cast("memoryview[int]", memory), dtype=np.float64).reshape(count, 2)
+
+
+_kept_shape = lru_cache(maxsize=64)(_shape)
 
 
 _ELEMENT = np.dtype([("kind", "<i4"), ("xy", "<f8", 2)])

@@ -1,5 +1,6 @@
 """Turns polylines and symbols into what a fast painter can draw: parallels for weight, dashes, straight strokes."""
 
+from functools import lru_cache
 from itertools import pairwise
 
 import numpy as np
@@ -17,15 +18,16 @@ MAX_PIXEL = 1e6
 """Farther points are pulled in: Qt's rasteriser works in 26.6 fixed point and must not overflow."""
 
 
-def offsets(weight: int, ratio: float) -> list[float]:
+@lru_cache(maxsize=64)
+def offsets(weight: int, ratio: float) -> tuple[float, ...]:
     """Return where, across the line and in device pixels, lines one pixel wide make up a weight."""
     thickness = max(1.0, THICKNESS[weight] * ratio)
     # Two lines no more than 0.8 pixel apart leave no seam between them.
     count = 1 + int(np.ceil((thickness - 1.0) / 0.8 - 1e-9))
     if count == 1:
-        return [0.0]
+        return (0.0,)
     reach = (thickness - 1.0) / 2.0
-    return [float(v) for v in np.linspace(-reach, reach, count)]
+    return tuple(np.linspace(-reach, reach, count).tolist())
 
 
 def normals(points: F64, starts: NDArray[np.int32]) -> F64:
