@@ -8,6 +8,7 @@ from PySide6.QtGui import QGuiApplication
 from PySide6.QtWidgets import (
     QAbstractItemView,
     QCheckBox,
+    QComboBox,
     QHBoxLayout,
     QHeaderView,
     QLabel,
@@ -19,7 +20,9 @@ from PySide6.QtWidgets import (
 )
 
 from colure import everyframe
+from colure.errors import ColureError
 from colure_viewer.desk import Desk
+from colure_viewer.panels import apart
 
 EMPTY = "Click a star, a body or any point of the chart, or search for a name, to see its direction in every frame."
 
@@ -65,6 +68,16 @@ class DirectionPanel(QWidget):
         self.copy_button.setAccessibleName("Copy the direction in every frame")
         self.copy_button.setToolTip("Copy the direction in every frame")
         self.copy_button.clicked.connect(self.copy)
+        self.against = QComboBox(self)
+        self.against.addItem("positions", None)
+        for name in everyframe.FRAMES:
+            self.against.addItem(f"apart from {frame_words(name)}", name)
+        self.against.setAccessibleName("Show positions, or how far every frame's numbers are from one frame's")
+        self.against.setToolTip("Positions, or how far every frame's numbers are from those of one frame")
+        self.against.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
+        self.against.setMinimumContentsLength(16)
+        self.against.activated.connect(self.refresh)
+        self.apart: tuple[apart.Line, ...] = ()
         foot = QHBoxLayout()
         foot.addWidget(self.degrees)
         foot.addStretch(1)
@@ -74,6 +87,7 @@ class DirectionPanel(QWidget):
         column.setSpacing(4)
         column.addWidget(self.title)
         column.addWidget(self.detail)
+        column.addWidget(self.against)
         column.addWidget(self.table)
         column.addLayout(foot)
         desk.selected.connect(self.refresh)
@@ -82,7 +96,7 @@ class DirectionPanel(QWidget):
     def refresh(self) -> None:
         """Fill the table for the selection and the moment."""
         selection, session = self._desk.selection, self._desk.session
-        for part in (self.table, self.degrees, self.copy_button):
+        for part in (self.table, self.degrees, self.copy_button, self.against):
             part.setVisible(selection is not None)
         if selection is None:
             self.rows = ()
@@ -101,17 +115,39 @@ class DirectionPanel(QWidget):
         )
         self.title.setText(selection.name)
         self.detail.setText("\n".join(part for part in (selection.detail, f"{session.place} place") if part))
-        self.table.setRowCount(len(self.rows))
-        for number, row in enumerate(self.rows):
-            cells = (frame_words(row.frame), row.lon_text, row.lat_text)
-            for column, text in enumerate(cells):
+        self.apart = self._apart(also)
+        self.degrees.setVisible(not self.apart)
+        names = ["frame", "Δ lon cos lat", "Δ lat"] if self.apart else ["frame", "longitude", "latitude"]
+        self.table.setHorizontalHeaderLabels(names)
+        lines = [(line.frame, line.lon, line.lat, line.tip) for line in self.apart] or [
+            (
+                row.frame,
+                row.lon_text,
+                row.lat_text,
+                row.fault or f"{row.label}\n{row.lon_name} {row.lon_text}  {row.lat_name} {row.lat_text}",
+            )
+            for row in self.rows
+        ]
+        self.table.setRowCount(len(lines))
+        for number, (name, lon, lat, tip) in enumerate(lines):
+            for column, text in enumerate((frame_words(name), lon, lat)):
                 item = QTableWidgetItem(text)
-                position = f"{row.lon_name} {row.lon_text}  {row.lat_name} {row.lat_text}"
-                item.setToolTip(row.fault or f"{row.label}\n{position}")
+                item.setToolTip(tip)
                 if column:
                     item.setTextAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
                 self.table.setItem(number, column, item)
-        self.table.setFixedHeight(len(self.rows) * 22 + self.table.horizontalHeader().sizeHint().height() + 4)
+        self.table.setFixedHeight(len(lines) * 22 + self.table.horizontalHeader().sizeHint().height() + 4)
+
+    def _apart(self, also: tuple[str, ...]) -> tuple[apart.Line, ...]:
+        """Return the differences from the chosen frame, or nothing where positions are shown or it has no answer."""
+        chosen, selection = self.against.currentData(), self._desk.selection
+        if chosen is None or selection is None:
+            return ()
+        try:
+            return apart.lines(selection, self._desk.session, chosen, also)
+        except ColureError as fault:
+            self.detail.setText(str(fault))
+            return ()
 
     def copy(self) -> None:
         """Put the table on the clipboard as text."""
@@ -119,7 +155,12 @@ class DirectionPanel(QWidget):
         if selection is None:
             return
         heading = f"{selection.name}\t{session.moment.text()}\t{session.place} place\t{session.site}"
-        QGuiApplication.clipboard().setText(everyframe.as_text(self.rows, heading))
+        text = everyframe.as_text(self.rows, heading)
+        if self.apart:
+            chosen = f"what each frame's numbers are off by, read as {self.against.currentData()}"
+            listed = (f"{line.frame}\t{line.lon}\t{line.lat}" for line in self.apart)
+            text = "\n".join([heading, chosen, "frame\tΔlon cos lat\tΔlat", *listed])
+        QGuiApplication.clipboard().setText(text)
         self._desk.noted.emit("Copied the direction in every frame")
 
 
