@@ -80,7 +80,7 @@ class StepArrows(QWidget):
         foot = QPointF(laid.x, laid.y)
         for arrow in sorted(laid.drawn, key=lambda one: one.step == self._chosen):
             self._draw(painter, foot, arrow)
-        self._tag(painter, foot, laid)
+        self._tag(painter, laid)
         painter.end()
 
     def _draw(self, painter: QPainter, foot: QPointF, arrow: Arrow) -> None:
@@ -105,11 +105,13 @@ class StepArrows(QWidget):
         if length > 24.0:
             self._text(painter, tip + QPointF(ux, uy) * 11.0, str(arrow.number), colour)
 
-    def _tag(self, painter: QPainter, foot: QPointF, laid: Arrows) -> None:
-        """Say the factor under the foot, or over it where the arrows go down."""
-        down = sum(arrow.dy for arrow in laid.drawn) > 0.0
-        at = foot + QPointF(0.0, -34.0 if down else 34.0)
-        self._text(painter, at, laid.text, QColor(self._desk.theme.colour("accent")))
+    def _tag(self, painter: QPainter, laid: Arrows) -> None:
+        """Say the factor in the corner of the map, where it covers the least."""
+        left, _, _, bottom = self._chart.scene.frame
+        half = 0.5 * painter.fontMetrics().horizontalAdvance(laid.text)
+        self._text(
+            painter, QPointF(left + half + 10.0, bottom - 16.0), laid.text, QColor(self._desk.theme.colour("accent"))
+        )
 
     def _text(self, painter: QPainter, at: QPointF, text: str, colour: QColor) -> None:
         """Write a text about a point on a ground of its own, inside the chart."""
