@@ -6,7 +6,7 @@ are the same. Printed: true minus, primes, a fixed number of figures, the sign o
 
 import math
 import re
-from dataclasses import dataclass
+from typing import NamedTuple
 
 from colure.errors import AngleError
 from colure.wording import one_line
@@ -40,8 +40,7 @@ _NEXT = {"h": "m", "°": "′", "m": "s", "′": "″"}
 _SIXTIETHS = {"h": 0, "°": 0, "m": 1, "′": 1, "s": 2, "″": 2}
 
 
-@dataclass(frozen=True, slots=True)
-class _Token:
+class _Token(NamedTuple):
     colon: bool
     sign: str
     number: str
@@ -49,8 +48,7 @@ class _Token:
     start: int
 
 
-@dataclass(frozen=True, slots=True)
-class _Angle:
+class _Angle(NamedTuple):
     """One angle as written: `unit` is h, °, or empty where a sexagesimal text says neither; `value` is in it."""
 
     value: float

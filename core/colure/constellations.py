@@ -8,8 +8,8 @@ within 0.25″, and within 0.07″ of the five-decimal hours that those files st
 Newcomb's and for the IAU 2006 precession. The 0.02″ between ICRS and FK5 axes is neglected.
 """
 
-from dataclasses import dataclass
 from functools import cache
+from typing import NamedTuple
 
 import erfa
 import numpy as np
@@ -37,8 +37,7 @@ def b1875_matrix() -> Float:
     return matrix
 
 
-@dataclass(frozen=True, slots=True)
-class Constellation:
+class Constellation(NamedTuple):
     """One of the 88: the abbreviation of the IAU, its Latin name and genitive, and its area in square degrees."""
 
     code: str
@@ -47,8 +46,7 @@ class Constellation:
     area_deg2: float
 
 
-@dataclass(frozen=True, slots=True)
-class Edges:
+class Edges(NamedTuple):
     """Boundary arcs, each between two constellations.
 
     `points` (n, 3) are unit vectors on ICRS axes, read-only; arc i is `points[starts[i]:starts[i + 1]]`, with
@@ -62,8 +60,7 @@ class Edges:
     parallel: NDArray[np.bool_]
 
 
-@dataclass(frozen=True, slots=True)
-class Anchors:
+class Anchors(NamedTuple):
     """Where a constellation's name fits best: the point farthest from the border, once for each of the 89 regions.
 
     `codes` (89,), `points` (89, 3) unit vectors on ICRS axes and `radius` (89,), the distance to the border in
@@ -75,8 +72,7 @@ class Anchors:
     radius: Float
 
 
-@dataclass(frozen=True, slots=True)
-class _Grid:
+class _Grid(NamedTuple):
     column_of: NDArray[np.intp]  # by whole second of right ascension
     row_start: NDArray[np.intp]  # by whole minute of declination above −90°: where its row begins in `cells`
     cells: NDArray[np.uint8]  # flat, row by row

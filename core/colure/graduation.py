@@ -4,8 +4,8 @@ Every angle of a graduation is a whole number of arcseconds, so that ticks are c
 never differ by rounding.
 """
 
-from dataclasses import dataclass
 from functools import lru_cache
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,8 +32,7 @@ _LADDER = (
 )
 
 
-@dataclass(frozen=True, slots=True)
-class Steps:
+class Steps(NamedTuple):
     """Steps in arcseconds of the smallest tick, the middle tick and the tick with a figure."""
 
     minor: int

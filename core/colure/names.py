@@ -5,7 +5,6 @@ letters, few Flamsteed numbers (counts in the resource's PROVENANCE.toml). Catal
 """
 
 import re
-from dataclasses import dataclass
 from functools import cache
 from typing import Literal, NamedTuple
 
@@ -21,8 +20,7 @@ _TYCHO = re.compile(r"tyc\s*(\d{1,5})[\s-]+(\d{1,5})[\s-]+(\d{1,2})", re.IGNOREC
 _GAIA = re.compile(r"gaia(?:\s*dr3)?\s*(\d{1,30})", re.IGNORECASE)
 
 
-@dataclass(frozen=True, slots=True)
-class Names:
+class Names(NamedTuple):
     """All names of one star; an empty string where there is none."""
 
     row: int

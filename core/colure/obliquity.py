@@ -1,6 +1,6 @@
 """Obliquity of the ecliptic by every model that has one, mean and true."""
 
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import erfa
 import numpy as np
@@ -11,8 +11,7 @@ from colure.errors import FrameError, near_names
 from colure.precession import Instant, check_span, is_far, julian_years, tt_parts
 
 
-@dataclass(frozen=True, slots=True)
-class Model:
+class Model(NamedTuple):
     """An obliquity model: its span in Julian years, and the reference to print."""
 
     name: str

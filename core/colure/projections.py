@@ -13,7 +13,7 @@ some finite or infinite number; `clipping` cuts it away before it is drawn.
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +25,7 @@ Real = NDArray[Any]  # float32 or float64, kept as given
 _TINY = 1e-30
 
 
-@dataclass(frozen=True, slots=True)
-class Projection:
+class Projection(NamedTuple):
     """One projection: `forward` and `inverse` between camera axes and the plane, and where it ends.
 
     `edge` is the angle from the centre at which an azimuthal projection is cut, in radians. For the projections that

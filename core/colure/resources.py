@@ -1,10 +1,9 @@
 """Find, map and verify the data files that are shipped in `colure_resources`."""
 
-from dataclasses import dataclass
 from functools import cache
 from importlib.util import find_spec
 from pathlib import Path
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -49,8 +48,7 @@ def read_toml(relative: str) -> dict[str, Any]:
         raise ResourceError(f"data file '{relative}': {fault}; run 'colure selfcheck'") from fault
 
 
-@dataclass(frozen=True, slots=True)
-class Check:
+class Check(NamedTuple):
     """One shipped file held against its entry in PROVENANCE.toml."""
 
     path: str

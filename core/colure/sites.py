@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
-from typing import Any
+from typing import Any, NamedTuple
 
 from colure import angles, resources
 from colure.errors import AngleError, SiteError, near_names
@@ -123,8 +123,7 @@ DEMO = Site("Quern Hill", 129.40, -25.90, 710.0, note="invented: no observatory 
 """The site of the demo session."""
 
 
-@dataclass(frozen=True, slots=True)
-class _Row:
+class _Row(NamedTuple):
     """One line of the shipped list; `decimals` is how finely its constants were given, or why it has no place."""
 
     code: str

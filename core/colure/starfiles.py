@@ -1,7 +1,6 @@
 """The star catalogue's files: the rows' layout, their flags, and how cells of the sky are found in a tier."""
 
-from dataclasses import dataclass
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -59,8 +58,7 @@ LIMITS = (-2.0, 8.0, 10.5)
 """The V that each tier begins with; a tier ends where the next begins."""
 
 
-@dataclass(frozen=True, slots=True)
-class Tier:
+class Tier(NamedTuple):
     """One magnitude tier.
 
     Rows (n,), the same rows as words (n, 4), cell starts (zones, cells + 1), first row number, V of its brightest star.

@@ -2,7 +2,7 @@
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -21,8 +21,7 @@ BLOCK = 1024
 GEOCENTRE = Observer("earth")
 
 
-@dataclass(frozen=True, slots=True)
-class Directions:
+class Directions(NamedTuple):
     """Reduced directions of bodies.
 
     `vectors` (bodies, *shape, 3) are unit vectors on ICRS axes; `distance_au` and `light_time_s` (bodies, *shape) from
@@ -48,8 +47,7 @@ class Directions:
         return np.asarray(self.heliocentric + (state.sun_pos - state.pos) - ago[..., None] * state.sun_vel)
 
 
-@dataclass(frozen=True, slots=True)
-class TraceEntry:
+class TraceEntry(NamedTuple):
     """A step of a trace: its name and the vectors (bodies, *shape, 3) after it, au in the geometric steps."""
 
     name: str

@@ -2,6 +2,7 @@
 
 from collections.abc import Collection
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 
@@ -60,8 +61,7 @@ class Observer:
         return Atmosphere(pressure, 10.0 if site.temperature_c is None else site.temperature_c)
 
 
-@dataclass(frozen=True, slots=True)
-class ObserverState:
+class ObserverState(NamedTuple):
     """Barycentric vectors (*shape, 3) on ICRS axes, au and au/day.
 
     `centre_pos` and `centre_vel` are those of the origin's centre (the Earth's for a site), `pos` and `vel` the

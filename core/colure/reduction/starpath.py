@@ -5,8 +5,8 @@ number type of the stars is kept: float64 to the milliarcsecond and below, float
 """
 
 from collections.abc import Collection
-from dataclasses import dataclass
 from threading import local
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -34,8 +34,7 @@ STAR_STEPS = SKY_STEPS
 Stars = NDArray[np.floating]
 
 
-@dataclass(frozen=True, slots=True)
-class StarContext:
+class StarContext(NamedTuple):
     """What a moment, an observer and a place mean for every star (units: years, au, speed of light)."""
 
     place: str

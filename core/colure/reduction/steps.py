@@ -7,6 +7,7 @@ are component first, (3, bodies, moments).
 from collections.abc import Callable, Collection, Sequence
 from dataclasses import dataclass
 from functools import cache
+from typing import NamedTuple
 
 import numpy as np
 
@@ -47,8 +48,7 @@ class State:
     from_sun: Float | None = None
 
 
-@dataclass(frozen=True, slots=True)
-class Step:
+class Step(NamedTuple):
     """One step: its name, what it does, and the names and directions of what it is made of (for a trace)."""
 
     name: str
