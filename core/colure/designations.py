@@ -1,7 +1,6 @@
 """Bayer and Flamsteed designations: the ways they are written, and the one way they are printed."""
 
 import re
-import unicodedata
 from functools import cache
 
 from colure.constellations import constellations
@@ -54,6 +53,8 @@ def parse(text: str) -> str | None:
     or as a superscript, single Latin letters (whose case counts), Flamsteed numbers; and the constellation by its
     abbreviation, its name or its genitive.
     """
+    import unicodedata  # late: its tables are large, and a chart prints names as they are
+
     # Compatibility folding turns superscripts into digits and the micro sign into the letter μ.
     form = _FORM.fullmatch(unicodedata.normalize("NFKC", text).strip())
     if form is None:
@@ -74,5 +75,7 @@ def simplified(text: str) -> str:
     """Return a name for comparison: no case, no accents, apostrophes or hyphens, single spaces."""
     plain = text.casefold()
     if not plain.isascii():
+        import unicodedata
+
         plain = "".join(c for c in unicodedata.normalize("NFKD", plain) if not unicodedata.combining(c))
     return " ".join(_MARKS.sub("", plain).translate(_DASHES).split())
