@@ -19,15 +19,15 @@ def test_a_disc_has_its_area_and_place_at_every_phase(qapp, ratio):
         for y in range(stars.phases):
             for x in range(stars.phases):
                 row = stars.table[((size * 2 + 1) * stars.phases + y) * stars.phases + x]
-                left, top, side = (int(v) for v in (row[2], row[3], row[4]))
-                tile = alpha[top : top + side, left : left + side]
+                left, top, width, height = (int(v) for v in row[2:6])
+                tile = alpha[top : top + height, left : left + width]
                 # Coverages are rounded to 1/255 in some 10 to 100 pixels: 2 % of the area.
                 assert tile.sum() == pytest.approx(np.pi * radius**2, rel=0.02)
-                centres = np.arange(side) + 0.5
-                centroid = np.array([(tile.sum(0) * centres).sum(), (tile.sum(1) * centres).sum()]) / tile.sum()
+                across, down = np.arange(width) + 0.5, np.arange(height) + 0.5
+                centroid = np.array([(tile.sum(0) * across).sum(), (tile.sum(1) * down).sum()]) / tile.sum()
                 # A fragment is drawn with its middle on x, y: the disc's own place is pixel + phase. Its middle is only
                 # as good as a smooth edge of one pixel can make it: half a phase for the smallest.
-                offset = centroid - side / 2 + row[:2]
+                offset = centroid - row[4:6] / 2 + row[:2]
                 assert offset == pytest.approx(np.array([x, y]) / stars.phases, abs=0.125)
 
 
