@@ -96,8 +96,13 @@ def _equidistant_inverse(x: Real, y: Real) -> Real:
 
 def _equal_area(c: Real) -> tuple[Real, Real]:
     # √(2 / (1 + z)), written so that it keeps its digits near the far point.
-    k = np.sqrt(2.0 / np.maximum(1.0 + c[2], _TINY))
-    return c[0] * k, c[1] * k
+    k = c[2] + c.dtype.type(1.0)
+    np.maximum(k, c.dtype.type(_TINY), out=k)
+    np.divide(c.dtype.type(2.0), k, out=k)
+    np.sqrt(k, out=k)
+    x = c[0] * k
+    k *= c[1]
+    return x, k
 
 
 def _equal_area_inverse(x: Real, y: Real) -> Real:
@@ -309,7 +314,10 @@ class Projector:
         (a, b), (c, d) = self.plane.tolist()
         left, top = self.shift.tolist()
         if b == 0.0 and c == 0.0:
-            return x * a + left, y * d + top
+            across, down = np.multiply(x, a), np.multiply(y, d)
+            across += left
+            down += top
+            return across, down
         return x * a + y * b + left, x * c + y * d + top
 
     def on_sky(self, camera: Real) -> NDArray[np.bool_]:

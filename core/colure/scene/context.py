@@ -122,9 +122,18 @@ def in_page(ctx: Context, x: Any, y: Any, margin: Any = PAGE_MARGIN) -> Any:
     return (x > left - margin) & (x < right + margin) & (y > top - margin) & (y < bottom + margin)
 
 
+def all_in_page(ctx: Context, x: Any, y: Any, margin: float = PAGE_MARGIN) -> bool:
+    """Return whether all pixels (N,), N > 0, lie on the map or within a margin of it."""
+    left, top, right, bottom = ctx.frame
+    across = x.min() > left - margin and x.max() < right + margin
+    return bool(across and y.min() > top - margin and y.max() < bottom + margin)
+
+
 def on_page(ctx: Context, columns: Any, margin: float = PAGE_MARGIN) -> tuple[Any, Any]:
     """Return page positions (N, 2) float32 of directions (3, N) on ICRS axes, and which (N,) are on the map."""
     camera = ctx.projector.to_camera(columns)
     x, y = ctx.projector.to_page(camera)
     shown = ctx.projector.on_sky(camera) & in_page(ctx, x, y, margin)
-    return np.stack([x, y], axis=1).astype(np.float32), shown
+    xy = np.empty((len(x), 2), np.float32)
+    xy[:, 0], xy[:, 1] = x, y
+    return xy, shown

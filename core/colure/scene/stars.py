@@ -7,7 +7,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from colure.marks import F32, U8, Discs, Layer
-from colure.scene.context import Context, in_page
+from colure.scene.context import Context, all_in_page, in_page
 from colure.sky_layers import StarRows
 
 SIZES = 24
@@ -78,26 +78,30 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
     camera = ctx.projector.to_camera(stars.directions[:, first:])
     numbers: NDArray[np.intp] | None = None
     if not ctx.projector.projection.unrolled and ctx.window.cap < 3.1:
-        numbers = np.flatnonzero(camera[2] >= np.cos(ctx.window.cap))
+        numbers = (camera[2] >= np.cos(ctx.window.cap)).nonzero()[0]
         # Most stars of the sky are out of a small field: drop them before the projection.
-        camera = camera[:, numbers]
+        camera = camera.take(numbers, axis=1)
     x, y = ctx.projector.to_page(camera)
-    shown = in_page(ctx, x, y)
-    if ctx.projector.projection.name == "mercator":
-        shown &= ctx.projector.on_sky(camera)
-    inside = np.flatnonzero(shown)
-    if len(inside) < len(x):
-        x, y = x[inside], y[inside]
+    inside: NDArray[np.intp] | None = None
+    if not (len(x) and all_in_page(ctx, x, y)) or ctx.projector.projection.name == "mercator":
+        shown = in_page(ctx, x, y)
+        if ctx.projector.projection.name == "mercator":
+            shown &= ctx.projector.on_sky(camera)
+        inside = shown.nonzero()[0]
+        x, y = x.take(inside), y.take(inside)
     keep = _thin(x - (ctx.frame[0] - 16.0), y - (ctx.frame[1] - 16.0), ctx.page.width + 32, ctx.page.height + 32)
+    total = len(x)
     xy = np.empty((len(keep), 2), dtype=np.float32)
-    xy[:, 0] = x[keep]
-    xy[:, 1] = y[keep]
-    at = inside[keep] if numbers is None else numbers[inside[keep]]
+    xy[:, 0] = x.take(keep)
+    xy[:, 1] = y.take(keep)
+    at = keep if inside is None else inside.take(keep)
+    if numbers is not None:
+        at = numbers.take(at)
     at += first
-    size = _sizes(base, ctx.limit)[at]
+    size = _sizes(base, ctx.limit).take(at)
     radii = scale_of(ctx.limit).radii
-    mark = Discs("star", xy, size, base.tint[at], radii, base.ids[at])
-    layer = Layer("stars", (mark,), key(ctx), shown=len(at), total=len(inside))
+    mark = Discs("star", xy, size, base.tint.take(at), radii, base.ids.take(at))
+    layer = Layer("stars", (mark,), key(ctx), shown=len(at), total=total)
     bright = slice(max(len(at) - MOST_BRIGHT, 0), len(at))
     radius = radii[size[bright]]
     large = radius >= BRIGHT_RADIUS
@@ -113,11 +117,13 @@ def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: 
     """Return the numbers, ascending, of the last point in each cell of CELL pixels; x, y are not negative."""
     columns = int(width / CELL) + 2
     scale = x.dtype.type(1.0 / CELL)
-    cell = (y * scale).astype(np.int32)
-    cell *= columns
-    cell += (x * scale).astype(np.int32)
+    # Counted in the floating point of the pixels, which hold such whole numbers exactly, and made a number once.
+    cells = np.floor(y * scale)
+    cells *= columns
+    cells += np.floor(x * scale)
+    cell = cells.astype(np.intp)
     # Later rows are brighter and overwrite fainter ones; the table need not be cleared, as only written cells are read.
     owner = np.empty(columns * (int(height / CELL) + 2), dtype=np.int32)
     numbers = np.arange(len(cell), dtype=np.int32)
     owner[cell] = numbers
-    return np.flatnonzero(owner[cell] == numbers)
+    return (owner.take(cell) == numbers).nonzero()[0]
