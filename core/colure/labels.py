@@ -7,6 +7,7 @@ to find room with a margin around it, so that texts do not flicker in and out at
 """
 
 from dataclasses import dataclass
+from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -29,9 +30,13 @@ PATIENCE = 4
 """A text that found no room looks again in one frame of so many."""
 
 
+SPREAD = 10007
+"""A prime: identities that are multiples of one number get different turns by what is left of them."""
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Placement:
-    """Which position each text had: `ids` (N,) sorted, `choice` (N,) the number of the position, or HIDDEN.
+    """Which position each text had: `ids` (N,), `choice` (N,) the number of the position, or HIDDEN.
 
     `turn` counts frames, so that texts without room take turns in looking for it.
     """
@@ -44,19 +49,17 @@ class Placement:
         """Return the position of each text (N,), HIDDEN for those that had none, UNKNOWN for new ones."""
         if not len(self.ids):
             return np.full(len(ids), UNKNOWN, np.int8)
-        at = np.minimum(np.searchsorted(self.ids, ids), len(self.ids) - 1)
+        # In most frames the very same texts ask again.
+        if len(ids) == len(self.ids) and (ids == self.ids).all():
+            return self.choice
+        order = self.ids.argsort()
+        at = self.ids[order].searchsorted(ids)
+        at[at == len(order)] = 0
+        at = order[at]
         return np.where(self.ids[at] == ids, self.choice[at], np.int8(UNKNOWN))
 
 
 NOWHERE = Placement(np.empty(0, np.int64), np.empty(0, np.int8))
-
-
-def merged(parts: list[Placement]) -> Placement:
-    """Return one memory of texts that were placed in turn."""
-    ids = np.concatenate([part.ids for part in parts])
-    choice = np.concatenate([part.choice for part in parts])
-    order = np.argsort(ids)
-    return Placement(ids[order], choice[order], max(part.turn for part in parts))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -82,16 +85,18 @@ def join(requests: list[Request]) -> Request:
     requests = [request for request in requests if len(request)]
     if not requests:
         return Request(np.empty(0, np.int64), np.empty((0, 1, 2), np.float32), np.empty((0, 2), np.float32))
-    most = max(request.centres.shape[1] for request in requests)
-    centres = np.full((sum(map(len, requests)), most, 2), np.nan, np.float32)
-    preference = np.tile(np.arange(most), (len(centres), 1))
+    total, most = sum(map(len, requests)), max(request.centres.shape[1] for request in requests)
+    centres = np.empty((total, most, 2), np.float32)
+    preference = np.empty((total, most), np.intp)
+    preference[:] = np.arange(most)
     at = 0
     for request in requests:
-        rows, k = slice(at, at + len(request)), request.centres.shape[1]
+        rows, k = slice(at, at := at + len(request)), request.centres.shape[1]
         centres[rows, :k] = request.centres
+        if k < most:
+            centres[rows, k:] = np.nan
         if request.preference is not None:
             preference[rows, :k] = request.preference
-        at += len(request)
     return Request(
         np.concatenate([request.ids for request in requests]),
         centres,
@@ -104,42 +109,61 @@ def join(requests: list[Request]) -> Request:
 _AROUND = np.array(
     [[1, 0], [0.8, -0.8], [0.8, 0.8], [-1, 0], [-0.8, -0.8], [-0.8, 0.8], [0, -1], [0, 1]], dtype=np.float32
 )
+_CORNER = np.sign(_AROUND)
 
 
 def around(xy: F32, radius: F32, half: F32) -> F32:
     """Return the eight positions (N, 8, 2) of texts about discs at `xy` (N, 2) with `radius` (N,)."""
     reach = (radius + np.float32(GAP))[:, None, None] * _AROUND
-    corner = np.sign(_AROUND)
-    return np.asarray(xy[:, None, :] + reach + corner * half[:, None, :], dtype=np.float32)
+    return np.asarray(xy[:, None, :] + reach + _CORNER * half[:, None, :], dtype=np.float32)
 
 
-def _hits_discs(centres: F32, half: F32, discs: F32, margin: float) -> NDArray[np.bool_]:
-    """Return which boxes (N,) come within `margin` of a disc; `discs` (M, 3) are x, y, radius."""
-    hit = np.zeros(len(centres), dtype=bool)
-    if not len(discs) or not len(centres):
-        return hit
-    # The squares round the discs first: few boxes come near one, and only those are measured.
-    box, disc = np.nonzero(_overlap(centres, half, discs[:, :2], discs[:, [2, 2]], margin))
-    if not len(box):
-        return hit
-    gap = np.abs(centres[box] - discs[disc, :2]) - half[box]
-    np.maximum(gap, 0.0, out=gap)
-    reach = discs[disc, 2] + np.float32(margin)
-    hit[box[gap[:, 0] ** 2 + gap[:, 1] ** 2 < reach * reach]] = True
-    return hit
+class _Obstacles(NamedTuple):
+    """What stands fixed on the page: rectangles and, after them, the squares round discs, as low and high corners."""
+
+    low: F32
+    high: F32
+    discs: F32
+
+    @classmethod
+    def of(cls, discs: F32, boxes: F32 | None) -> "_Obstacles":
+        low, high = discs[:, :2] - discs[:, 2:], discs[:, :2] + discs[:, 2:]
+        if boxes is not None and len(boxes):
+            low = np.concatenate([boxes[:, :2] - boxes[:, 2:], low])
+            high = np.concatenate([boxes[:, :2] + boxes[:, 2:], high])
+        return cls(low, high, discs)
 
 
-def _overlap(c1: F32, h1: F32, c2: F32, h2: F32, margin: float) -> NDArray[np.bool_]:
-    """Return which boxes (N, M) overlap or come within `margin` of each other."""
-    grown = h1 + np.float32(margin)
-    low1, high1 = (c1 - grown)[:, :, None], (c1 + grown)[:, :, None]
-    low2, high2 = np.ascontiguousarray((c2 - h2).T), np.ascontiguousarray((c2 + h2).T)
-    # Comparisons only: they write one byte for each pair, where differences would write four.
-    out = np.less(low1[:, 0], high2[0])
-    out &= np.greater(high1[:, 0], low2[0])
-    out &= np.less(low1[:, 1], high2[1])
-    out &= np.greater(high1[:, 1], low2[1])
+def _inside(low: F32, high: F32, frame: tuple[float, float, float, float]) -> NDArray[np.bool_]:
+    """Return which boxes (N,) lie within a frame; NaN compares false, so a position that does not exist does not."""
+    left, top, right, bottom = frame
+    out = low[:, 0] >= left
+    out &= low[:, 1] >= top
+    out &= high[:, 0] <= right
+    out &= high[:, 1] <= bottom
     return np.asarray(out)
+
+
+def _crossing(low1: F32, high1: F32, low2: F32, high2: F32) -> NDArray[np.bool_]:
+    """Return which boxes overlap (N, M), given by their low and high corners (N, 2) and (M, 2)."""
+    low2, high2 = low2.T.copy(), high2.T.copy()
+    # Comparisons only: they write one byte for each pair, where differences would write four.
+    out = low1[:, :1] < high2[0]
+    out &= high1[:, :1] > low2[0]
+    out &= low1[:, 1:] < high2[1]
+    out &= high1[:, 1:] > low2[1]
+    return np.asarray(out)
+
+
+def _on_discs(near: NDArray[np.bool_], low: F32, high: F32, discs: F32, margin: float) -> NDArray[np.intp]:
+    """Return the boxes, some perhaps twice, within `margin` of a disc; `near` (N, M) says which meet its square."""
+    box, disc = near.nonzero()
+    if not len(box):
+        return box
+    # Few boxes come near a disc's square, and only those are measured.
+    middle, reach = discs[disc, :2], discs[disc, 2] + np.float32(margin)
+    gap = np.maximum(np.maximum(low[box] - middle, middle - high[box]), 0.0)
+    return np.asarray(box[gap[:, 0] ** 2 + gap[:, 1] ** 2 < reach * reach])
 
 
 def place(
@@ -148,46 +172,55 @@ def place(
     frame: tuple[float, float, float, float],
     previous: Placement = NOWHERE,
     boxes: F32 | None = None,
+    lead: int = 0,
 ) -> tuple[I8, Placement]:
     """Return the position given to each text (N,), −1 for those without room, and the memory for the next frame.
 
     `discs` (M, 3) are marks (x, y, radius) and `boxes` (M, 4) rectangles (x, y, half-width, half-height) that no text
-    may cover; every text lies within `frame`.
+    may cover; every text lies within `frame`. The first `lead` texts take their room even from those behind them that
+    have stood there before.
     """
     n, k = request.centres.shape[:2]
-    choice = np.full(n, -1, np.int8)
+    choice = np.full(n, HIDDEN, np.int8)
     if not n:
         return choice, Placement(NOWHERE.ids, NOWHERE.choice, previous.turn + 1)
-    left, top, right, bottom = frame
-    half = request.half
-    fixed = np.empty((0, 4), np.float32) if boxes is None else boxes
-    low = np.array([left, top], np.float32) + half
-    high = np.array([right, bottom], np.float32) - half
+    fixed = _Obstacles.of(discs, boxes)
     recalled = previous.recall(request.ids)
 
     # Incumbents keep their positions unless one of higher rank, a mark or the edge of the map is in the way.
-    old = np.flatnonzero((recalled >= 0) & (recalled < k))
-    at, size = request.centres[old, recalled[old]], half[old]
-    # NaN compares false, so that a position that does not exist is not on the page either.
-    stands = ((at >= low[old]) & (at <= high[old])).all(axis=1)
-    stands &= ~_hits_discs(at, size, discs, 0.0)
-    if len(fixed):
-        stands &= ~_overlap(at, size, fixed[:, :2], fixed[:, 2:], 0.0).any(axis=1)
-    old, at, size = old[stands], at[stands], size[stands]
-    clash = _overlap(at, size, at, size, 0.0)
-    # Each box overlaps itself; one that overlaps another of higher rank, in a column before its own, gives way.
+    old = ((recalled >= 0) & (recalled < k)).nonzero()[0]
     if len(old):
-        stays = old[np.argmax(clash, axis=1) >= np.arange(len(old))]
-        choice[stays] = recalled[stays]
+        had = recalled[old]
+        stays = _standing(request.centres[old, had], request.half[old], fixed, frame)
+        choice[old[stays]] = had[stays]
 
     # Newcomers, the displaced, and of the hidden those whose turn it is: all positions against all that is fixed by
     # now, in one go.
-    waits = (recalled == HIDDEN) & ((request.ids + previous.turn) % PATIENCE != 0)
-    new = np.flatnonzero((choice < 0) & ~waits)
-    if len(new):
-        _seek(request, new, recalled[new], choice, discs, fixed, low, high)
-    order_of_ids = np.argsort(request.ids)
-    return choice, Placement(request.ids[order_of_ids], choice[order_of_ids], previous.turn + 1)
+    waits = recalled == HIDDEN
+    waits &= (request.ids % SPREAD + previous.turn) % PATIENCE != 0
+    new = ((choice < 0) & ~waits).nonzero()[0]
+    while len(new):
+        new = _seek(request, new, recalled, choice, fixed, frame, lead)
+    return choice, Placement(request.ids, choice, previous.turn + 1)
+
+
+def _standing(at: F32, half: F32, fixed: _Obstacles, frame: tuple[float, float, float, float]) -> NDArray[np.intp]:
+    """Return which of the boxes, in order of rank, can stay where they are."""
+    low, high = at - half, at + half
+    n, walls = len(at), len(fixed.low) - len(fixed.discs)
+    cross = _crossing(low, high, np.concatenate([low, fixed.low]), np.concatenate([high, fixed.high]))
+    stands = _inside(low, high, frame)
+    stands[_on_discs(cross[:, n + walls :], low, high, fixed.discs, 0.0)] = False
+    if walls:
+        stands &= ~cross[:, n : n + walls].any(axis=1)
+    rows = stands.nonzero()[0]
+    clash = cross[:, :n]
+    if len(rows) < n:
+        clash = clash[rows][:, rows]
+    if not len(rows):
+        return rows
+    # Each box overlaps itself; one that overlaps another of higher rank, in a column before its own, gives way.
+    return np.asarray(rows[clash.argmax(axis=1) >= np.arange(len(rows))])
 
 
 def _seek(
@@ -195,35 +228,59 @@ def _seek(
     new: NDArray[np.intp],
     recalled: I8,
     choice: I8,
-    discs: F32,
-    fixed: F32,
-    low: F32,
-    high: F32,
-) -> None:
-    """Find room for the texts `new`, in order of rank, and write it into `choice`."""
+    fixed: _Obstacles,
+    frame: tuple[float, float, float, float],
+    lead: int,
+) -> NDArray[np.intp]:
+    """Find room for the texts `new`, in order of rank, and write it into `choice`; return the texts they displaced."""
     k = request.centres.shape[1]
-    order = np.tile(np.arange(k), (len(new), 1)) if request.preference is None else request.preference[new]
+    if request.preference is None:
+        order = np.empty((len(new), k), np.intp)
+        order[:] = np.arange(k)
+    else:
+        order = request.preference[new]
     # What lost its place looks there first.
-    for i in np.flatnonzero((recalled >= 0) & (recalled < k)).tolist():
-        order[i] = [recalled[i], *(j for j in order[i].tolist() if j != recalled[i])]
-    text, position = np.repeat(np.arange(len(new)), k), order.reshape(-1)
-    row = new[text]
-    at = request.centres[row, position]
-    usable = np.flatnonzero(((at >= low[row]) & (at <= high[row])).all(axis=1))
-    text, position, at, size = text[usable], position[usable], at[usable], request.half[row[usable]]
-    taken = _hits_discs(at, size, discs, MARGIN)
-    kept = np.flatnonzero(choice >= 0)
-    taken |= _overlap(at, size, request.centres[kept, choice[kept]], request.half[kept], MARGIN).any(axis=1)
-    if len(fixed):
-        taken |= _overlap(at, size, fixed[:, :2], fixed[:, 2:], MARGIN).any(axis=1)
-    free = np.flatnonzero(~taken)
-    if len(free):
-        _settle(new, text[free], position[free], at[free], size[free], choice)
+    had = recalled[new]
+    for i in ((had >= 0) & (had < k)).nonzero()[0].tolist():
+        order[i] = [had[i], *(j for j in order[i].tolist() if j != had[i])]
+    row, position = new.repeat(k), order.reshape(-1)
+    at, size = request.centres[row, position], request.half[row]
+    low, high = at - size, at + size
+    usable = _inside(low, high, frame).nonzero()[0]
+    row, low, high = row[usable], low[usable], high[usable]
+    kept = (choice >= 0).nonzero()[0]
+    there, extent = request.centres[kept, choice[kept]], request.half[kept]
+    kept_low, kept_high = there - extent, there + extent
+    near = _crossing(
+        low - np.float32(MARGIN),
+        high + np.float32(MARGIN),
+        np.concatenate([kept_low, fixed.low]),
+        np.concatenate([kept_high, fixed.high]),
+    )
+    leading = int(kept.searchsorted(lead))
+    if lead:
+        # Those in the lead need not mind who stands behind them.
+        near[: int(row.searchsorted(lead)), leading : len(kept)] = False
+    marks = near.shape[1] - len(fixed.discs)
+    taken: NDArray[np.bool_] = np.asarray(near[:, :marks].any(axis=1))
+    taken[_on_discs(near[:, marks:], low, high, fixed.discs, MARGIN)] = True
+    free = (~taken).nonzero()[0]
+    if not len(free):
+        return free
+    found = usable[free]
+    _settle(row[free], position[found], at[found], size[found], choice)
+    ahead = new[: int(new.searchsorted(lead))]
+    ahead = ahead[choice[ahead] >= 0]
+    if not len(ahead):
+        return ahead
+    there, extent = request.centres[ahead, choice[ahead]], request.half[ahead]
+    under = _crossing(kept_low[leading:], kept_high[leading:], there - extent, there + extent).any(axis=1)
+    displaced = kept[leading:][under]
+    choice[displaced] = HIDDEN
+    return displaced
 
 
-def _settle(
-    new: NDArray[np.intp], texts: NDArray[np.intp], positions: NDArray[np.intp], at: F32, size: F32, out: I8
-) -> None:
+def _settle(texts: NDArray[np.intp], positions: NDArray[np.intp], at: F32, size: F32, out: I8) -> None:
     """Give each newcomer in order of rank its first free position that no newcomer before it has taken."""
     # Few newcomers, or the first frame of all: a plain loop over a grid of buckets as large as a usual text.
     bucket = 64.0
@@ -245,5 +302,5 @@ def _settle(
             continue
         for cell in cells:
             taken.setdefault(cell, []).append((x, y, w, h))
-        out[new[text]] = position
+        out[text] = position
         done = text

@@ -95,6 +95,32 @@ def test_a_newcomer_needs_a_margin_that_an_incumbent_may_lose():
     assert place(ask(-1.0), none, FRAME, memory)[0][1] == HIDDEN
 
 
+def test_a_newcomer_in_the_lead_takes_the_room_of_one_that_stood_there():
+    half = np.full((2, 2), 10.0, np.float32)
+    none = np.empty((0, 3), np.float32)
+    nan = [np.nan, np.nan]
+    spots = np.array([[[300.0, 300.0], nan], [[305.0, 300.0], [400.0, 300.0]]], np.float32)
+    behind = Request(np.array([2]), spots[1:], half[1:])
+    choice, memory = place(behind, none, FRAME)
+    np.testing.assert_array_equal(choice, [0])
+    both = Request(np.array([1, 2]), spots, half)
+    # Without the lead the newcomer finds the room taken; with it, the other moves to its second place at once.
+    np.testing.assert_array_equal(place(both, none, FRAME, memory)[0], [HIDDEN, 0])
+    np.testing.assert_array_equal(place(both, none, FRAME, memory, lead=1)[0], [0, 1])
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_no_text_covers_another_whoever_leads(seed):
+    request, discs = crowd(seed=seed)
+    _, memory = place(request, discs, FRAME)
+    # The last of the crowd come to the front, and a third of the memory is lost.
+    turned = Request(request.ids[::-1].copy(), request.centres[::-1].copy(), request.half[::-1].copy())
+    part = Placement(memory.ids[::3], memory.choice[::3], memory.turn)
+    centres, half = positions(turned, place(turned, discs, FRAME, part, lead=40)[0])
+    assert len(centres) > 40
+    assert not overlaps(centres, half).any()
+
+
 def test_the_hidden_look_again_within_a_few_frames():
     half = np.full((1, 2), 10.0, np.float32)
     request = Request(np.array([5]), np.array([[[300.0, 300.0]]], np.float32), half)

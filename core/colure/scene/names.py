@@ -11,7 +11,7 @@ from colure.arrays import DEG, TWO_PI, Float, cartesian
 from colure.belt import DIVISION_GLYPHS
 from colure.fontmetrics import CAP_HEIGHT, PX_PER_PT, width_px
 from colure.graduation import TURN, figure
-from colure.labels import NOWHERE, Placement, Request, around, join, merged, place
+from colure.labels import NOWHERE, Placement, Request, around, join, place
 from colure.marks import F32, I32, Labels, Layer
 from colure.scene import bodies as body_marks
 from colure.scene import stars as star_marks
@@ -24,6 +24,7 @@ _BODY, _CIRCLE, _FIGURE, _STAR, _DEEP, _CONSTELLATION, _POINT, _CROSSING, _BELT 
 
 MOST_STARS = 60
 MOST_DEEP_SKY = 30
+BODY_PT, SIGN_PT = 10.0, 11.0
 NAME_SPOTS = 24
 """Places along a circle where its name may stand."""
 
@@ -42,29 +43,21 @@ class Wanted:
     bold: bool = False
     colours: tuple[str | None, ...] = field(default=())
 
-    def marks(self, choice: Any) -> list[Labels]:
-        """Return the label marks of the texts that have a place; one for each colour."""
-        shown = np.flatnonzero(choice >= 0)
+    def marks(self, shown: Any, at: Any, xy: F32) -> list[Labels]:
+        """Return the label marks of the texts `shown` (M,) at their positions `at`, `xy`; one mark for each colour."""
         if not len(shown):
             return []
-        at = choice[shown]
-        xy = self.request.centres[shown, at]
         angle = self.angles[shown, at] if self.angles.ndim == 2 else self.angles[shown]
-        style = {"size_pt": self.size_pt, "italic": self.italic, "bold": self.bold}
-        if not self.colours:
-            return [Labels(self.role, self.texts, self.index[shown], xy, angle, **style)]  # type: ignore[arg-type]
-        # Rows of one colour follow each other, so each colour is a slice.
         index = self.index[shown]
-        return [
-            Labels(self.role, self.texts, index[own], xy[own], angle[own], colour=colour, **style)  # type: ignore[arg-type]
-            for colour, own in self._runs(shown)
-        ]
-
-    def _runs(self, shown: Any) -> list[tuple[str | None, slice]]:
-        out: list[tuple[str | None, slice]] = []
-        at = 0
-        for colour, run in groupby(self.colours[i] for i in shown.tolist()):
-            out.append((colour, slice(at, at := at + sum(1 for _ in run))))
+        style = (self.size_pt, None, self.italic, self.bold)
+        if not self.colours:
+            return [Labels(self.role, self.texts, index, xy, angle, *style)]
+        # Rows of one colour follow each other, so each colour is a slice.
+        out, first = [], 0
+        for colour, run in groupby([self.colours[i] for i in shown.tolist()]):
+            own = slice(first, first := first + len(list(run)))
+            style = (self.size_pt, colour, self.italic, self.bold)
+            out.append(Labels(self.role, self.texts, index[own], xy[own], angle[own], *style))
         return out
 
 
@@ -73,65 +66,59 @@ def height(size_pt: float) -> float:
     return size_pt * PX_PER_PT * (CAP_HEIGHT + 0.28)
 
 
-def turned_half(width: Any, tall: float, angle: Any) -> Any:
-    """Return the half-extents (..., 2) of the upright boxes that hold boxes turned by angles."""
-    c, s = np.abs(np.cos(angle)), np.abs(np.sin(angle))
-    return np.stack([0.5 * (c * width + s * tall), 0.5 * (s * width + c * tall)], axis=-1).astype(np.float32)
+def turned_half(width: Any, tall: float, tangent: F32) -> Any:
+    """Return the half-extents (N, 2) of the upright boxes that hold boxes turned along unit tangents (N, 2)."""
+    size = np.abs(tangent)
+    out = size * (0.5 * width)[:, None]
+    size *= 0.5 * tall
+    out += size[:, ::-1]
+    return out.astype(np.float32, copy=False)
 
 
 def upright(tangent: F32) -> F32:
     """Return angles (N,) of tangents (N, 2), turned so that text is read from the left; almost level ones are level."""
-    angle = np.arctan2(tangent[..., 1], tangent[..., 0])
-    angle = np.where(angle > np.pi / 2, angle - np.pi, np.where(angle <= -np.pi / 2, angle + np.pi, angle))
+    angle = np.arctan2(tangent[:, 1], tangent[:, 0])
+    angle[angle > np.pi / 2] -= np.pi
+    angle[angle <= -np.pi / 2] += np.pi
     # Level text is drawn sharper, and nobody sees half a degree.
-    return np.where(np.abs(angle) < 0.009, 0.0, angle).astype(np.float32)
+    angle[np.abs(angle) < 0.009] = 0.0
+    return angle.astype(np.float32, copy=False)
 
 
 def build(
     ctx: Context,
     curves: Curves | None,
-    shown: star_marks.Shown | None,
+    bright: star_marks.Shown | None,
     listed: body_marks.Shown,
     memory: Any,
     key: object,
 ) -> tuple[Layer, Placement]:
     """Return the layer of texts and the memory of where they stand."""
     previous: Placement = memory if isinstance(memory, Placement) else NOWHERE
-    discs = _discs(shown, listed)
+    discs = _discs(bright, listed)
     # Bodies and circle names first: they have the rank to push figures and stars aside.
     first = [w for w in (_bodies(listed), _circle_names(ctx, curves)) if w is not None]
-    marks: list[Labels] = []
-    boxes, first_memory = _settle(ctx, first, discs, previous, None, marks)
-    stars, signs, deep = _stars(ctx, shown), _belt(ctx), _deep_sky(ctx)
-    points, crossings = _named(ctx, "points", "label.point", _POINT), _named(ctx, "crossings", "label.belt", _CROSSING)
-    constellations = _named(ctx, "constellations", "label.constellation", _CONSTELLATION)
-    spots = _laid(ctx, [points, crossings, stars, deep, constellations])
-    second = [w for w in (spots[0], _figures(curves), spots[1], spots[2], signs, *spots[3:]) if w is not None]
+    spots = _laid(ctx)
+    rest = [spots.get("points"), _figures(curves), spots.get("crossings"), spots.get("stars"), spots.get("signs")]
+    rest += [spots.get("deep sky"), spots.get("constellations")]
+    wanted = [*first, *(w for w in rest if w is not None)]
     if "overlays" in ctx.made:
-        from colure.scene.overlaynames import wanted  # it builds on this module
+        from colure.scene import overlaynames  # it builds on this module
 
-        second = [*wanted(ctx), *second]
-    _, second_memory = _settle(ctx, second, discs, previous, boxes, marks)
-    return Layer("labels", tuple(marks), key), merged([first_memory, second_memory])
-
-
-def _settle(
-    ctx: Context,
-    wanted: list[Wanted],
-    discs: F32,
-    previous: Placement,
-    fixed: F32 | None,
-    marks: list[Labels],
-) -> tuple[F32, Placement]:
-    """Place texts, add their marks, and return the boxes (M, 4) that they take and their memory."""
+        wanted[len(first) : len(first)] = overlaynames.wanted(ctx)
     request = join([w.request for w in wanted])
-    choice, memory = place(request, discs, ctx.frame, previous, fixed)
-    at = 0
+    lead = sum(len(w.request) for w in first)
+    choice, memory = place(request, discs, ctx.frame, previous, lead=lead)
+    shown = (choice >= 0).nonzero()[0]
+    at = choice[shown]
+    xy = request.centres[shown, at]
+    marks: list[Labels] = []
+    begin = row = 0
     for w in wanted:
-        marks += w.marks(choice[at : at + len(w.request)])
-        at += len(w.request)
-    shown = np.flatnonzero(choice >= 0)
-    return np.concatenate([request.centres[shown, choice[shown]], request.half[shown]], axis=1), memory
+        end = int(shown.searchsorted(row + len(w.request)))
+        marks += w.marks(shown[begin:end] - row, at[begin:end], xy[begin:end])
+        begin, row = end, row + len(w.request)
+    return Layer("labels", tuple(marks), key), memory
 
 
 def _discs(shown: star_marks.Shown | None, listed: body_marks.Shown) -> F32:
@@ -145,13 +132,21 @@ def _discs(shown: star_marks.Shown | None, listed: body_marks.Shown) -> F32:
 def _bodies(listed: body_marks.Shown) -> Wanted | None:
     if not listed.names:
         return None
-    texts = tuple(name.capitalize() if name != "emb" else "Earth–Moon barycentre" for name in listed.names)
-    size = 10.0
-    half = np.array([[0.5 * width_px(t, size, "label.body", bold=True), 0.5 * height(size)] for t in texts], np.float32)
-    ids = np.array([_BODY + _stable(name) for name in listed.names], np.int64)
-    n = len(texts)
+    texts, ids, half = _body_texts(listed.names)
     request = Request(ids, around(listed.xy, listed.radius, half), half)
-    return Wanted("label.body", request, texts, np.arange(n, dtype=np.int32), np.zeros(n, np.float32), size, bold=True)
+    n = len(texts)
+    return Wanted(
+        "label.body", request, texts, np.arange(n, dtype=np.int32), np.zeros(n, np.float32), BODY_PT, bold=True
+    )
+
+
+@lru_cache(maxsize=16)
+def _body_texts(names: tuple[str, ...]) -> tuple[tuple[str, ...], Any, F32]:
+    """Return the texts of bodies, their identities and the half-extents (N, 2) of their boxes."""
+    texts = tuple(name.capitalize() if name != "emb" else "Earth–Moon barycentre" for name in names)
+    tall = 0.5 * height(BODY_PT)
+    half = np.array([[0.5 * width_px(text, BODY_PT, "label.body", bold=True), tall] for text in texts], np.float32)
+    return texts, np.array([_BODY + _stable(name) for name in names], np.int64), half
 
 
 def _stable(name: str) -> int:
@@ -185,7 +180,8 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     texts = tuple(circle.name for circle in circles)
     widths = np.array([width_px(text, size, "label.circle", italic=True) for text in texts])
     lift = (np.where(scale.graduated[used], TICKS[2], 0.0) + 4.0 + 0.5 * tall).astype(np.float32)
-    angle = upright(curves.tangent[at])
+    tangent = curves.tangent[at]
+    angle = upright(tangent)
     # A spot's number belongs to its longitude, so that a name stays there while the view moves over it.
     number = (scale.arcsec[at] // scale.major[scale.row[at]]) % NAME_SPOTS
     centres = np.full((len(used), NAME_SPOTS, 2), np.nan, np.float32)
@@ -193,7 +189,7 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     halves = np.zeros((len(used), NAME_SPOTS, 2), np.float32)
     centres[row, number] = curves.xy[at] + curves.north[at] * lift[row, None]
     angles[row, number] = angle
-    halves[row, number] = turned_half(widths[row], tall, angle)
+    halves[row, number] = turned_half(widths[row], tall, tangent)
     # Best left of the middle and above it, where nothing else begins.
     left, top, right, bottom = ctx.frame
     dx, dy = centres[:, :, 0] - (0.6 * left + 0.4 * right), centres[:, :, 1] - (0.6 * top + 0.4 * bottom)
@@ -230,18 +226,20 @@ def _figures(curves: Curves | None) -> Wanted | None:
         return None
     values, index = np.unique(arcsec, return_inverse=True)
     texts, wide = _figure_texts(tuple(values.tolist()), size)
-    angle = upright(curves.tangent[at])
+    tangent = curves.tangent[at]
     xy, up = curves.xy[at], curves.north[at]
     down, over = np.float32(3.5 + 0.5 * tall), np.float32(TICKS[2] + 3.0 + 0.5 * tall)
-    centres = np.stack([xy - up * down, xy + up * over], axis=1)
-    request = Request(ids, centres, turned_half(wide[index], tall, angle))
+    centres = np.empty((len(at), 2, 2), np.float32)
+    centres[:, 0] = xy - up * down
+    centres[:, 1] = xy + up * over
+    request = Request(ids, centres, turned_half(wide[index], tall, tangent))
     colours = [circle.colour for circle in curves.circles]
     return Wanted(
         "figure.circle",
         request,
         texts,
         index.astype(np.int32),
-        angle,
+        upright(tangent),
         size,
         colours=tuple(colours[i] for i in row[at].tolist()),
     )
@@ -272,21 +270,34 @@ class Spots:
     centred: bool = False
 
 
-def _laid(ctx: Context, groups: list[Spots | None]) -> list[Wanted | None]:
-    """Return what each group asks for; the points of all are projected together."""
-    real = [group for group in groups if group is not None and len(group.texts)]
-    if not real:
-        return [None] * len(groups)
-    xy, on = on_page(ctx, np.concatenate([group.columns for group in real], axis=1), 0.0)
-    out: list[Wanted | None] = []
+def _laid(ctx: Context) -> dict[str, Wanted]:
+    """Return what each group of points of the sky asks for; the points of all are projected together."""
+    groups = {
+        "points": _named(ctx, "points", "label.point", _POINT),
+        "crossings": _named(ctx, "crossings", "label.belt", _CROSSING),
+        "stars": _stars(ctx),
+        "deep sky": _deep_sky(ctx),
+        "constellations": _named(ctx, "constellations", "label.constellation", _CONSTELLATION),
+    }
+    real = {name: group for name, group in groups.items() if group is not None and group.columns.shape[1]}
+    columns = [group.columns for group in real.values()]
+    signs = _sign_columns(ctx)
+    if signs is not None:
+        columns.append(signs)
+    if not columns:
+        return {}
+    xy, on = on_page(ctx, np.concatenate(columns, axis=1), 0.0)
+    out: dict[str, Wanted] = {}
     at = 0
-    for group in groups:
-        if group is None or not len(group.texts):
-            out.append(None)
-            continue
-        n = len(group.texts)
-        out.append(_about(group, xy[at : at + n], np.flatnonzero(on[at : at + n])[: group.most]))
+    for name, group in real.items():
+        n = group.columns.shape[1]
+        wanted = _about(group, xy[at : at + n], on[at : at + n].nonzero()[0][: group.most])
+        if wanted is not None:
+            out[name] = wanted
         at += n
+    belt = _signs(xy[at:], on[at:]) if signs is not None else None
+    if belt is not None:
+        out["signs"] = belt
     return out
 
 
@@ -303,14 +314,15 @@ def _about(group: Spots, xy: F32, at: Any, size: float = 9.0) -> Wanted | None:
     if group.centred:
         centres = np.concatenate([here[:, None, :], centres], axis=1)
     request = Request(group.code + group.rows[at], centres, half)
-    texts = tuple(group.texts[i] for i in at.tolist())
-    index, level = np.arange(len(at), dtype=np.int32), np.zeros(len(at), np.float32)
-    return Wanted(group.role, request, texts, index, level, size, italic=group.role == "label.constellation")
+    level = np.zeros(len(at), np.float32)
+    return Wanted(
+        group.role, request, group.texts, at.astype(np.int32), level, size, italic=group.role == "label.constellation"
+    )
 
 
-def _stars(ctx: Context, shown: star_marks.Shown | None) -> Spots | None:
+def _stars(ctx: Context) -> Spots | None:
     """Return the names of the brightest named stars on the map."""
-    if shown is None or "star names" not in ctx.sky.layers:
+    if "stars" not in ctx.sky.layers or "star names" not in ctx.sky.layers:
         return None
     named = ctx.sky["star names"]
     bright = int(np.searchsorted(named.vmag, ctx.limit, side="right"))
@@ -321,7 +333,7 @@ def _stars(ctx: Context, shown: star_marks.Shown | None) -> Spots | None:
         "label.star",
         _STAR,
         directions,
-        named.texts[:bright],
+        named.texts,
         named.width_em[:bright],
         named.ids[:bright],
         radius,
@@ -356,25 +368,33 @@ def _named(ctx: Context, layer: str, role: str, code: int) -> Spots | None:
     return Spots(role, code, found.columns, found.texts, found.width_em, rows, 5.0, centred=centred)
 
 
-def _belt(ctx: Context) -> Wanted | None:
-    """Return the signs of the belt's divisions, in the middle of each, near an edge."""
+def _sign_columns(ctx: Context) -> Float | None:
+    """Return the directions (3, 24) of the signs of the belt's divisions: in the middle of each, near both edges."""
     if "belt" not in ctx.sky.layers or not ctx.sky.session.belt.divisions:
         return None
     axes: FrameAxes = ctx.sky["belt"]
-    size = 11.0
     lon, lat, columns = _sign_places(ctx.sky.session.belt.half_width_deg)
-    xy, on = on_page(ctx, axes.columns(lon, lat) if axes.matrix is None else axes.matrix @ columns, 0.0)
+    return axes.columns(lon, lat) if axes.matrix is None else axes.matrix @ columns
+
+
+def _signs(xy: F32, on: Any) -> Wanted | None:
+    """Return the signs of the belt's divisions at their places (24, 2) of which those `on` (24,) are on the map."""
     xy[~on] = np.nan
-    at = np.flatnonzero(on[:12] | on[12:])
+    at = (on[:12] | on[12:]).nonzero()[0]
     if not len(at):
         return None
-    centres = np.stack([xy[at], xy[at + 12]], axis=1)
-    texts = tuple(DIVISION_GLYPHS[i] for i in at.tolist())
-    half = np.array([[0.5 * width_px(t, size, "label.belt"), 0.5 * height(size)] for t in texts], np.float32)
-    n = np.arange(len(at), dtype=np.int32)
-    return Wanted(
-        "label.belt", Request(_BELT + at.astype(np.int64), centres, half), texts, n, np.zeros(len(at), np.float32), size
-    )
+    centres = np.empty((len(at), 2, 2), np.float32)
+    centres[:, 0] = xy[:12][at]
+    centres[:, 1] = xy[12:][at]
+    request = Request(_BELT + at, centres, _sign_halves()[at])
+    return Wanted("label.belt", request, DIVISION_GLYPHS, at.astype(np.int32), np.zeros(len(at), np.float32), SIGN_PT)
+
+
+@lru_cache(maxsize=1)
+def _sign_halves() -> F32:
+    """Return the half-extents (12, 2) of the boxes of the signs."""
+    tall = 0.5 * height(SIGN_PT)
+    return np.array([[0.5 * width_px(t, SIGN_PT, "label.belt"), tall] for t in DIVISION_GLYPHS], np.float32)
 
 
 @lru_cache(maxsize=8)
