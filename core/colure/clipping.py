@@ -76,13 +76,12 @@ class Window:
 class Trace:
     """Polylines on the page before they are put together.
 
-    `x`, `y` (N,) are the page positions of the points, `whole` (N − 1) which segments are drawn as they are, `cut_xy`
+    `xy` (N, 2) are the page positions of the points, `whole` (N − 1) which segments are drawn as they are, `cut_xy`
     (2k, 2) the ends, in pairs, of the pieces of segments that are cut, and `cut_of` (k,) the number of the first point
     of the segment that each is a piece of.
     """
 
-    x: Real
-    y: Real
+    xy: F32
     whole: Bool
     cut_xy: F32
     cut_of: NDArray[np.intp]
@@ -90,9 +89,8 @@ class Trace:
     @classmethod
     def nothing(cls) -> "Trace":
         """Return the trace of no points."""
-        none = np.empty(0, np.float32)
-        nobody = np.empty(0, np.intp)
-        return cls(none, none, np.empty(0, dtype=bool), np.empty((0, 2), np.float32), nobody)
+        none = np.empty((0, 2), np.float32)
+        return cls(none, np.empty(0, dtype=bool), none, np.empty(0, np.intp))
 
     def part(self, first: int, last: int) -> "Trace":
         """Return the trace of the points first … last − 1, which no segment joins to others."""
@@ -101,37 +99,41 @@ class Trace:
         mine = (self.cut_of >= first) & (self.cut_of < last)
         cut_xy = self.cut_xy[np.repeat(mine, 2)] if len(mine) else self.cut_xy
         whole = self.whole[first : last - 1]
-        return Trace(self.x[first:last], self.y[first:last], whole, cut_xy, self.cut_of[mine] - first)
+        return Trace(self.xy[first:last], whole, cut_xy, self.cut_of[mine] - first)
 
     def polylines(self, bounds: I32) -> list[tuple[F32, I32]]:
         """Return page polylines (points (M, 2), starts), in groups: group k is of the points bounds[k] … bounds[k + 1].
 
         No segment joins two groups.
         """
-        before = np.zeros(len(self.x), dtype=bool)
+        before = np.zeros(len(self.xy), dtype=bool)
         before[1:] = self.whole
         keep = before.copy()
         keep[:-1] |= self.whole
-        kept = np.flatnonzero(keep)
-        points = np.empty((len(kept), 2), dtype=np.float32)
-        points[:, 0] = self.x[kept]
-        points[:, 1] = self.y[kept]
-        firsts = np.flatnonzero(~before[kept])
+        kept = keep.nonzero()[0]
+        points = self.xy.take(kept, axis=0)
+        firsts = (~before.take(kept)).nonzero()[0]
         if len(bounds) == 2 and not len(self.cut_of):
             return [(points, np.append(firsts, len(points)).astype(np.int32))]
         point_at = np.searchsorted(kept, bounds)
         first_at = np.searchsorted(firsts, point_at)
         group = np.searchsorted(bounds, self.cut_of, side="right") - 1
+        cut = set(group.tolist())
         out = []
-        for k in range(len(bounds) - 1):
-            own = points[point_at[k] : point_at[k + 1]]
-            begins = firsts[first_at[k] : first_at[k + 1]] - point_at[k]
-            mine = group == k
-            if mine.any():
-                extra, first = _chained(self.cut_xy[np.repeat(mine, 2)])
+        for k, (begin, end, low, high) in enumerate(
+            zip(*(v.tolist() for v in (point_at[:-1], point_at[1:], first_at[:-1], first_at[1:])), strict=True)
+        ):
+            own = points[begin:end]
+            begins = firsts[low:high]
+            if begin:
+                begins = begins - begin
+            if k in cut:
+                extra, first = _chained(self.cut_xy[np.repeat(group == k, 2)] if len(cut) > 1 else self.cut_xy)
                 begins = np.concatenate([begins, len(own) + first])
                 own = np.concatenate([own, extra])
-            out.append((own, np.append(begins, len(own)).astype(np.int32)))
+            starts = np.empty(len(begins) + 1, np.int32)
+            starts[:-1], starts[-1] = begins, len(own)
+            out.append((own, starts))
         return out
 
 
@@ -157,7 +159,10 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
     joined[starts[1:-1] - 1] = False
     whole, pieces, owner = _segments(window, camera, joined)
     x, y = window.projector.to_page(camera)
-    whole &= _seen(window.rect, x[:-1], y[:-1], x[1:], y[1:])
+    left, top, right, bottom = window.rect
+    x_min, x_max, y_min, y_max = float(x.min()), float(x.max()), float(y.min()), float(y.max())
+    if not (x_min >= left and x_max <= right and y_min >= top and y_max <= bottom):  # nor if one is nan
+        whole &= _seen(window.rect, x[:-1], y[:-1], x[1:], y[1:])
     ends = np.empty((0, 4))
     if len(owner):
         cx, cy = window.projector.to_page(pieces)
@@ -165,8 +170,7 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
         ends = np.stack([cx[::2], cy[::2], cx[1::2], cy[1::2]], axis=1)[seen]
         owner = owner[seen]
     # Painters lose large coordinates: the few segments that reach far out are cut at the rectangle.
-    left, top, right, bottom = window.rect
-    reach = max(left - x.min(), x.max() - right, top - y.min(), y.max() - bottom)
+    reach = max(left - x_min, x_max - right, top - y_min, y_max - bottom)
     if not reach <= FAR:  # nor is nan
         far = np.flatnonzero(whole)
         far = far[_far(window.rect, x[far], y[far]) | _far(window.rect, x[far + 1], y[far + 1])]
@@ -176,7 +180,9 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
     if len(owner) and np.abs(ends).max() > FAR:
         ends, kept = _boxed(ends, window.rect)
         owner = owner[kept]
-    return Trace(x, y, whole, ends.reshape(-1, 2).astype(np.float32), owner)
+    xy = np.empty((len(x), 2), np.float32)
+    xy[:, 0], xy[:, 1] = x, y
+    return Trace(xy, whole, ends.reshape(-1, 2).astype(np.float32), owner)
 
 
 def _far(rect: Rect, x: Real, y: Real) -> Bool:
@@ -233,17 +239,20 @@ def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float, 
             across[at[~over]] = False
         wild = joined & ~across & _wild(camera[0], camera[2], np.abs(camera[1]) > 0.95)
         outside = np.abs(camera[1]) > np.sin(projection.edge) if projection.edge < 1.57 else None
+        whole = joined & ~across & ~wild
+        special = across | wild
     else:
-        across = np.zeros(len(joined), dtype=bool)
         # A straight piece of page is far from an arc of sky only round the point opposite the centre.
-        wild = joined & _wild(camera[0], camera[1], camera[2] < -0.9) if window.cap > 2.7 else across
-        outside = camera[2] < np.cos(window.cap)
-    whole = joined & ~across & ~wild
-    special = across | wild
+        suspect = camera[2] < -0.9 if window.cap > 2.7 else None
+        wild = _wild(camera[0], camera[1], suspect) & joined if suspect is not None else np.zeros(len(joined), bool)
+        whole = joined & ~wild
+        special = wild
+        level = np.cos(window.cap)
+        outside = camera[2] < level if not camera[2].min() >= level else None
     if outside is not None:
         near = ~outside
         whole &= near[:-1] & near[1:]
-        special |= joined & (near[:-1] != near[1:])
+        special = special | joined & (near[:-1] != near[1:])
         if not projection.unrolled and window.cap < 1.5:
             special |= joined & outside[:-1] & outside[1:] & _through(camera, np.cos(window.cap))
     at = np.flatnonzero(special)

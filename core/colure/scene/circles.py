@@ -132,20 +132,21 @@ def _finish(
             for part in parts
         )
     )
-    row = scale.row
-    tangent, valid = _tangents(drawn)
-    valid &= in_page(ctx, drawn.x, drawn.y, 0.0)
-    xy = np.empty((len(row), 2), np.float32)
-    xy[:, 0], xy[:, 1] = drawn.x, drawn.y
+    # Points and unit vectors of the page are complex numbers here, x + iy: half as many steps, and a quarter turn is i.
+    here = drawn.xy.view(np.complex64)[:, 0]
+    tangent, valid = _tangents(here, drawn.whole)
+    valid &= in_page(ctx, drawn.xy[:, 0], drawn.xy[:, 1], 0.0)
     # North is to the left of growing longitude seen from outside the sphere; a sky chart is seen from inside, and the
     # horizon counts its azimuths the other way round.
-    side = 1.0 if ctx.view.east_left else -1.0
-    hand = np.array([-side if part[2].left_handed else side for part in parts], np.float32)[row]
-    north = np.empty_like(tangent)
-    north[:, 0], north[:, 1] = -tangent[:, 1] * hand, tangent[:, 0] * hand
-    seen = valid[scale.ticks]
+    side = 1j if ctx.view.east_left else -1j
+    hand = np.array([-side if part[2].left_handed else side for part in parts], np.complex64)
+    north = tangent * np.repeat(hand, np.diff(starts))
+    seen = valid.take(scale.ticks)
     at = scale.ticks[seen]
-    ticks = np.concatenate([xy[at], xy[at] + north[at] * scale.lengths[seen, None]], axis=1)
+    ticks = np.empty((len(at), 4), np.float32)
+    ends_of = ticks.view(np.complex64)
+    ends_of[:, 0] = foot = here.take(at)
+    ends_of[:, 1] = foot + north.take(at) * scale.lengths[seen]
     tick_at = np.searchsorted(at, starts)
     marks: list[Mark] = []
     for k, (points, ends) in enumerate(drawn.polylines(starts)):
@@ -158,9 +159,9 @@ def _finish(
         tuple(part[1] for part in parts),
         np.array([part[0] for part in parts]),
         scale,
-        xy,
-        tangent,
-        north,
+        drawn.xy,
+        tangent.view(np.float32).reshape(-1, 2),
+        north.view(np.float32).reshape(-1, 2),
         valid,
     )
     return Layer("circles", tuple(marks), key(ctx)), curves
@@ -190,20 +191,16 @@ def key(ctx: Context) -> object:
     return (ctx.sky.key("circles"), ctx.view_key)
 
 
-def _tangents(drawn: Trace) -> tuple[F32, Bool]:
-    """Return unit tangents (N, 2) on the page from the neighbours that are joined, and which points have one."""
-    n = len(drawn.x)
-    after = np.zeros(n, dtype=bool)
-    after[:-1] = drawn.whole
-    before = np.zeros(n, dtype=bool)
-    before[1:] = drawn.whole
-    here = np.arange(n)
-    upper, lower = here + after, here - before
-    dx, dy = drawn.x[upper] - drawn.x[lower], drawn.y[upper] - drawn.y[lower]
-    length = np.hypot(dx, dy)
+def _tangents(here: NDArray[np.complex64], whole: Bool) -> tuple[NDArray[np.complex64], Bool]:
+    """Return unit tangents (N,) on the page from the neighbours that are joined, and which points have one."""
+    ways = np.where(whole, here[1:] - here[:-1], np.complex64(0.0))
+    tangent = np.zeros(len(here), np.complex64)
+    tangent[:-1] = ways
+    tangent[1:] += ways
+    length = np.abs(tangent)
     valid = length > 0.0
-    length = np.where(valid, length, 1.0)
-    return np.stack([dx / length, dy / length], axis=1).astype(np.float32), valid
+    tangent /= np.maximum(length, np.float32(1e-30), out=length)
+    return tangent, valid
 
 
 def prepare_grid(ctx: Context) -> Strokes:

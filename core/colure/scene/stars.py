@@ -126,4 +126,4 @@ def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: 
     owner = np.empty(columns * (int(height / CELL) + 2), dtype=np.int32)
     numbers = np.arange(len(cell), dtype=np.int32)
     owner[cell] = numbers
-    return (owner.take(cell) == numbers).nonzero()[0]
+    return np.flatnonzero(owner.take(cell) == numbers)
