@@ -28,15 +28,16 @@ def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F
 
     `outside` is a camera direction (3,) that is known not to lie in the area. Edges of rings are great-circle arcs.
     """
-    camera = np.array(camera, dtype=np.float64)
     # What was float32 is a unit vector to 1e-7 only, and cut ends are told from whole ones to 1e-13.
-    camera /= np.sqrt((camera * camera).sum(axis=0))
+    camera = _unit(np.asarray(camera, dtype=np.float64))
     # A point exactly on the seam or on the rim would be on both sides of it: 1e-12 rad off is far below any pixel.
     if window.projector.projection.unrolled:
-        camera[0] = np.where(np.abs(camera[0]) < 1e-12, np.copysign(1e-12, camera[0]), camera[0])
+        close = np.abs(camera[0]) < 1e-12
+        if close.any():
+            camera[0] = np.where(close, np.copysign(1e-12, camera[0]), camera[0])
     else:
         level = float(np.cos(window.cap))
-        camera[2] = np.where(np.abs(camera[2] - level) < 1e-12, level - 2e-12, camera[2])
+        camera[2][np.abs(camera[2] - level) < 1e-12] = level - 2e-12
     camera, starts = _refined(window, camera, starts)
     rim = _Rim(window)
     rings, stretches = _trace(rim, camera, starts)
@@ -44,8 +45,9 @@ def areas(window: Window, camera: Float, starts: I32, outside: Float) -> tuple[F
     if not rings:
         return np.empty((0, 2), np.float32), np.zeros(1, np.int32)
     x, y = window.projector.to_page(np.concatenate(rings, axis=1))
-    points = np.stack([x, y], axis=1)
-    ends = np.concatenate([[0], np.cumsum([ring.shape[1] for ring in rings])])
+    points = np.empty((len(x), 2))
+    points[:, 0], points[:, 1] = x, y
+    ends = np.cumsum([0, *(ring.shape[1] for ring in rings)])
     left, top, right, bottom = window.rect
     if points.min() < min(left, top) - FAR or points.max() > max(right, bottom) + FAR:
         points, ends = _boxed(points, ends, window.rect)
@@ -97,10 +99,21 @@ def _refined(window: Window, camera: Float, starts: I32) -> tuple[Float, I32]:
         return camera, starts
     parts = np.where(swing, 48, 1)
     owner = np.repeat(np.arange(len(parts)), parts)
-    first = np.concatenate([[0], np.cumsum(parts)])
-    t = (np.arange(len(owner)) - first[owner]) / parts[owner]
-    points = camera[:, owner] * (1.0 - t) + camera[:, after[owner]] * t
-    return points / np.sqrt((points * points).sum(axis=0)), first[starts].astype(np.int32)
+    first = np.zeros(len(parts) + 1, np.intp)
+    np.cumsum(parts, out=first[1:])
+    t = (np.arange(len(owner)) - first.take(owner)) / parts.take(owner)
+    begin = camera.take(owner, axis=1)
+    way = camera.take(after.take(owner), axis=1)
+    way -= begin
+    way *= t
+    begin += way
+    return _unit(begin), first[starts].astype(np.int32)
+
+
+def _unit(columns: Float) -> Float:
+    """Return unit vectors along columns (3, N)."""
+    x, y, z = columns
+    return np.asarray(columns / np.sqrt(x * x + y * y + z * z))
 
 
 class _Rim:

@@ -97,19 +97,31 @@ def columns_of(axes: FrameAxes, first: float, last: float, step: int, lat: float
 def prepare(ctx: Context) -> Strokes:
     """Return the circles' curves, to be traced and finished."""
     parts: list[tuple[int, Circle, FrameAxes, Int, Steps]] = []
-    columns: list[Any] = []
+    own: list[Float] = []
     for number, (circle, axes) in enumerate(ctx.sky["circles"]):
         lat = circle.lat_deg * DEG
         first, last = span(ctx, axes, lat)
         if last > first:
             # Degrees of longitude are shorter on a small circle.
             chosen = steps(ctx.step_scale * float(np.cos(lat)))
-            arcsec, own = columns_of(axes, first, last, _fine(chosen.minor), lat)
+            arcsec, columns = columns_of(axes, first, last, _fine(chosen.minor), lat)
             parts.append((number, circle, axes, arcsec, chosen))
-            columns.append(ctx.to_camera(own, axes.matrix))
+            own.append(columns)
     starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
-    camera = np.concatenate(columns, axis=1) if columns else np.empty((3, 0), np.float32)
-    return Strokes(camera, starts, lambda drawn: _finish(ctx, parts, starts, drawn))
+    return Strokes(_camera(ctx, parts, own), starts, lambda drawn: _finish(ctx, parts, starts, drawn))
+
+
+def _camera(ctx: Context, parts: list[tuple[int, Circle, FrameAxes, Int, Steps]], own: list[Float]) -> Any:
+    """Return camera directions (3, N) of the circles' points, which each has on its own axes."""
+    if not own:
+        return np.empty((3, 0), np.float32)
+    matrices = [part[2].matrix for part in parts]
+    if all(columns is own[0] for columns in own) and all(matrix is not None for matrix in matrices):
+        # Great circles all round the sky have the same points: one product turns them to every circle's place.
+        turns = ctx.projector.camera @ np.array(matrices)
+        together = turns.transpose(1, 0, 2).reshape(-1, 3)
+        return ctx.turned(together, own[0]).reshape(3, -1)
+    return np.concatenate([ctx.to_camera(columns, m) for columns, m in zip(own, matrices, strict=True)], axis=1)
 
 
 def _finish(

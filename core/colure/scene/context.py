@@ -65,7 +65,10 @@ class Context:
 
         In float32 where that is good to a hundredth of a pixel, which is everywhere but in small fields.
         """
-        matrix = self.projector.camera if axes is None else self.projector.camera @ axes
+        return self.turned(self.projector.camera if axes is None else self.projector.camera @ axes, columns)
+
+    def turned(self, matrix: Float, columns: Any) -> Any:
+        """Return a matrix (K, 3) times directions (3, N), in the precision that `to_camera` has."""
         if self.scale > COARSE:
             return matrix @ columns.astype(np.float64, copy=False)
         return matrix.astype(np.float32) @ columns.astype(np.float32, copy=False)
