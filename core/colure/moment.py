@@ -354,7 +354,9 @@ class Moment:
         number, seconds = (np.asarray(part) for part in self._clock(scale))
         unit = 10**decimals
         ticks = np.rint(seconds * unit).astype(np.int64)
-        length = leapseconds.day_length(number - 2400001) if scale == "UTC" else 86400
+        # An int looks a single day up in a list, twenty times as fast as an array of no dimension.
+        mjd = (int(number) if number.ndim == 0 else number) - 2400001
+        length = leapseconds.day_length(mjd) if scale == "UTC" else 86400
         over = ticks >= np.asarray(length) * unit
         number, ticks = number + over, np.where(over, 0, ticks)
         year, month, day = calendars.calendar_date(number, self.calendar)

@@ -5,6 +5,7 @@ the sky before and hands on every layer whose key is the same. Theme, selection 
 in none but the stars' (which sky cells) and the axes'.
 """
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from types import MappingProxyType
@@ -84,6 +85,14 @@ class FrameAxes:
             return np.asarray(self.matrix @ v.reshape(-1, 3).T)
         return np.asarray(frames.to_icrs(v.reshape(-1, 3), self.frame, self.moment, self.site).T)
 
+    def direction(self, lon: float, lat: float) -> Float:
+        """Return the direction (3,) on ICRS axes of one longitude and latitude in radians."""
+        if self.matrix is None:
+            return self.columns(np.array([lon]), np.array([lat]))[:, 0]
+        level = math.cos(lat)
+        x, y, z = level * math.cos(lon), level * math.sin(lon), math.sin(lat)
+        return np.asarray(x * self.matrix[:, 0] + y * self.matrix[:, 1] + z * self.matrix[:, 2])
+
     def spherical(self, vectors: Float) -> tuple[Float, Float]:
         """Return longitude (0…2π) and latitude (N,) of directions (N, 3) on ICRS axes."""
         if self.matrix is not None:
@@ -143,8 +152,13 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
         layers[name] = old if old is not None and old.key == key else SkyLayer(name, key, make())
         return layers[name].value
 
+    # Circles, belt, grid, points and view are often in the same frame.
+    known: dict[str, FrameAxes] = {}
+
     def axes_of(name: str) -> FrameAxes:
-        return frame_axes(name, session.moment, session.site, session.omitted)
+        if name not in known:
+            known[name] = frame_axes(name, session.moment, session.site, session.omitted)
+        return known[name]
 
     def body_names() -> tuple[str, ...]:
         centre = session.view.centre.body
@@ -159,7 +173,7 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
     )
     if bodies.note:
         notes.append(bodies.note)
-    axes = _axes(session, bodies)
+    axes = _axes(session, bodies, axes_of)
 
     limit, cell = sky_layers.star_cell(session.view, axes.centre)
     base = layer("star rows", (limit, cell), lambda: sky_layers.star_rows(limit, cell))
@@ -202,7 +216,7 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
     layer(
         "circles",
         tuple((_frame_key(circle.frame, session), circle) for circle in shown),
-        lambda: _circles(session, shown, notes),
+        lambda: _circles(shown, axes_of, notes),
     )
     if session.layers.points:
         ecliptic = session.belt.frame
@@ -219,20 +233,22 @@ def compute(session: Session, previous: Sky | None = None) -> Sky:
     return Sky(session, observer, axes, MappingProxyType(layers), tuple(notes))
 
 
-def _circles(session: Session, shown: tuple[Any, ...], notes: list[str]) -> tuple[tuple[Any, FrameAxes], ...]:
+def _circles(
+    shown: tuple[Any, ...], axes_of: Callable[[str], FrameAxes], notes: list[str]
+) -> tuple[tuple[Any, FrameAxes], ...]:
     """Return the circles that can be drawn with their axes; the others become notes."""
     out = []
     for circle in shown:
         try:
-            out.append((circle, frame_axes(circle.frame, session.moment, session.site, session.omitted)))
+            out.append((circle, axes_of(circle.frame)))
         except (FrameError, SpanError) as fault:
             notes.append(f"circle {circle.frame}: {fault}")
     return tuple(out)
 
 
-def _axes(session: Session, bodies: BodiesSky) -> Axes:
+def _axes(session: Session, bodies: BodiesSky, axes_of: Callable[[str], FrameAxes]) -> Axes:
     """Return the centre and the pole of the view on ICRS axes."""
-    view, moment, site = session.view, session.moment, session.site
+    view = session.view
     centre = view.centre
     if centre.body is not None:
         if centre.body not in bodies.names:
@@ -241,12 +257,10 @@ def _axes(session: Session, bodies: BodiesSky) -> Axes:
             )
         middle = bodies.vectors[bodies.names.index(centre.body)]
     else:
-        middle = frame_axes(centre.frame, moment, site, session.omitted).columns(
-            np.array([centre.lon_deg * DEG]), np.array([centre.lat_deg * DEG])
-        )[:, 0]
-    up = frame_axes("horizon" if view.up == "zenith" else view.up, moment, site, session.omitted)
-    pole = up.columns(np.array([0.0]), np.array([np.pi / 2]))[:, 0]
+        middle = axes_of(centre.frame).direction(centre.lon_deg * DEG, centre.lat_deg * DEG)
+    up = axes_of("horizon" if view.up == "zenith" else view.up)
+    pole = up.direction(0.0, np.pi / 2)
     # Where the centre is the pole itself, its own longitude says which way is up: the limit of approaching along it.
     lon = centre.lon_deg * DEG if centre.body is None and abs(centre.lat_deg) == 90.0 else 0.0
-    spare = up.columns(np.array([lon]), np.array([0.0]))[:, 0]
+    spare = up.direction(lon, 0.0)
     return Axes(middle, pole, spare)

@@ -5,7 +5,7 @@ import numpy as np
 from colure.fontmetrics import PX_PER_PT
 from colure.labels import Request, around
 from colure.scene.context import Context, on_page
-from colure.scene.names import Wanted, height
+from colure.scene.wanted import Wanted, height
 
 CODE = 15 << 56
 """First part of the identity of these texts, apart from those of `colure.scene.names`."""
