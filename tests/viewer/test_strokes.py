@@ -94,3 +94,19 @@ def test_polygon_and_path_hold_the_points(qapp):
     assert elements[4][1:] == (9.0, 10.25)
     assert primitives.path(np.empty((0, 2)), starts()).isEmpty()
     assert primitives.polygon(np.empty((0, 2))).isEmpty()
+
+
+def test_an_empty_line_before_others_takes_nothing_from_them():
+    points = np.array([[0.0, 0], [30, 0], [60, 0]])
+    assert strokes.dashes(points, starts(0, 3), 4.0, 6.0) == pytest.approx(strokes.dashes(points, starts(3), 4.0, 6.0))
+
+
+def test_level_lines_become_boxes_of_whole_pixels():
+    corner = np.array([[2.0, 3], [9, 3], [9, 8], [20, 30], [20, 25]])
+    assert strokes.boxes(corner, starts(3, 2), 1).tolist() == [[2, 3, 8, 1], [9, 3, 1, 6], [20, 25, 1, 6]]
+    assert strokes.boxes(corner, starts(3, 2), 3).tolist() == [[1, 2, 10, 3], [8, 2, 3, 8], [19, 24, 3, 8]]
+
+
+def test_strokes_know_their_normals():
+    xy = np.array([[0.0, 0, 10, 0], [5, 5, 5, 9], [1, 1, 1, 1]])
+    assert strokes.across(xy) == pytest.approx(np.array([[0.0, 1, 0, 1], [-1, 0, -1, 0], [0, 0, 0, 0]]))

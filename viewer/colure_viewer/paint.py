@@ -180,15 +180,14 @@ class _Raster:
             cut = strokes.dashes(points, mark.starts, stroke * self.ratio - 1.0, gap * self.ratio + 1.0)
             self._strokes(cut, self.theme.line(mark.role, mark.colour), mark.weight)
             return
-        self._pen(self.theme.line(mark.role, mark.colour))
         if len(points) <= FEW_POINTS and strokes.is_level(points, mark.starts):
-            # A rim runs along rows and columns of pixels: whole ones are sharper, and ten times as fast.
-            self.painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+            # A rim runs along rows and columns of pixels: whole ones are sharper, and a filled box is drawn at once.
             thick = max(1, round(strokes.THICKNESS[mark.weight] * self.ratio))
-            level = path(np.floor(points) - (thick - 1) // 2, mark.starts)
-            for shift in range(thick):
-                self.painter.drawPath(level.translated(shift, shift))
+            colour = _thin_pen(self.theme.line(mark.role, mark.colour)).color()
+            for left, top, width, height in strokes.boxes(points, mark.starts, thick).tolist():
+                self.painter.fillRect(left, top, width, height, colour)
             return
+        self._pen(self.theme.line(mark.role, mark.colour))
         places = strokes.offsets(mark.weight, self.ratio)
         normal = strokes.normals(points, mark.starts) if len(places) > 1 else None
         if len(mark.starts) <= FEW_LINES:
@@ -215,10 +214,7 @@ class _Raster:
         places = strokes.offsets(weight, self.ratio)
         rows = self.kit.lines.rows(count)
         if len(places) > 1:
-            along = xy[:, 2:] - xy[:, :2]
-            length = np.maximum(np.hypot(along[:, 0], along[:, 1]), 1e-9)
-            across = np.stack([-along[:, 1] / length, along[:, 0] / length], axis=-1)
-            across = np.concatenate([across, across], axis=-1)
+            across = strokes.across(xy)
         for place in places:
             rows[...] = xy if len(places) == 1 else xy + place * across
             self.painter.drawLines(self.kit.lines.first(), count)
@@ -240,20 +236,26 @@ class _Raster:
         atlas = self.kit.star_atlas(mark.radii, tints, self.ratio)
         # With antialiasing on, every fragment would be drawn as a filled shape, twice as slowly.
         self.painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
-        rows = self.kit.fragments.rows(count)
         fine = atlas.fine(mark.xy, self.ratio)
+        code = atlas.codes(fine, mark.size, mark.tint)
         if self.memory is None or count < FEW_STARS:
-            atlas.fill(rows, atlas.codes(fine, mark.size, mark.tint), fine)
-            self.painter.drawPixmapFragments(self.kit.fragments.first(), count, atlas.pixmap)
-            return
-        self._in_bands(mark, atlas, rows, fine)
+            self._fragments(atlas, code, fine)
+        else:
+            self._in_bands(mark, atlas, code, fine)
 
-    def _in_bands(self, mark: marks.Discs, atlas: StarAtlas, rows: F64, fine: NDArray[np.int32]) -> None:
+    def _fragments(self, atlas: StarAtlas, code: NDArray[np.int32], fine: NDArray[np.int32]) -> None:
+        """Draw the pictures `code` (N,) at `fine` (N, 2)."""
+        block = self.kit.fragments
+        atlas.fill(block.rows(len(code)), code, fine)
+        self.painter.drawPixmapFragments(block.first(), len(code), atlas.pixmap)
+
+    def _in_bands(self, mark: marks.Discs, atlas: StarAtlas, code: NDArray[np.int32], fine: NDArray[np.int32]) -> None:
         """Draw many stars band by band of the page, each band read into the processor's cache just before.
 
         Stars in order of brightness lie all over a picture that is larger than the cache, and each would wait for
-        memory three times: that takes three times as long as the drawing itself. Within a band the order stays; the
-        few large discs, which could reach over the edge of a band, are drawn last.
+        memory three times: that takes three times as long as the drawing itself. The fragments of one band fit into
+        the cache as well. Within a band the order stays; the few large discs, which could reach over the edge of a
+        band, are drawn last.
         """
         memory = self.memory
         assert memory is not None
@@ -267,23 +269,22 @@ class _Raster:
         narrow = np.uint8 if bands < 256 else np.uint16
         band = np.clip(fine[:small, 1] >> (atlas.bits + shift), 0, bands - 1).astype(narrow)
         order = np.concatenate([np.argsort(band, kind="stable"), np.arange(small, count)])
-        code = atlas.codes(fine, mark.size, mark.tint)
-        atlas.fill(rows, code.take(order), fine.take(order, axis=0))
+        code, fine = code.take(order), fine.take(order, axis=0)
         ends = np.cumsum(np.bincount(band, minlength=bands)).tolist()
         # A sky is rarely as wide as its page; two pixels are a word.
         left, right = (int(v) >> (atlas.bits + 1) for v in (fine[:, 0].min(), fine[:, 0].max()))
         left = min(max(left - LARGE_STAR, 0), memory.shape[1] - 1)
         columns = slice(left, max(right + LARGE_STAR, left + 1), 8)
-        painter, block, pixmap, start = self.painter, self.kit.fragments, atlas.pixmap, 0
+        start = 0
         for number, end in enumerate(ends):
             if end > start:
                 top = max((number << shift) - LARGE_STAR, 0)
                 # One word of each cache line is enough to have it fetched, and in this order it is fetched ahead.
                 memory[top : ((number + 1) << shift) + LARGE_STAR, columns].max()
-                painter.drawPixmapFragments(block.at(start), end - start, pixmap)
+                self._fragments(atlas, code[start:end], fine[start:end])
                 start = end
         if count > small:
-            painter.drawPixmapFragments(block.at(small), count - small, pixmap)
+            self._fragments(atlas, code[small:], fine[small:])
 
     def symbols(self, mark: marks.Symbols) -> None:
         """Draw map symbols, a batch of strokes for all of them."""

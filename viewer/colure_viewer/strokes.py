@@ -60,6 +60,23 @@ def is_level(points: F64, starts: NDArray[np.int32]) -> bool:
     return bool(along.all())
 
 
+def boxes(points: F64, starts: NDArray[np.int32], thick: int) -> NDArray[np.int64]:
+    """Return the pieces of level polylines as whole boxes of pixels (K, 4): left, top, width, height."""
+    whole = np.floor(points).astype(np.int64) - (thick - 1) // 2
+    own = np.ones(len(points) - 1, dtype=bool)
+    own[starts[1:-1] - 1] = False
+    low, high = np.minimum(whole[1:], whole[:-1]), np.maximum(whole[1:], whole[:-1])
+    return np.concatenate([low, high - low + thick], axis=1)[own]
+
+
+def across(xy: F64) -> F64:
+    """Return the unit normal of each stroke (N, 4), at both of its ends (N, 4)."""
+    plane = np.ascontiguousarray(xy).view(np.complex128)
+    along = plane[:, 1] - plane[:, 0]
+    along *= 1j / np.maximum(np.abs(along), 1e-9)
+    return np.repeat(along, 2).view(np.float64).reshape(-1, 4)
+
+
 def bridged(points: NDArray[np.floating], starts: NDArray[np.int32]) -> NDArray[np.floating]:
     """Return rings laid out as in colure.marks.Areas as one ring (N, 2) that fills alike under the odd-even rule.
 
