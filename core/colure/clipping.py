@@ -20,6 +20,9 @@ FAR = 4096.0
 """Pixels outside the map beyond which lines and areas are cut on the page too, because painters lose large numbers."""
 _PARTS = 24
 """Pieces that an arc is divided into where it swings over the page."""
+SWING = float(np.tan(0.17))
+"""Tangent of the turn about the projection's axis, 10°, above which an arc swings."""
+_ALONG = np.linspace(0.0, 1.0, _PARTS + 1)
 
 
 @dataclass(frozen=True, eq=False)
@@ -167,8 +170,11 @@ def trace(window: Window, camera: Real, starts: I32) -> Trace:
     if len(owner):
         cx, cy = window.projector.to_page(pieces)
         seen = _seen(window.rect, cx[::2], cy[::2], cx[1::2], cy[1::2])
-        ends = np.stack([cx[::2], cy[::2], cx[1::2], cy[1::2]], axis=1)[seen]
-        owner = owner[seen]
+        ends = np.empty((2 * len(owner), 2))
+        ends[:, 0], ends[:, 1] = cx, cy
+        ends = ends.reshape(-1, 4)
+        if not seen.all():
+            ends, owner = ends[seen], owner[seen]
     # Painters lose large coordinates: the few segments that reach far out are cut at the rectangle.
     reach = max(left - x_min, x_max - right, top - y_min, y_max - bottom)
     if not reach <= FAR:  # nor is nan
@@ -260,12 +266,17 @@ def _segments(window: Window, camera: Real, joined: Bool) -> tuple[Bool, Float, 
         return whole, np.empty((3, 0)), at
     a, b = camera[:, at].astype(np.float64), camera[:, at + 1].astype(np.float64)
     swung = wild[at]
-    if swung.any():
-        fa, fb = _divide(a[:, swung], b[:, swung], _PARTS)
+    if swung.all():
+        a, b = _divide(a, b)
+        at = np.repeat(at, _PARTS)
+    elif swung.any():
+        fa, fb = _divide(a[:, swung], b[:, swung])
         a, b = np.concatenate([a[:, ~swung], fa], axis=1), np.concatenate([b[:, ~swung], fb], axis=1)
         at = np.concatenate([at[~swung], np.repeat(at[swung], _PARTS)])
     a, b, kept = cut_segments(window, a, b)
-    return whole, np.stack([a, b], axis=2).reshape(3, -1), at[kept]
+    pieces = np.empty((3, 2 * a.shape[1]))
+    pieces[:, ::2], pieces[:, 1::2] = a, b
+    return whole, pieces, at[kept]
 
 
 def _wild(u: Real, v: Real, suspect: Bool) -> Bool:
@@ -276,15 +287,15 @@ def _wild(u: Real, v: Real, suspect: Bool) -> Bool:
     at = np.flatnonzero(wild)
     cross = u[at] * v[at + 1] - v[at] * u[at + 1]
     along = u[at] * u[at + 1] + v[at] * v[at + 1]
-    wild[at] = np.abs(np.arctan2(cross, along)) > 0.17
+    wild[at] = np.abs(cross) > SWING * along
     return wild
 
 
-def _divide(a: Float, b: Float, parts: int) -> tuple[Float, Float]:
-    """Return the ends of `parts` pieces of each arc (3, N), in order along each arc."""
-    t = np.linspace(0.0, 1.0, parts + 1)
-    points = a[:, :, None] * (1.0 - t) + b[:, :, None] * t
-    points /= np.sqrt((points * points).sum(axis=0))
+def _divide(a: Float, b: Float) -> tuple[Float, Float]:
+    """Return the ends of _PARTS pieces of each arc (3, N), in order along each arc."""
+    points = a[:, :, None] * (1.0 - _ALONG) + b[:, :, None] * _ALONG
+    x, y, z = points
+    points /= np.sqrt(x * x + y * y + z * z)
     return points[:, :, :-1].reshape(3, -1), points[:, :, 1:].reshape(3, -1)
 
 

@@ -14,7 +14,7 @@ from itertools import pairwise
 import numpy as np
 
 from colure.arrays import Bool, Float, Int, cross
-from colure.clipping import FAR, Rect, Window, cut_segments
+from colure.clipping import FAR, SWING, Rect, Window, cut_segments
 from colure.marks import F32, I32
 
 RIM_STEP = np.radians(1.0)
@@ -94,7 +94,7 @@ def _refined(window: Window, camera: Float, starts: I32) -> tuple[Float, I32]:
     swing = suspect | suspect[after]
     a = np.flatnonzero(swing)
     b = after[a]
-    swing[a] = np.abs(np.arctan2(u[a] * v[b] - v[a] * u[b], u[a] * u[b] + v[a] * v[b])) > 0.17
+    swing[a] = np.abs(u[a] * v[b] - v[a] * u[b]) > SWING * (u[a] * u[b] + v[a] * v[b])
     if not swing.any():
         return camera, starts
     parts = np.where(swing, 48, 1)
@@ -213,9 +213,11 @@ class _Stretch:
 
 def _trace(rim: _Rim, camera: Float, starts: I32) -> tuple[list[Float], list[_Stretch]]:
     """Return the rings (3, K) that are shown whole, and the shown stretches of those that are cut."""
+    shown = rim.shown(camera)
+    if not rim.unrolled and shown.all():
+        return [camera[:, first:last] for first, last in pairwise(starts.tolist())], []
     after = following(camera.shape[1], starts)
     suspects = np.flatnonzero(rim.crossed(camera, camera[:, after]))
-    shown = rim.shown(camera)
     rings: list[Float] = []
     stretches: list[_Stretch] = []
     pieces = _pieces(rim.window, camera, suspects, after)
@@ -314,7 +316,8 @@ def _close(rim: _Rim, stretches: list[_Stretch], camera: Float, starts: I32, out
 
 def inside(point: Float, camera: Float, starts: I32, outside: Float) -> bool:
     """Return whether a direction lies in the area, by counting the edges between it and one that does not."""
-    if np.linalg.norm(point + outside) < 1e-9:
+    both = point + outside
+    if both @ both < 1e-18:
         # Opposite points have no one arc between them: go by way of a third.
         third = np.roll(point, 1) + 0.3 * point
         third = np.cross(third, point)
@@ -328,6 +331,8 @@ def _odd(p: Float, q: Float, camera: Float, starts: I32) -> bool:
     side = normal @ camera >= 0.0
     after = following(camera.shape[1], starts)
     at = np.flatnonzero(side != side[after])
+    if not len(at):
+        return False
     a, b = camera[:, at], camera[:, after[at]]
     edge = _cross(a, b)
     between = (p @ edge >= 0.0) != (q @ edge >= 0.0)

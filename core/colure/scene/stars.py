@@ -118,9 +118,10 @@ def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: 
     columns = int(width / CELL) + 2
     scale = x.dtype.type(1.0 / CELL)
     # Counted in the floating point of the pixels, which hold such whole numbers exactly, and made a number once.
-    cells = np.floor(y * scale)
+    cells, across = y * scale, x * scale
+    np.floor(cells, out=cells)
     cells *= columns
-    cells += np.floor(x * scale)
+    cells += np.floor(across, out=across)
     cell = cells.astype(np.intp)
     # Later rows are brighter and overwrite fainter ones; the table need not be cleared, as only written cells are read.
     owner = np.empty(columns * (int(height / CELL) + 2), dtype=np.int32)
