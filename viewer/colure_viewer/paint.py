@@ -25,7 +25,8 @@ MAX_STAR_ATLASES = 12
 FEW_STARS = 12000
 """Up to this many, fetching the page in bands costs more than the waiting."""
 FEW_POINTS = 200
-FEW_LINES = 12
+FEW_LINES = 16
+"""Room for the bounds of twelve signs: up to so many a call for each costs less than a path of all."""
 BAND_BYTES = 524288
 """Bytes of a picture that stay in the second-level cache of common processors, with room beside them."""
 LARGE_STAR = 4
