@@ -7,7 +7,7 @@ to find room with a margin around it, so that texts do not flicker in and out at
 """
 
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -155,12 +155,13 @@ def _crossing(low1: F32, high1: F32, low2: F32, high2: F32) -> NDArray[np.bool_]
     return np.asarray(out)
 
 
-def _on_discs(near: NDArray[np.bool_], low: F32, high: F32, discs: F32, margin: float) -> NDArray[np.intp]:
-    """Return the boxes, some perhaps twice, within `margin` of a disc; `near` (N, M) says which meet its square."""
-    box, disc = near.nonzero()
-    if not len(box):
-        return box
-    # Few boxes come near a disc's square, and only those are measured.
+def _meetings(cross: NDArray[np.bool_]) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
+    """Return the rows and the columns of what is true, which is little; one dimension is searched much faster."""
+    return np.divmod(cross.reshape(-1).nonzero()[0], cross.shape[1])
+
+
+def _on_discs(box: Any, disc: Any, low: F32, high: F32, discs: F32, margin: float) -> NDArray[np.intp]:
+    """Return those of the boxes `box` (K,) within `margin` of the discs `disc` (K,), whose squares they meet."""
     middle, reach = discs[disc, :2], discs[disc, 2] + np.float32(margin)
     gap = np.maximum(np.maximum(low[box] - middle, middle - high[box]), 0.0)
     return np.asarray(box[gap[:, 0] ** 2 + gap[:, 1] ** 2 < reach * reach])
@@ -207,20 +208,18 @@ def place(
 def _standing(at: F32, half: F32, fixed: _Obstacles, frame: tuple[float, float, float, float]) -> NDArray[np.intp]:
     """Return which of the boxes, in order of rank, can stay where they are."""
     low, high = at - half, at + half
+    stands = _inside(low, high, frame)
     n, walls = len(at), len(fixed.low) - len(fixed.discs)
     cross = _crossing(low, high, np.concatenate([low, fixed.low]), np.concatenate([high, fixed.high]))
-    stands = _inside(low, high, frame)
-    stands[_on_discs(cross[:, n + walls :], low, high, fixed.discs, 0.0)] = False
-    if walls:
-        stands &= ~cross[:, n : n + walls].any(axis=1)
-    rows = stands.nonzero()[0]
-    clash = cross[:, :n]
-    if len(rows) < n:
-        clash = clash[rows][:, rows]
-    if not len(rows):
-        return rows
-    # Each box overlaps itself; one that overlaps another of higher rank, in a column before its own, gives way.
-    return np.asarray(rows[clash.argmax(axis=1) >= np.arange(len(rows))])
+    box, other = _meetings(cross)
+    if len(box) > n:  # each meets itself at least
+        on_disc = other >= n + walls
+        stands[box[(other >= n) & ~on_disc]] = False
+        stands[_on_discs(box[on_disc], other[on_disc] - (n + walls), low, high, fixed.discs, 0.0)] = False
+        # One that overlaps another of higher rank, in a column before its own, gives way.
+        clash = (other < box) & stands[box] & stands[np.minimum(other, n - 1)]
+        stands[box[clash]] = False
+    return np.asarray(stands.nonzero()[0])
 
 
 def _seek(
@@ -251,9 +250,10 @@ def _seek(
     kept = (choice >= 0).nonzero()[0]
     there, extent = request.centres[kept, choice[kept]], request.half[kept]
     kept_low, kept_high = there - extent, there + extent
+    margin = np.float32(MARGIN)
     near = _crossing(
-        low - np.float32(MARGIN),
-        high + np.float32(MARGIN),
+        low - margin,
+        high + margin,
         np.concatenate([kept_low, fixed.low]),
         np.concatenate([kept_high, fixed.high]),
     )
@@ -262,8 +262,11 @@ def _seek(
         # Those in the lead need not mind who stands behind them.
         near[: int(row.searchsorted(lead)), leading : len(kept)] = False
     marks = near.shape[1] - len(fixed.discs)
-    taken: NDArray[np.bool_] = np.asarray(near[:, :marks].any(axis=1))
-    taken[_on_discs(near[:, marks:], low, high, fixed.discs, MARGIN)] = True
+    box, other = _meetings(near)
+    on_disc = other >= marks
+    taken = np.zeros(len(row), dtype=bool)
+    taken[box[~on_disc]] = True
+    taken[_on_discs(box[on_disc], other[on_disc] - marks, low, high, fixed.discs, MARGIN)] = True
     free = (~taken).nonzero()[0]
     if not len(free):
         return free
