@@ -31,13 +31,13 @@ def nutation(at: Instant, series: str = "iau2000a") -> tuple[Float, Float]:
     if series not in SERIES:
         raise FrameError(f"nutation series '{series}': expected {' or '.join(SERIES)}")
     jd1, jd2 = tt_parts(at)
+    if series == "iau2000a" and isinstance(jd1, float) and isinstance(jd2, float):
+        return _scalar(jd1, jd2)
     years = julian_years(at)
     if not (np.all(years >= SPAN[0]) and np.all(years <= SPAN[1])):
-        raise SpanError(f"nutation: a year is outside the span of the series, {SPAN[0]:g} to {SPAN[1]:g}")
+        raise _outside()
     if series == "iau1980":
         return _pair(erfa.nut80(jd1, jd2))
-    if isinstance(jd1, float) and isinstance(jd2, float):
-        return _scalar(jd1, jd2)
     if years.size <= FEW:
         return _pair(erfa.nut06a(jd1, jd2))
     return nutationtable.interpolate(jd1, jd2)
@@ -46,7 +46,13 @@ def nutation(at: Instant, series: str = "iau2000a") -> tuple[Float, Float]:
 @lru_cache(maxsize=64)
 def _scalar(jd1: float, jd2: float) -> tuple[Float, Float]:
     # One moment asks for its nutation several times: for its equator, its sidereal time, its obliquity.
+    if not SPAN[0] <= float(julian_years((jd1, jd2))) <= SPAN[1]:
+        raise _outside()
     return _pair(erfa.nut06a(jd1, jd2))
+
+
+def _outside() -> SpanError:
+    return SpanError(f"nutation: a year is outside the span of the series, {SPAN[0]:g} to {SPAN[1]:g}")
 
 
 def _pair(values: tuple[Float, Float]) -> tuple[Float, Float]:

@@ -1,5 +1,7 @@
 """The axes of date: true equator, true ecliptic and celestial intermediate system, as matrices from ICRS axes."""
 
+import math
+
 import erfa
 import numpy as np
 
@@ -32,7 +34,10 @@ def cirs_matrix(at: Instant, model: str = "auto") -> Float:
 
 def turned(matrix: Float, angle: Float | float) -> Float:
     """Return matrices (*shape, 3, 3) whose target axes are turned by `angle` (*shape) about their z."""
-    # Two rows change: a product of whole matrices would cost five times as much.
+    if matrix.ndim == 2 and np.ndim(angle) == 0:
+        a, b = math.cos(angle), math.sin(angle)
+        return np.asarray(np.array([[a, b, 0.0], [-b, a, 0.0], [0.0, 0.0, 1.0]]) @ matrix)
+    # Two rows change: for many moments a product of whole matrices would cost five times as much.
     c, s = np.cos(angle)[..., None], np.sin(angle)[..., None]
     out = np.empty(np.broadcast_shapes(matrix.shape, (*np.shape(angle), 3, 3)))
     out[..., 0, :] = c * matrix[..., 0, :] + s * matrix[..., 1, :]

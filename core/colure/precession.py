@@ -93,6 +93,13 @@ def by_model(
     `tail` is the number of trailing dimensions that the functions add to the shape of the moments.
     """
     jd1, jd2 = tt_parts(at)
+    if model == "auto" and isinstance(jd1, float) and isinstance(jd2, float):
+        # One moment, as every frame of a chart asks for it: its side of the seam, without arrays of no dimension.
+        year = 2000.0 + ((jd1 - J2000) + jd2) / YEAR
+        if not abs(year - 2000.0) > SEAM_YEARS:
+            return functions["iau2006"](jd1, jd2)
+        check_span("vondrak2011", np.asarray(year))
+        return functions["vondrak2011"](jd1, jd2)
     years = julian_years(at)
     if check_model(model) != "auto":
         check_span(model, years)

@@ -63,7 +63,9 @@ def check_place(place: str, observer: Observer) -> None:
 
 
 def _rows(vectors: Float, start: int, stop: int) -> Float:
-    """Return (bodies, n, 3) as contiguous components (3, bodies, stop − start)."""
+    """Return (bodies, n, 3) as components (3, bodies, stop − start), contiguous unless there is one moment."""
+    if vectors.shape[1] == 1:
+        return vectors.transpose(2, 0, 1)  # a copy would cost more than it saves
     return vectors[:, start:stop].transpose(2, 0, 1).copy()
 
 

@@ -2,6 +2,7 @@
 
 from collections.abc import Collection
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import NamedTuple
 
 import numpy as np
@@ -78,14 +79,20 @@ class ObserverState(NamedTuple):
     to_itrs: Float | None = None
 
 
-def _site_vectors(site: Site, matrix: Float) -> tuple[Float, Float, Float]:
-    """Return position (au), velocity (au/day) and zenith, each (*shape, 3), of a site about the Earth's centre."""
-    lon, lat = site.lon_deg * DEG, site.lat_deg * DEG
-    fixed = geocentric_site(lat, site.height_m, lon)
+@lru_cache(maxsize=16)
+def _on_ground(lon_deg: float, lat_deg: float, height_m: float) -> Float:
+    """Return position (au), velocity (au/day) and zenith (3, 3) of a site on Earth-fixed axes, which never change."""
+    lon, lat = lon_deg * DEG, lat_deg * DEG
+    fixed = geocentric_site(lat, height_m, lon)
     up = np.array([np.cos(lat) * np.cos(lon), np.cos(lat) * np.sin(lon), np.sin(lat)])
     # v = ω × r about the pole of the Earth-fixed axes; the pole's own motion is 1e-6 of that.
     moving = EARTH_TURN_RAD_DAY * np.array([-fixed[1], fixed[0], 0.0])
-    vectors = np.stack([fixed, moving, up]) @ matrix
+    return np.stack([fixed, moving, up])
+
+
+def _site_vectors(site: Site, matrix: Float) -> tuple[Float, Float, Float]:
+    """Return position (au), velocity (au/day) and zenith, each (*shape, 3), of a site about the Earth's centre."""
+    vectors = _on_ground(site.lon_deg, site.lat_deg, site.height_m) @ matrix
     return vectors[..., 0, :], vectors[..., 1, :], vectors[..., 2, :]
 
 
