@@ -100,9 +100,17 @@ def key(ctx: Context) -> object:
 
 def points(ctx: Context) -> Layer:
     """Return the layer of equinoxes, solstices and poles, and of the crossings into constellations."""
-    groups = [ctx.sky[name] for name in ("points", "crossings") if name in ctx.sky.layers]
-    marks = tuple(mark for group, kind in zip(groups, (4, 0), strict=False) if (mark := _points(ctx, group, kind)))
-    return Layer("points", marks, points_key(ctx))
+    groups: list[NamesSky] = [ctx.sky[name] for name in ("points", "crossings") if name in ctx.sky.layers]
+    columns = groups[0].columns if len(groups) == 1 else np.concatenate([group.columns for group in groups], axis=1)
+    xy, on = on_page(ctx, columns, 4.0)
+    marks: list[Symbols] = []
+    begin = 0
+    for group, first_cross in zip(groups, (4, 0), strict=False):
+        end = begin + group.columns.shape[1]
+        if mark := _points(xy[begin:end], on[begin:end], first_cross):
+            marks.append(mark)
+        begin = end
+    return Layer("points", tuple(marks), points_key(ctx))
 
 
 def points_key(ctx: Context) -> object:
@@ -110,9 +118,8 @@ def points_key(ctx: Context) -> object:
     return (*(ctx.sky.key(name) for name in ("points", "crossings") if name in ctx.sky.layers), ctx.view_key)
 
 
-def _points(ctx: Context, sky: NamesSky, first_cross: int) -> Symbols | None:
+def _points(xy: NDArray[np.float32], on: NDArray[np.bool_], first_cross: int) -> Symbols | None:
     """Return points as circles with a dot up to a row, and as crosses from it on."""
-    xy, on = on_page(ctx, sky.columns, 4.0)
     at = np.flatnonzero(on)
     if not len(at):
         return None

@@ -91,9 +91,9 @@ def build(ctx: Context) -> tuple[Layer, Shown]:
         x, y = x.take(inside), y.take(inside)
     keep = _thin(x - (ctx.frame[0] - 16.0), y - (ctx.frame[1] - 16.0), ctx.page.width + 32, ctx.page.height + 32)
     total = len(x)
-    xy = np.empty((len(keep), 2), dtype=np.float32)
-    xy[:, 0] = x.take(keep)
-    xy[:, 1] = y.take(keep)
+    pairs = np.empty((total, 2), dtype=np.float32)
+    pairs[:, 0], pairs[:, 1] = x, y
+    xy = pairs.take(keep, axis=0)
     at = keep if inside is None else inside.take(keep)
     if numbers is not None:
         at = numbers.take(at)
@@ -124,7 +124,9 @@ def _thin(x: NDArray[np.floating], y: NDArray[np.floating], width: int, height: 
     cells += np.floor(across, out=across)
     cell = cells.astype(np.intp)
     # Later rows are brighter and overwrite fainter ones; the table need not be cleared, as only written cells are read.
-    owner = np.empty(columns * (int(height / CELL) + 2), dtype=np.int32)
-    numbers = np.arange(len(cell), dtype=np.int32)
+    # The smaller it is, the more of it stays near the processor.
+    kind = np.uint16 if len(cell) <= 65536 else np.int32
+    owner = np.empty(columns * (int(height / CELL) + 2), dtype=kind)
+    numbers = np.arange(len(cell), dtype=kind)
     owner[cell] = numbers
     return np.flatnonzero(owner.take(cell) == numbers)
