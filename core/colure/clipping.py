@@ -99,10 +99,12 @@ class Trace:
         """Return the trace of the points first … last − 1, which no segment joins to others."""
         if first >= last:
             return Trace.nothing()
-        mine = (self.cut_of >= first) & (self.cut_of < last)
-        cut_xy = self.cut_xy[np.repeat(mine, 2)] if len(mine) else self.cut_xy
-        whole = self.whole[first : last - 1]
-        return Trace(self.xy[first:last], whole, cut_xy, self.cut_of[mine] - first)
+        xy, whole = self.xy[first:last], self.whole[first : last - 1]
+        if not len(self.cut_of):
+            return Trace(xy, whole, self.cut_xy, self.cut_of)
+        mine = ((self.cut_of >= first) & (self.cut_of < last)).nonzero()[0]
+        cut_xy = self.cut_xy.reshape(-1, 4).take(mine, axis=0).reshape(-1, 2)
+        return Trace(xy, whole, cut_xy, self.cut_of.take(mine) - first)
 
     def polylines(self, bounds: I32) -> list[tuple[F32, I32]]:
         """Return page polylines (points (M, 2), starts), in groups: group k is of the points bounds[k] … bounds[k + 1].
@@ -131,7 +133,7 @@ class Trace:
             if begin:
                 begins = begins - begin
             if k in cut:
-                extra, first = _chained(self.cut_xy[np.repeat(group == k, 2)] if len(cut) > 1 else self.cut_xy)
+                extra, first = _chained(self.cut_xy.reshape(-1, 4)[group == k].reshape(-1, 2))
                 begins = np.concatenate([begins, len(own) + first])
                 own = np.concatenate([own, extra])
             starts = np.empty(len(begins) + 1, np.int32)
@@ -145,12 +147,12 @@ def _chained(ends: F32) -> tuple[F32, NDArray[np.intp]]:
 
     Pieces that meet become one polyline: a painter has far fewer to draw, and no joints show.
     """
-    meets = np.zeros(len(ends), dtype=bool)
-    meets[2::2] = (ends[2::2] == ends[1:-1:2]).all(axis=1)
-    kept = np.flatnonzero(~meets)
-    first = np.zeros(len(ends), dtype=bool)
-    first[::2] = True
-    return ends[kept], np.flatnonzero(first[kept])
+    kept = np.ones(len(ends), dtype=bool)
+    point = ends.view(np.complex64)[:, 0]
+    np.not_equal(point[2::2], point[1:-1:2], out=kept[2::2])
+    at = kept.nonzero()[0]
+    # The first ends are those with even numbers.
+    return ends.take(at, axis=0), (at % 2 == 0).nonzero()[0]
 
 
 def trace(window: Window, camera: Real, starts: I32) -> Trace:

@@ -98,17 +98,23 @@ def prepare(ctx: Context) -> Strokes:
     """Return the circles' curves, to be traced and finished."""
     parts: list[tuple[int, Circle, FrameAxes, Int, Steps]] = []
     own: list[Float] = []
+    step_scale = ctx.step_scale
     for number, (circle, axes) in enumerate(ctx.sky["circles"]):
         lat = circle.lat_deg * DEG
         first, last = span(ctx, axes, lat)
         if last > first:
-            # Degrees of longitude are shorter on a small circle.
-            chosen = steps(ctx.step_scale * float(np.cos(lat)))
+            chosen = _steps(step_scale, lat)
             arcsec, columns = columns_of(axes, first, last, _fine(chosen.minor), lat)
             parts.append((number, circle, axes, arcsec, chosen))
             own.append(columns)
     starts = np.concatenate([[0], np.cumsum([len(part[3]) for part in parts])]).astype(np.int32)
     return Strokes(_camera(ctx, parts, own), starts, lambda drawn: _finish(ctx, parts, starts, drawn))
+
+
+@lru_cache(maxsize=64)
+def _steps(scale: float, lat: float) -> Steps:
+    """Return the graduation of a parallel: degrees of longitude are shorter on a small circle."""
+    return steps(scale * float(np.cos(lat)))
 
 
 def _camera(ctx: Context, parts: list[tuple[int, Circle, FrameAxes, Int, Steps]], own: list[Float]) -> Any:
