@@ -157,11 +157,13 @@ def _iso(fields: tuple[Any, ...], decimals: int) -> str:
 
 def iso(fields: tuple[Any, ...], decimals: int) -> Any:
     """Return ISO 8601 text of (year … second), a str for scalars, else an array of str of their shape."""
+    if all(np.ndim(part) == 0 for part in fields):
+        return _iso(
+            tuple(part.item() if isinstance(part, np.ndarray | np.generic) else part for part in fields), decimals
+        )
     arrays = np.broadcast_arrays(*fields)
     rows = zip(*(a.ravel().tolist() for a in arrays), strict=True)
     texts = [_iso(row, decimals) for row in rows]
-    if arrays[0].ndim == 0:
-        return texts[0]
     return np.array(texts, dtype=np.str_).reshape(arrays[0].shape)
 
 

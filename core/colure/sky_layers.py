@@ -195,6 +195,11 @@ def star_names(base: StarRows, kinds: tuple[names.Kind, ...]) -> StarNames:
 # Bodies
 
 
+@lru_cache(maxsize=16)
+def _radii_au(names: tuple[str, ...]) -> Float:
+    return np.array([appearance.RADIUS_KM.get(name, 0.0) for name in names]) / KM_PER_AU
+
+
 @dataclass(frozen=True, eq=False)
 class BodiesSky:
     """Sun, Moon and planets as the observer sees them.
@@ -219,14 +224,15 @@ class BodiesSky:
     @cached_property
     def radius(self) -> Float:
         """Angular radius (B,) in radians, 0 for a point that is no body."""
-        au = np.array([appearance.RADIUS_KM.get(name, 0.0) for name in self.names]) / KM_PER_AU
-        return np.asarray(np.arcsin(np.minimum(au / self.distance_au, 1.0)))
+        return np.asarray(np.arcsin(np.minimum(_radii_au(self.names) / self.distance_au, 1.0)))
 
     @cached_property
     def lit(self) -> Float:
         """Illuminated fraction (B,) of the disc; 1 for the Sun."""
         lit = np.clip(phases.illuminated(phases.phase_angle(self.from_sun_au, self.sight_au)), 0.0, 1.0)
-        return np.where([name == "sun" for name in self.names], 1.0, lit)
+        if "sun" in self.names:
+            lit[self.names.index("sun")] = 1.0
+        return np.asarray(lit)
 
     @cached_property
     def towards_sun(self) -> Float:

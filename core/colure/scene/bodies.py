@@ -1,8 +1,10 @@
 """Sun, Moon and planets on the page: at true size where that can be seen, else as marks, with their phases."""
 
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colure.arrays import Float, cross
 from colure.marks import F32, Bodies, Layer
@@ -28,51 +30,62 @@ class Shown:
 def build(ctx: Context) -> tuple[Layer, Shown]:
     """Return the layer of bodies and which are shown."""
     sky = ctx.sky["bodies"]
-    wanted = [i for i, name in enumerate(sky.names) if name in ctx.sky.session.bodies]
-    centre = ctx.view.centre.body
-    if centre in sky.names and centre not in ctx.sky.session.bodies:
-        wanted.append(sky.names.index(centre))
-    at = np.array(sorted(wanted, key=lambda i: -float(sky.distance_au[i])), dtype=np.intp)
-    if not len(at):
+    wanted, marks, moon = _wanted(sky.names, ctx.sky.session.bodies, ctx.view.centre.body)
+    if not len(wanted):
         return Layer("bodies", (), key(ctx)), Shown((), np.empty((0, 2), np.float32), np.empty(0, np.float32))
-    xy, limb, scale = _laid(ctx, sky.vectors[at], sky.towards_sun[at])
+    # The nearest last: it is drawn over the others.
+    order = (-sky.distance_au[wanted]).argsort(kind="stable")
+    at, mark = wanted[order], marks[order]
+    xy, limb, scale, shown = _laid(ctx, sky.vectors[at], sky.towards_sun[at])
     true = sky.radius[at] * scale
-    names = [sky.names[i] for i in at]
-    mark = np.array([MARKS.get(name, SMALL) for name in names])
     radius = np.maximum(true, mark)
     true_size = true >= mark
-    phased = np.array([name == "moon" for name in names]) | (true_size & (true >= PHASE_FROM))
+    phased = moon[order] | (true_size & (true >= PHASE_FROM))
     lit = np.where(phased, sky.lit[at], 1.0)
-    camera = ctx.projector.to_camera(np.ascontiguousarray(sky.vectors[at].T))
-    shown = ctx.projector.on_sky(camera)
     shown &= in_page(ctx, xy[:, 0], xy[:, 1], radius)
-    keep = np.flatnonzero(shown)
+    keep = shown.nonzero()[0]
+    names = [sky.names[i] for i in at.tolist()]
+    pixel, reach = xy.astype(np.float32), radius.astype(np.float32)
     bodies = Bodies(
-        tuple(names[i] for i in keep),
-        xy[keep].astype(np.float32),
-        radius[keep].astype(np.float32),
+        tuple(names[i] for i in keep.tolist()),
+        pixel[keep],
+        reach[keep],
         lit[keep].astype(np.float32),
         limb[keep].astype(np.float32),
         true_size[keep],
         at[keep].astype(np.int64),
     )
-    order = keep[np.argsort(-mark[keep], kind="stable")]
-    listed = Shown(tuple(names[i] for i in order), xy[order].astype(np.float32), radius[order].astype(np.float32))
+    largest = keep[(-mark[keep]).argsort(kind="stable")]
+    listed = Shown(tuple(names[i] for i in largest.tolist()), pixel[largest], reach[largest])
     return Layer("bodies", (bodies,), key(ctx), shown=len(keep), total=len(at)), listed
 
 
-def _laid(ctx: Context, vectors: Float, towards_sun: Float) -> tuple[Float, Float, Float]:
-    """Return page positions (B, 2), the direction of the bright limb on the page, and pixels per radian there."""
-    step = 1e-5
+@lru_cache(maxsize=16)
+def _wanted(
+    names: tuple[str, ...], chosen: tuple[str, ...], centre: str | None
+) -> tuple[NDArray[np.intp], Float, NDArray[np.bool_]]:
+    """Return the places in `names` of the bodies to be drawn, the least radii of their marks, and which is the Moon."""
+    wanted = [i for i, name in enumerate(names) if name in chosen]
+    if centre in names and centre not in chosen:
+        wanted.append(names.index(centre))
+    marks = np.array([MARKS.get(names[i], SMALL) for i in wanted])
+    return np.array(wanted, dtype=np.intp), marks, np.array([names[i] == "moon" for i in wanted], dtype=bool)
+
+
+def _laid(ctx: Context, vectors: Float, towards_sun: Float) -> tuple[Float, Float, Float, NDArray[np.bool_]]:
+    """Return page positions (B, 2), the direction of the bright limb, pixels per radian, and what is on the sky."""
+    step, n = 1e-5, len(vectors)
+    # A step so short leaves the length of a vector as it is.
     here = np.concatenate([vectors, vectors + step * towards_sun, vectors + step * cross(vectors, towards_sun)])
-    here /= np.sqrt((here * here).sum(axis=1))[:, None]
-    x, y = ctx.projector.to_page(ctx.projector.to_camera(np.ascontiguousarray(here.T)))
-    page = np.stack([x, y], axis=1).reshape(3, -1, 2)
-    along, across = page[1] - page[0], page[2] - page[0]
+    camera = ctx.projector.to_camera(np.ascontiguousarray(here.T))
+    x, y = ctx.projector.to_page(camera)
+    along_x, along_y = x[n : 2 * n] - x[:n], y[n : 2 * n] - y[:n]
     # The mean of two perpendicular scales: a disc stays a disc, of about the area that its ellipse would have.
-    area = np.abs(along[:, 0] * across[:, 1] - along[:, 1] * across[:, 0])
+    area = np.abs(along_x * (y[2 * n :] - y[:n]) - along_y * (x[2 * n :] - x[:n]))
     scale = np.sqrt(area) / step
-    return page[0], np.arctan2(along[:, 1], along[:, 0]), np.where(scale > 0.0, scale, ctx.scale)
+    xy = np.stack([x[:n], y[:n]], axis=1)
+    on_sky = ctx.projector.on_sky(camera[:, :n])
+    return xy, np.arctan2(along_y, along_x), np.where(scale > 0.0, scale, ctx.scale), on_sky
 
 
 def key(ctx: Context) -> object:
