@@ -26,7 +26,7 @@ GAP = 3.0
 HIDDEN, UNKNOWN = -1, -2
 """What a memory says of a text that found no room, and of one that it has never met."""
 
-PATIENCE = 4
+PATIENCE = 8
 """A text that found no room looks again in one frame of so many."""
 
 
@@ -109,13 +109,21 @@ def join(requests: list[Request]) -> Request:
 _AROUND = np.array(
     [[1, 0], [0.8, -0.8], [0.8, 0.8], [-1, 0], [-0.8, -0.8], [-0.8, 0.8], [0, -1], [0, 1]], dtype=np.float32
 )
-_CORNER = np.sign(_AROUND)
+_WEIGHTS = np.zeros((5, len(_AROUND), 2), np.float32)
+"""How x, y, reach, half-width and half-height make up each coordinate of each position: rows of a matrix."""
+_WEIGHTS[0, :, 0] = _WEIGHTS[1, :, 1] = 1.0
+_WEIGHTS[2] = _AROUND
+_WEIGHTS[3, :, 0], _WEIGHTS[4, :, 1] = np.sign(_AROUND).T
 
 
 def around(xy: F32, radius: F32, half: F32) -> F32:
     """Return the eight positions (N, 8, 2) of texts about discs at `xy` (N, 2) with `radius` (N,)."""
-    reach = (radius + np.float32(GAP))[:, None, None] * _AROUND
-    return np.asarray(xy[:, None, :] + reach + _CORNER * half[:, None, :], dtype=np.float32)
+    parts = np.empty((len(xy), 5), np.float32)
+    parts[:, :2] = xy
+    parts[:, 2] = radius
+    parts[:, 2] += np.float32(GAP)
+    parts[:, 3:] = half
+    return np.asarray((parts @ _WEIGHTS.reshape(5, -1)).reshape(-1, len(_AROUND), 2))
 
 
 class _Obstacles(NamedTuple):
