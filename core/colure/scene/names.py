@@ -2,19 +2,20 @@
 
 from dataclasses import dataclass
 from functools import lru_cache
-from typing import Any
+from typing import Any, NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from colure.arrays import DEG, TWO_PI, Float, cartesian
 from colure.belt import DIVISION_GLYPHS
 from colure.fontmetrics import PX_PER_PT, width_px
 from colure.graduation import TURN, figure
 from colure.labels import NOWHERE, Placement, Request, around, join, place
-from colure.marks import F32, Labels, Layer
+from colure.marks import F32, I32, Labels, Layer
 from colure.scene import bodies as body_marks
 from colure.scene import stars as star_marks
-from colure.scene.circles import TICKS, Curves
+from colure.scene.circles import TICKS, Curves, Scale
 from colure.scene.context import Context, on_page
 from colure.scene.wanted import Wanted, height, turned_half, upright
 from colure.sky import FrameAxes
@@ -122,7 +123,7 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     row = (np.cumsum(has) - 1)[scale.row[at]]
     circles = [curves.circles[i] for i in used.tolist()]
     texts = tuple(circle.name for circle in circles)
-    widths = np.array([width_px(text, size, "label.circle", italic=True) for text in texts])
+    widths = _circle_widths(texts, size)
     lift = (np.where(scale.graduated[used], TICKS[2], 0.0) + 4.0 + 0.5 * tall).astype(np.float32)
     tangent = curves.tangent[at]
     angle = upright(tangent)
@@ -152,41 +153,63 @@ def _circle_names(ctx: Context, curves: Curves | None) -> Wanted | None:
     )
 
 
+@lru_cache(maxsize=16)
+def _circle_widths(texts: tuple[str, ...], size_pt: float) -> Float:
+    return np.array([width_px(text, size_pt, "label.circle", italic=True) for text in texts])
+
+
 def _figures(curves: Curves | None) -> Wanted | None:
     """Return the degree figures along the graduated circles: below the line, or above the ticks."""
     if curves is None:
         return None
     size = 9.0
     tall = height(size)
-    row = curves.scale.row
-    at = curves.scale.figures[curves.shown[curves.scale.figures]]
-    arcsec = curves.scale.arcsec[at] % TURN
-    ids = _FIGURE + (curves.numbers[row[at]] << 32) + arcsec
-    # A circle that closes has its first point twice.
-    once = np.append(np.diff(ids) != 0, True) & ~((arcsec == 0) & (curves.scale.arcsec[at] > 0))
-    if not once.all():
-        at, arcsec, ids = at[once], arcsec[once], ids[once]
-    if not len(at):
+    every = _graduation(curves.scale, size)
+    on = curves.shown[every.at].nonzero()[0]
+    if not len(on):
         return None
-    values, index = np.unique(arcsec, return_inverse=True)
-    texts, wide = _figure_texts(tuple(values.tolist()), size)
+    at, row = every.at[on], every.row[on]
+    ids = _FIGURE + (curves.numbers[row] << 32) + every.arcsec[on]
     tangent = curves.tangent[at]
     xy, up = curves.xy[at], curves.north[at]
     down, over = np.float32(3.5 + 0.5 * tall), np.float32(TICKS[2] + 3.0 + 0.5 * tall)
     centres = np.empty((len(at), 2, 2), np.float32)
     centres[:, 0] = xy - up * down
     centres[:, 1] = xy + up * over
-    request = Request(ids, centres, turned_half(wide[index], tall, tangent))
+    request = Request(ids, centres, turned_half(every.width[on], tall, tangent))
     colours = [circle.colour for circle in curves.circles]
     return Wanted(
         "figure.circle",
         request,
-        texts,
-        index.astype(np.int32),
+        every.texts,
+        every.number[on],
         upright(tangent),
         size,
-        colours=tuple(colours[i] for i in row[at].tolist()),
+        colours=tuple(colours[i] for i in row.tolist()),
     )
+
+
+class _Graduation(NamedTuple):
+    """The figures of circles, wherever these are: the point, circle, longitude, text and width in pixels of each."""
+
+    at: NDArray[np.intp]
+    row: NDArray[np.intp]
+    arcsec: NDArray[np.int64]
+    number: I32
+    width: F32
+    texts: tuple[str, ...]
+
+
+@lru_cache(maxsize=4)
+def _graduation(scale: Scale, size_pt: float) -> _Graduation:
+    """Return the figures of a graduation, which stays the same while the moment alone changes."""
+    raw = scale.arcsec[scale.figures]
+    # A circle that closes has its first point twice.
+    once = ~((raw % TURN == 0) & (raw > 0))
+    at, arcsec = scale.figures[once], raw[once] % TURN
+    values, index = np.unique(arcsec, return_inverse=True)
+    texts, wide = _figure_texts(tuple(values.tolist()), size_pt)
+    return _Graduation(at, scale.row[at], arcsec, index.astype(np.int32), wide[index], texts)
 
 
 @lru_cache(maxsize=64)
