@@ -9,7 +9,7 @@ from colure import names, scene, sky
 from colure.arrays import ARCSEC, cartesian, separation
 from colure.frames import from_icrs
 from colure.graduation import figure, grid_step, steps, visible_longitudes
-from colure.marks import Areas, Bodies, Discs, Labels, Lines, Scene, Segments
+from colure.marks import Areas, Bodies, Discs, Labels, Lines, Scene, Segments, Symbols
 from colure.reduction import Observer, reduce_bodies
 from colure.scene.stars import CELL, scale_of
 from colure.session import PROJECTIONS, Centre, Circle, Session, View
@@ -496,3 +496,15 @@ def test_a_small_page_shows_fewer_stars_unless_the_limit_is_set():
     # Half as dense again at most, where the same limit would be several times as dense.
     assert density[0] < 1.5 * density[1]
     assert chart(size=(420, 320), limit_mag=7.2).layer("stars").total > small.layer("stars").total
+
+
+def test_crossings_are_crosses_with_the_points_shown_or_not():
+    """The first four crossings were once drawn as equinoxes where the points were switched off."""
+    belt = replace(DEMO.belt, crossings=True)
+    for shown in (True, False):
+        session = replace(DEMO, belt=belt, layers=replace(DEMO.layers, points=shown))
+        session = replace(session, view=replace(session.view, projection="hammer", width_deg=360.0))
+        marks = [m for m in chart(session).layer("points").marks if isinstance(m, Symbols)]
+        last = marks[-1]
+        assert len(last.xy) > 10
+        assert {last.kinds[kind] for kind in last.kind} == {"cross"}

@@ -100,14 +100,17 @@ def key(ctx: Context) -> object:
 
 def points(ctx: Context) -> Layer:
     """Return the layer of equinoxes, solstices and poles, and of the crossings into constellations."""
-    groups: list[NamesSky] = [ctx.sky[name] for name in ("points", "crossings") if name in ctx.sky.layers]
+    # Equinoxes and solstices, the first four points, are circles with a dot; poles and crossings are crosses.
+    circles_first = {"points": 4, "crossings": 0}
+    shown = [name for name in circles_first if name in ctx.sky.layers]
+    groups: list[NamesSky] = [ctx.sky[name] for name in shown]
     columns = groups[0].columns if len(groups) == 1 else np.concatenate([group.columns for group in groups], axis=1)
     xy, on = on_page(ctx, columns, 4.0)
     marks: list[Symbols] = []
     begin = 0
-    for group, first_cross in zip(groups, (4, 0), strict=False):
+    for name, group in zip(shown, groups, strict=True):
         end = begin + group.columns.shape[1]
-        if mark := _points(xy[begin:end], on[begin:end], first_cross):
+        if mark := _points(xy[begin:end], on[begin:end], circles_first[name]):
             marks.append(mark)
         begin = end
     return Layer("points", tuple(marks), points_key(ctx))
