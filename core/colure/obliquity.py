@@ -96,14 +96,21 @@ def _vondrak_poles(years: Float) -> Float:
     return np.arctan2(norm(np.cross(equator, ecliptic)), dot(equator, ecliptic))
 
 
+def _near(jd1: float, jd2: float) -> bool:
+    return abs((jd1 - precession.J2000) + jd2) <= precession.SEAM_YEARS * precession.YEAR
+
+
 def mean(at: Instant, model: str = "auto") -> Float:
     """Return the mean obliquity (*shape), rad, by one of MODELS; `auto` as for precession.
 
     Raises SpanError outside the model's span and FrameError for an unknown model.
     """
     check_model(model)
-    years = julian_years(at)
     jd1, jd2 = tt_parts(at)
+    if model == "auto" and isinstance(jd1, float) and isinstance(jd2, float) and _near(jd1, jd2):
+        # One moment, as a chart asks for it: no arrays of no dimension.
+        return np.asarray(erfa.obl06(jd1, jd2))
+    years = julian_years(at)
     if model == "auto":
         far = is_far(years)
         if not np.any(far):

@@ -8,6 +8,7 @@ in none but the stars' (which sky cells) and the axes'.
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 from types import MappingProxyType
 from typing import Any
 
@@ -111,7 +112,15 @@ def frame_axes(name: str, moment: Moment, site: Site | None, omitted: tuple[str,
         from colure.ledger import turns  # a start with every step in place does without the ledger
 
         return FrameAxes(frame, moment, site, turns.reduced(frame, moment, site, omitted).T)
+    if not frame.needs_moment:
+        return FrameAxes(frame, moment, site, _fixed_axes(frame))
     return FrameAxes(frame, moment, site, frames.rotation(frame, moment, site).matrix.T)
+
+
+@lru_cache(maxsize=64)
+def _fixed_axes(frame: Frame) -> Float:
+    """Return the matrix (3, 3) from the axes of a frame that no moment changes to ICRS."""
+    return frames.rotation(frame).matrix.T
 
 
 def _frame_key(name: str, session: Session) -> object:

@@ -19,6 +19,7 @@ from colure.scene.circles import TICKS, Curves, Scale
 from colure.scene.context import Context, on_page
 from colure.scene.wanted import Wanted, height, turned_half, upright
 from colure.sky import FrameAxes
+from colure.sky_layers import StarNames
 
 # The first part of a text's identity; the second is the row in its source.
 _BODY, _CIRCLE, _FIGURE, _STAR, _DEEP, _CONSTELLATION, _POINT, _CROSSING, _BELT = (k << 56 for k in range(1, 10))
@@ -292,9 +293,8 @@ def _stars(ctx: Context) -> Spots | None:
     if "stars" not in ctx.sky.layers or "star names" not in ctx.sky.layers:
         return None
     named = ctx.sky["star names"]
-    bright = int(np.searchsorted(named.vmag, ctx.limit, side="right"))
-    scale = star_marks.scale_of(ctx.limit)
-    radius = scale.radii[scale.size(named.vmag[:bright])]
+    radius = _named_radii(named, ctx.limit)
+    bright = len(radius)
     directions = ctx.sky["stars"].directions[:, named.at[:bright]]
     return Spots(
         "label.star",
@@ -306,6 +306,14 @@ def _stars(ctx: Context) -> Spots | None:
         radius,
         MOST_STARS,
     )
+
+
+@lru_cache(maxsize=4)
+def _named_radii(named: StarNames, limit: float) -> F32:
+    """Return the radii in pixels of the named stars that are not fainter than a limit, the brightest first."""
+    bright = int(np.searchsorted(named.vmag, limit, side="right"))
+    scale = star_marks.scale_of(limit)
+    return np.asarray(scale.radii[scale.size(named.vmag[:bright])])
 
 
 def _deep_sky(ctx: Context) -> Spots | None:
