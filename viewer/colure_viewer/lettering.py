@@ -56,8 +56,10 @@ class Lettering:
         colour = theme.text(mark.role, mark.colour)
         turned = mark.angle != 0.0
         some = np.count_nonzero(turned)
+        # Those that stand on the page only: a mark may carry hundreds that have found no room.
+        texts = [mark.texts[number] for number in mark.index.tolist()]
         level, fine = (
-            self.atlas.tiles(mark.texts, face, colour, halo, ratio * scale)[mark.index] if wanted else None
+            self.atlas.tiles(texts, face, colour, halo, ratio * scale) if wanted else None
             for scale, wanted in ((1.0, some < len(turned)), (TURNED, some > 0))
         )
         if fine is None or level is None:
