@@ -125,14 +125,6 @@ def _at_scalar(frame: Frame, tt1: float, tt2: float, held: _Held) -> Float:
 def _of_date(frame: Frame, moment: Moment, site: Ground | None) -> Float:
     model = frame.model or "auto"
     match frame.plane, frame.kind:
-        case "equator", "mean":
-            return precession.bias_precession_matrix(moment, model)
-        case "equator", "true":
-            return ofdate.true_equator_matrix(moment, model)
-        case "ecliptic", "mean":
-            return precession.ecliptic_matrix(moment, model)
-        case "ecliptic", "true":
-            return ofdate.true_ecliptic_matrix(moment, model)
         case "ecliptic", "sun":
             from colure import bodies
 
@@ -142,7 +134,7 @@ def _of_date(frame: Frame, moment: Moment, site: Ground | None) -> Float:
             return ofdate.cirs_matrix(moment, model)
         case "horizon", _ if site is not None:
             return sidereal.horizon_matrix(moment, site, model=model)
-    raise AssertionError(f"frame '{frame}' has no matrix of date")
+    return _by_equinox(frame, moment)
 
 
 @lru_cache(maxsize=256)
@@ -153,8 +145,6 @@ def _fixed(frame: Frame) -> Float:
 
 
 def _fixed_matrix(frame: Frame) -> Float:
-    model = frame.model or "auto"
-    at = frame.equinox_tt()
     match frame.plane, frame.kind:
         case (("icrs" | "gcrs"), _):
             return np.eye(3)
@@ -166,6 +156,13 @@ def _fixed_matrix(frame: Frame) -> Float:
             return invariable_matrix()
         case "ecliptic", "iau76":
             return rotation_x(OBLIQUITY_IAU76_J2000)
+    return _by_equinox(frame, frame.equinox_tt())
+
+
+def _by_equinox(frame: Frame, at: precession.Instant) -> Float:
+    """Return the matrix of a mean or true plane for the instant of its equinox, fixed or of date."""
+    model = frame.model or "auto"
+    match frame.plane, frame.kind:
         case "equator", "mean":
             return precession.bias_precession_matrix(at, model)
         case "equator", "true":
@@ -174,7 +171,7 @@ def _fixed_matrix(frame: Frame) -> Float:
             return precession.ecliptic_matrix(at, model)
         case "ecliptic", "true":
             return ofdate.true_ecliptic_matrix(at, model)
-    raise AssertionError(f"frame '{frame}' has no fixed matrix")
+    raise AssertionError(f"frame '{frame}' has no matrix")
 
 
 def galactic_matrix() -> Float:
